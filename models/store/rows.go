@@ -1,0 +1,209 @@
+package store
+
+import (
+	"time"
+
+	"lodebook/models/civil"
+)
+
+// Line says which entry wrote a projected row and which one ended it (superseded or withdrew it);
+// Ended is 0 while the row stands.
+type Line struct {
+	Seq, Ended int64
+	ID         string // the entry's identifier
+	Batch      string // the import that it came in, or empty
+}
+
+// Entry is one line of the book as stored. Bytes are its canonical JSON and are never re-encoded.
+type Entry struct {
+	Seq        int64 // the leaf index, from 0
+	ID         string
+	Kind       string
+	V          int
+	Site       string // empty: the whole book
+	Batch      string
+	Supersedes string // identifier of the entry that this one supersedes or withdraws
+	Actor      string // an account's identifier, or "operator" or "job"
+	RecordedAt time.Time
+	Bytes      []byte
+}
+
+// Veil is one erasable value of an entry: the entry's bytes hold the commitment
+// ledger.Commit(Salt, Value), the value stands here. An erased veil has neither salt nor value.
+type Veil struct {
+	Seq    int64
+	Path   string // the field in the entry's body, as in "name" or "facts.employer"
+	Person string // code of the person whom it is about, or empty
+	Salt   []byte
+	Value  []byte
+	Erased bool
+}
+
+// SubjectKey names a subject in the book. Site is empty for a person, who belongs to the book.
+type SubjectKey struct{ Site, Kind, Code string }
+
+// SiteRow is a site.
+type SiteRow struct {
+	Line
+	Code, Name, TimeZone string
+}
+
+// VersionRow is one recorded version of a site's program.
+type VersionRow struct {
+	Line
+	Site        string
+	Number      int
+	InForceFrom civil.Day
+	Retroactive bool
+	Source      []byte
+}
+
+// PersonRow is the current state of a person. Seq is the entry that last changed it. The names are
+// empty once the person is erased.
+type PersonRow struct {
+	Line
+	Code, Name, Email, Badge string
+	Erased                   bool
+}
+
+// FixtureRow is the current state of a fixture.
+type FixtureRow struct {
+	Line
+	Site, Code, Kind, Name string
+}
+
+// StintRow is a span of presence at a site: of a person (joined, left) or a fixture (since, until).
+type StintRow struct {
+	Line
+	Site, Kind, Code string
+	First, Last      *civil.Day
+}
+
+// FactRow is one dated value. Value is JSON: a string, a number, true, false or null.
+type FactRow struct {
+	Line
+	Site, Kind, Code string
+	Fact             string
+	From             civil.Day
+	Value            string
+}
+
+// RecordRow is something done.
+type RecordRow struct {
+	Line
+	Order   int64 // order of recording
+	Site    string
+	Subject SubjectKey
+	What    string // kind/code
+	Day     civil.Day
+	Time    *time.Time
+	Passed  bool
+	Remark  bool // passed with a remark
+	Until   *civil.Day
+	Limit   string // zone codes separated by spaces
+	Session string // what was recorded in one form shares it, or empty
+	Doubted bool   // reserved for imports whose author was only claimed
+}
+
+// EventRow is something that happened to a subject.
+type EventRow struct {
+	Line
+	Site    string
+	Subject SubjectKey
+	Event   string
+	Day     civil.Day
+	Time    *time.Time
+}
+
+// ExcusalRow is an excusal, or a pause where Item is empty. Waiting says that it asks to open reach
+// and that no safety officer has confirmed it; Opens is true only when it does open.
+type ExcusalRow struct {
+	Line
+	Site    string
+	Subject SubjectKey
+	Item    string
+	From    civil.Day
+	To      *civil.Day
+	Opens   bool
+	Waiting bool
+}
+
+// PlanRow is a drill or session that is planned.
+type PlanRow struct {
+	Line
+	Site string
+	What string // kind/code
+	Crew string
+	Day  civil.Day
+	At   string // HH:MM or empty
+	Done bool
+}
+
+// AccountRow is what signs in, as the grants in the book say.
+type AccountRow struct {
+	Line
+	ID, Name, Role string
+	Sites          []string // empty: all sites (administrators)
+	Person         string   // code of the linked person, or empty
+	Until          *civil.Day
+	Disabled       bool
+}
+
+// BatchRow is one import.
+type BatchRow struct {
+	Line
+	Site, Table, File string
+	Rows              int
+	Actor             string
+	At                time.Time
+}
+
+// The rows below are no part of the book: they can be lost without losing what was recorded.
+
+// CredentialRow is an account's secret, as an encoded Argon2id hash.
+type CredentialRow struct {
+	Account, Hash string
+	Changed       time.Time
+}
+
+// LinkRow is a one-time sign-in link; Hash is the SHA-256 of its token.
+type LinkRow struct {
+	Hash, Account string
+	Expires       time.Time
+	Used          *time.Time
+}
+
+// SessionRow is a signed-in browser; Hash is the SHA-256 of its token.
+type SessionRow struct {
+	Hash, Account  string
+	Began, Expires time.Time
+	LastSeen       time.Time
+}
+
+// AttemptRow counts failed sign-ins of one name or address.
+type AttemptRow struct {
+	Key   string
+	Count int
+	Last  time.Time
+}
+
+// FlagRow is what a job raised on a gap or a coming lapse. Its identity is site, item and subject.
+type FlagRow struct {
+	Site, Item, Kind, Code string
+	Standing               string
+	Owner                  string
+	Due                    *civil.Day
+	Opened                 civil.Day
+	Cleared                *civil.Day
+	Reopened               int
+}
+
+// RunRow is one run of a job for a site on a day. Its key (job, site, due) is claimed before it runs.
+type RunRow struct {
+	Job, Site string
+	Due       time.Time
+	Started   time.Time
+	Ended     *time.Time
+	Outcome   string // running, done, failed
+	Message   string
+}
