@@ -58,7 +58,8 @@ type Version struct {
 }
 
 // Stint is a span in which a subject exists at the site: a person on staff, a fixture in use. Nil
-// ends are open; both days are included.
+// ends are open; both days are included. Of the stints of one subject at one site that begin on the
+// same day and are known, the last recorded counts.
 type Stint struct {
 	Line
 	Subject     Subject

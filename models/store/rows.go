@@ -42,7 +42,7 @@ type Veil struct {
 // SubjectKey names a subject in the book. Site is empty for a person, who belongs to the book.
 type SubjectKey struct{ Site, Kind, Code string }
 
-// SiteRow is a site.
+// SiteRow is a site as one version of its program names it; the last counts.
 type SiteRow struct {
 	Line
 	Code, Name, TimeZone string
@@ -58,21 +58,22 @@ type VersionRow struct {
 	Source      []byte
 }
 
-// PersonRow is the current state of a person. Seq is the entry that last changed it. The names are
-// empty once the person is erased.
+// PersonRow is what one entry says of who a person is; of those that stand, the last counts. The
+// names are empty once the person is erased.
 type PersonRow struct {
 	Line
 	Code, Name, Email, Badge string
 	Erased                   bool
 }
 
-// FixtureRow is the current state of a fixture.
+// FixtureRow is what one entry says of what a fixture is; of those that stand, the last counts.
 type FixtureRow struct {
 	Line
 	Site, Code, Kind, Name string
 }
 
 // StintRow is a span of presence at a site: of a person (joined, left) or a fixture (since, until).
+// Of those of one subject that begin on the same day and stand, the last recorded counts.
 type StintRow struct {
 	Line
 	Site, Kind, Code string
@@ -102,7 +103,6 @@ type RecordRow struct {
 	Until   *civil.Day
 	Limit   string // zone codes separated by spaces
 	Session string // what was recorded in one form shares it, or empty
-	Doubted bool   // reserved for imports whose author was only claimed
 }
 
 // EventRow is something that happened to a subject.
@@ -128,7 +128,7 @@ type ExcusalRow struct {
 	Waiting bool
 }
 
-// PlanRow is a drill or session that is planned.
+// PlanRow is a drill or session that is planned. It is done once a record names it as its session.
 type PlanRow struct {
 	Line
 	Site string
@@ -136,10 +136,9 @@ type PlanRow struct {
 	Crew string
 	Day  civil.Day
 	At   string // HH:MM or empty
-	Done bool
 }
 
-// AccountRow is what signs in, as the grants in the book say.
+// AccountRow is what one entry says of an account; of those of one ID that stand, the last counts.
 type AccountRow struct {
 	Line
 	ID, Name, Role string
@@ -149,7 +148,7 @@ type AccountRow struct {
 	Disabled       bool
 }
 
-// BatchRow is one import.
+// BatchRow is one import; its own entry's identifier is the batch that its rows carry.
 type BatchRow struct {
 	Line
 	Site, Table, File string
