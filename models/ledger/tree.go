@@ -18,6 +18,9 @@ import (
 // Hash is a SHA-256 hash of a leaf, a node or a whole tree. Write it with Hex.
 type Hash = tlog.Hash
 
+// HashSize is the number of bytes of a hash.
+const HashSize = tlog.HashSize
+
 // Reader hands out stored hashes by their index: one for each index, in the order asked, or an
 // error. It is the only thing that the tree needs of a storage.
 type Reader = tlog.HashReader

@@ -1,0 +1,323 @@
+package store
+
+import (
+	"context"
+	"database/sql"
+	"errors"
+	"fmt"
+	"io"
+	"io/fs"
+	"os"
+	"strings"
+	"syscall"
+	"time"
+
+	"github.com/pressly/goose/v3"
+	"gorm.io/gorm"
+
+	"lodebook/migrations"
+	"lodebook/models/ledger"
+)
+
+// Options are what a new book is made with.
+type Options struct {
+	BookID string // the book's identity, a random UUID; it is kept as MetaBookID
+}
+
+// MetaBookID is the name under which a book's identity stands in its meta values.
+const MetaBookID = "book_id"
+
+// waits is how long a statement waits for another program to let go of the book.
+const waits = 15 * time.Second
+
+// settings are what tests vary.
+type settings struct {
+	busy    time.Duration
+	schema  fs.FS
+	options map[string]string // added to the options of every connection
+}
+
+func usual() settings { return settings{busy: waits, schema: migrations.SQLite()} }
+
+// Create makes a new book at path, for its user's eyes only. It refuses a path where there is
+// something already.
+func Create(ctx context.Context, path string, o Options) (*Store, error) {
+	return create(ctx, path, o, usual())
+}
+
+func create(ctx context.Context, path string, o Options, set settings) (*Store, error) {
+	err := reserve(path)
+	if err != nil {
+		return nil, err
+	}
+	s, err := begin(ctx, path, o, set)
+	if err != nil {
+		return nil, errors.Join(err, removeBook(path))
+	}
+	return s, nil
+}
+
+// reserve makes an empty file where there must be none.
+func reserve(path string) error {
+	f, err := os.OpenFile(path, os.O_RDWR|os.O_CREATE|os.O_EXCL, 0o600)
+	if errors.Is(err, fs.ErrExist) {
+		return refuse(err, "%s exists already and is left as it is; name another file.", path)
+	}
+	if err != nil {
+		return refuse(err, "%s cannot be made: %s.", path, plainly(err))
+	}
+	return f.Close()
+}
+
+func begin(ctx context.Context, path string, o Options, set settings) (*Store, error) {
+	s, err := connectBoth(ctx, path, set, func(w *gorm.DB) error {
+		err := w.WithContext(ctx).Exec(fmt.Sprintf("PRAGMA application_id = %d", applicationID)).Error
+		if err != nil {
+			return err
+		}
+		return migrate(ctx, path, w, set.schema)
+	})
+	if err != nil {
+		return nil, err
+	}
+	err = s.Write(ctx, func(t *Tx) error { return t.SetMeta(MetaBookID, o.BookID) })
+	if err != nil {
+		return nil, errors.Join(err, s.Close())
+	}
+	return s, nil
+}
+
+// removeBook removes a book's file and what SQLite may have laid beside it.
+func removeBook(path string) error {
+	var errs []error
+	for _, end := range []string{"", "-wal", "-shm", "-journal"} {
+		err := os.Remove(path + end)
+		if !errors.Is(err, fs.ErrNotExist) {
+			errs = append(errs, err)
+		}
+	}
+	return errors.Join(errs...)
+}
+
+// Open opens the book at path and brings an older known schema up to date. Whatever stands in the
+// way is told as a *Refusal.
+func Open(ctx context.Context, path string) (*Store, error) { return open(ctx, path, usual()) }
+
+func open(ctx context.Context, path string, set settings) (*Store, error) {
+	err := lookAt(path)
+	if err != nil {
+		return nil, err
+	}
+	err = recognise(ctx, path, set)
+	if err != nil {
+		return nil, err
+	}
+	s, err := connectBoth(ctx, path, set, func(w *gorm.DB) error { return migrate(ctx, path, w, set.schema) })
+	if err != nil {
+		return nil, err
+	}
+	err = s.Read(ctx, whole)
+	if err != nil {
+		return nil, errors.Join(s.doubt(ctx, err), s.Close())
+	}
+	return s, nil
+}
+
+// lookAt refuses what needs no database to refuse.
+func lookAt(path string) error {
+	err := mustBeFile(path)
+	if err != nil {
+		return err
+	}
+	return tryFile(path, os.O_RDWR)
+}
+
+// lookAtCopy is lookAt for a backup, which need not be writable.
+func lookAtCopy(path string) error {
+	err := mustBeFile(path)
+	if err != nil {
+		return err
+	}
+	return tryFile(path, os.O_RDONLY)
+}
+
+func mustBeFile(path string) error {
+	info, err := os.Stat(path)
+	switch {
+	case errors.Is(err, fs.ErrNotExist):
+		return refuse(err, "There is no book at %s.", path)
+	case err != nil:
+		return refuse(err, "%s cannot be read: %s.", path, plainly(err))
+	case info.IsDir():
+		return refuse(nil, "%s is a folder, not a book.", path)
+	case info.Size() == 0:
+		return refuse(nil, "%s is empty; it is not a book.", path)
+	}
+	return nil
+}
+
+// tryFile opens a file once and looks at how it begins.
+func tryFile(path string, how int) error {
+	f, err := os.OpenFile(path, how, 0)
+	if errors.Is(err, fs.ErrPermission) || errors.Is(err, syscall.EROFS) {
+		return refuse(err, "%s is read-only for this user; a book must be writable.", path)
+	}
+	if err != nil {
+		return refuse(err, "%s cannot be opened: %s.", path, plainly(err))
+	}
+	err = checkMagic(path, f)
+	return errors.Join(err, f.Close())
+}
+
+// magic is how every SQLite file begins.
+const magic = "SQLite format 3\x00"
+
+func checkMagic(path string, f io.Reader) error {
+	head := make([]byte, len(magic))
+	_, err := io.ReadFull(f, head)
+	if err != nil || string(head) != magic {
+		return refuse(err, "%s is not a book.", path)
+	}
+	return nil
+}
+
+// recognise asks the file, without changing it, whether it is a book and of which schema. A file
+// that is some other program's is not even switched to our kind of journal.
+func recognise(ctx context.Context, path string, set settings) error {
+	g, err := set.pool(plain(set.busy)).connect(ctx, path)
+	if err != nil {
+		return err
+	}
+	err = isBook(ctx, path, g, set.schema)
+	return errors.Join(err, disconnect(g))
+}
+
+func isBook(ctx context.Context, path string, g *gorm.DB, schema fs.FS) error {
+	var id int64
+	err := g.WithContext(ctx).Raw("PRAGMA application_id").Scan(&id).Error
+	if err != nil {
+		return explain(path, err)
+	}
+	if id != applicationID {
+		return refuse(nil, "%s is a database of another program, not a book.", path)
+	}
+	have, err := schemaVersion(ctx, g)
+	if err != nil {
+		return explain(path, err)
+	}
+	newest, err := newestVersion(g, schema)
+	if err != nil {
+		return err
+	}
+	if have > newest {
+		return refuse(nil, "%s was written by a newer version of this program (schema %d; this one knows up to %d); use that version.", path, have, newest)
+	}
+	return nil
+}
+
+func (s settings) pool(p pool) pool {
+	for k, v := range s.options {
+		p.options.Set(k, v)
+	}
+	return p
+}
+
+// connectBoth opens the writing pool, lets prepare have it, and then opens the reading one.
+func connectBoth(ctx context.Context, path string, set settings, prepare func(*gorm.DB) error) (*Store, error) {
+	w, err := set.pool(writing(set.busy)).connect(ctx, path)
+	if err != nil {
+		return nil, err
+	}
+	err = prepare(w)
+	if err != nil {
+		return nil, errors.Join(explain(path, err), disconnect(w))
+	}
+	r, err := set.pool(reading(set.busy)).connect(ctx, path)
+	if err != nil {
+		return nil, errors.Join(err, disconnect(w))
+	}
+	return &Store{path: path, w: w, r: r, set: set}, nil
+}
+
+// schemaVersion is the number of the last migration that a book has had.
+func schemaVersion(ctx context.Context, g *gorm.DB) (int64, error) {
+	var v sql.NullInt64
+	err := g.WithContext(ctx).Raw("SELECT MAX(version_id) FROM goose_db_version WHERE is_applied").Row().Scan(&v)
+	if err != nil && strings.Contains(err.Error(), "no such table") {
+		return 0, refuse(err, "The file was being made as a book when that was broken off; it holds nothing. Delete it and start again.")
+	}
+	return v.Int64, err
+}
+
+func provider(g *gorm.DB, schema fs.FS) (*goose.Provider, error) {
+	db, err := g.DB()
+	if err != nil {
+		return nil, err
+	}
+	return goose.NewProvider(goose.DialectSQLite3, db, schema, goose.WithDisableGlobalRegistry(true))
+}
+
+func newestVersion(g *gorm.DB, schema fs.FS) (int64, error) {
+	p, err := provider(g, schema)
+	if err != nil {
+		return 0, err
+	}
+	sources := p.ListSources()
+	return sources[len(sources)-1].Version, nil
+}
+
+// migrate applies the migrations that the book has not had. If it fails because another program
+// did the same at the same moment, that is as good.
+func migrate(ctx context.Context, path string, w *gorm.DB, schema fs.FS) error {
+	p, err := provider(w, schema)
+	if err != nil {
+		return err
+	}
+	_, err = p.Up(ctx)
+	if err == nil {
+		return nil
+	}
+	pending, later := p.HasPending(ctx)
+	if later == nil && !pending {
+		return nil
+	}
+	return explain(path, fmt.Errorf("bringing the schema up to date: %w", err))
+}
+
+// whole is the quick check of every opening: there is a tree, and it is as long as the entries say.
+func whole(t *Tx) error {
+	size, err := t.Size()
+	if err != nil {
+		return err
+	}
+	var hashes int64
+	err = t.db.Raw("SELECT COALESCE(MAX(idx) + 1, 0) FROM tree").Scan(&hashes).Error
+	if err != nil {
+		return err
+	}
+	if hashes != ledger.StoredCount(size) {
+		return fmt.Errorf("%w: %d entries need %d hashes and there are %d", ErrCorrupt, size, ledger.StoredCount(size), hashes)
+	}
+	_, err = ledger.Root(size, t)
+	return err
+}
+
+// doubt looks closer at a file that gave an error on opening, to tell damage from anything else.
+func (s *Store) doubt(ctx context.Context, err error) error {
+	err = explain(s.path, err)
+	if !errors.Is(err, ErrCorrupt) {
+		return err
+	}
+	var found string
+	worse := s.r.WithContext(ctx).Raw("PRAGMA quick_check(1)").Scan(&found).Error
+	return refuse(errors.Join(err, worse, fmt.Errorf("quick check: %s", found)), "%s is damaged; restore it from a backup.", s.path)
+}
+
+// plainly is the bare reason of a file error, without the name of the call and the path.
+func plainly(err error) string {
+	var e *fs.PathError
+	if errors.As(err, &e) {
+		return e.Err.Error()
+	}
+	return err.Error()
+}

@@ -1,0 +1,312 @@
+package store
+
+import (
+	"cmp"
+	"context"
+	"fmt"
+	"slices"
+	"strings"
+
+	"gorm.io/gorm"
+)
+
+// Delta is what changed in the projections: rows that are new or that ended or were blanked.
+type Delta struct {
+	Sites    []SiteRow
+	Versions []VersionRow
+	People   []PersonRow
+	Fixtures []FixtureRow
+	Stints   []StintRow
+	Facts    []FactRow
+	Records  []RecordRow
+	Events   []EventRow
+	Excusals []ExcusalRow
+	Plans    []PlanRow
+	Accounts []AccountRow
+	Batches  []BatchRow
+}
+
+// table is one projection: its name and how its public rows T and stored rows R turn into each
+// other.
+type table[T, R any] struct {
+	name    string
+	in      func(T) R
+	out     func(R) T
+	columns func(*R) *lineColumns
+	of      func(*Delta) *[]T
+	blanks  bool // has the column touched
+}
+
+// projection is a table of whichever types.
+type projection interface {
+	title() string
+	hold(t *Tx, rows any) (bool, error)
+	changed(t *Tx, since int64, to *Delta) error
+}
+
+// projections are all tables that are made from the entries.
+var projections = []projection{
+	table[SiteRow, siteLine]{"sites", siteIn, siteOut, func(r *siteLine) *lineColumns { return &r.Line }, func(d *Delta) *[]SiteRow { return &d.Sites }, false},
+	table[VersionRow, versionLine]{"versions", versionIn, versionOut, func(r *versionLine) *lineColumns { return &r.Line }, func(d *Delta) *[]VersionRow { return &d.Versions }, false},
+	table[PersonRow, personLine]{"people", personIn, personOut, func(r *personLine) *lineColumns { return &r.Line }, func(d *Delta) *[]PersonRow { return &d.People }, true},
+	table[FixtureRow, fixtureLine]{"fixtures", fixtureIn, fixtureOut, func(r *fixtureLine) *lineColumns { return &r.Line }, func(d *Delta) *[]FixtureRow { return &d.Fixtures }, false},
+	table[StintRow, stintLine]{"stints", stintIn, stintOut, func(r *stintLine) *lineColumns { return &r.Line }, func(d *Delta) *[]StintRow { return &d.Stints }, false},
+	table[FactRow, factLine]{"facts", factIn, factOut, func(r *factLine) *lineColumns { return &r.Line }, func(d *Delta) *[]FactRow { return &d.Facts }, true},
+	table[RecordRow, recordLine]{"records", recordIn, recordOut, func(r *recordLine) *lineColumns { return &r.Line }, func(d *Delta) *[]RecordRow { return &d.Records }, false},
+	table[EventRow, eventLine]{"events", eventIn, eventOut, func(r *eventLine) *lineColumns { return &r.Line }, func(d *Delta) *[]EventRow { return &d.Events }, false},
+	table[ExcusalRow, excusalLine]{"excusals", excusalIn, excusalOut, func(r *excusalLine) *lineColumns { return &r.Line }, func(d *Delta) *[]ExcusalRow { return &d.Excusals }, false},
+	table[PlanRow, planLine]{"plans", planIn, planOut, func(r *planLine) *lineColumns { return &r.Line }, func(d *Delta) *[]PlanRow { return &d.Plans }, false},
+	table[AccountRow, accountLine]{"accounts", accountIn, accountOut, func(r *accountLine) *lineColumns { return &r.Line }, func(d *Delta) *[]AccountRow { return &d.Accounts }, false},
+	table[BatchRow, batchLine]{"batches", batchIn, batchOut, func(r *batchLine) *lineColumns { return &r.Line }, func(d *Delta) *[]BatchRow { return &d.Batches }, false},
+}
+
+func (p table[T, R]) title() string { return p.name }
+
+// Put adds projection rows: values or slices of any line type of rows.go. The entry that a row names by
+// Seq must have been appended. Rows are written in batches, so an error may come with a later call
+// or at the end of the transaction.
+func (t *Tx) Put(rows ...any) error {
+	for _, r := range rows {
+		err := t.put(r)
+		if err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
+func (t *Tx) put(rows any) error {
+	for _, p := range projections {
+		held, err := p.hold(t, rows)
+		if held || err != nil {
+			return err
+		}
+	}
+	return fmt.Errorf("%T is no row of a projection", rows)
+}
+
+// held are the rows of one table that wait to be written. seq and next say which entry the last
+// row was of and which place the next one of it takes; above top no entry has rows in the table.
+type held[R any] struct {
+	name           string
+	rows           []R
+	seq, next, top int64
+}
+
+// hold takes the rows if they are of its type.
+func (p table[T, R]) hold(t *Tx, rows any) (bool, error) {
+	var list []T
+	switch r := rows.(type) {
+	case T:
+		list = []T{r}
+	case []T:
+		list = r
+	default:
+		return false, nil
+	}
+	h, err := p.holding(t)
+	if err != nil {
+		return true, err
+	}
+	for _, row := range list {
+		r := p.in(row)
+		err = h.number(t, p.columns(&r))
+		if err != nil {
+			return true, err
+		}
+		h.rows = append(h.rows, r)
+	}
+	if len(h.rows) >= batchRows {
+		return true, h.flush(t)
+	}
+	return true, nil
+}
+
+func (p table[T, R]) holding(t *Tx) (*held[R], error) {
+	if h, ok := t.held[p.name].(*held[R]); ok {
+		return h, nil
+	}
+	h := &held[R]{name: p.name, seq: -1}
+	err := t.db.Raw("SELECT COALESCE(MAX(seq), -1) FROM " + p.name).Scan(&h.top).Error
+	if err != nil {
+		return nil, err
+	}
+	if t.held == nil {
+		t.held = make(map[string]holding)
+	}
+	t.held[p.name] = h
+	return h, nil
+}
+
+// number gives a row its place among the rows of its entry.
+func (h *held[R]) number(t *Tx, c *lineColumns) error {
+	switch {
+	case c.Seq == h.seq:
+		h.next++
+	case c.Seq > h.top:
+		h.next = 0
+	default:
+		err := h.flush(t)
+		if err != nil {
+			return err
+		}
+		err = t.db.Raw("SELECT COALESCE(MAX(n) + 1, 0) FROM "+h.name+" WHERE seq = ?", c.Seq).Scan(&h.next).Error
+		if err != nil {
+			return err
+		}
+	}
+	h.seq = c.Seq
+	h.top = max(h.top, c.Seq)
+	c.N = h.next
+	return nil
+}
+
+func (h *held[R]) flush(t *Tx) error {
+	err := insert(t, h.name, h.rows)
+	h.rows = h.rows[:0]
+	return err
+}
+
+// Changed gives the rows that entries after the sequence number since have written, ended or
+// blanked, in order of their entry (records in their order of recording). Since -1 is everything.
+func (t *Tx) Changed(since int64) (Delta, error) {
+	var d Delta
+	err := t.settle()
+	if err != nil {
+		return d, err
+	}
+	for _, p := range projections {
+		err = p.changed(t, since, &d)
+		if err != nil {
+			return d, err
+		}
+	}
+	slices.SortStableFunc(d.Records, func(a, b RecordRow) int { return cmp.Compare(a.Order, b.Order) })
+	return d, nil
+}
+
+func (p table[T, R]) changed(t *Tx, since int64, to *Delta) error {
+	rows, err := find[R](p.since(t.db.Table(p.name), since).Order("seq, n"))
+	if err != nil {
+		return err
+	}
+	list := make([]T, len(rows))
+	for i, r := range rows {
+		list[i] = p.out(r)
+	}
+	*p.of(to) = list
+	return nil
+}
+
+// since writes its conditions so that each side of the OR finds its index (the indexes on ended
+// and touched hold only what is above 0).
+func (p table[T, R]) since(q *gorm.DB, since int64) *gorm.DB {
+	switch {
+	case since < 0:
+		return q
+	case p.blanks:
+		return q.Where("seq > ? OR (ended > 0 AND ended > ?) OR (touched > 0 AND touched > ?)", since, since, since)
+	}
+	return q.Where("seq > ? OR (ended > 0 AND ended > ?)", since, since)
+}
+
+// End marks the rows of entry seq that stand as ended by entry by.
+func (t *Tx) End(seq, by int64) error {
+	return t.end(by, "seq = ?", seq)
+}
+
+// EndBatch marks the rows of all entries of an import that stand as ended by entry by.
+func (t *Tx) EndBatch(batch string, by int64) error {
+	if batch == "" {
+		return fmt.Errorf("no import is named to be ended by entry %d", by)
+	}
+	return t.end(by, "seq IN (SELECT seq FROM entries WHERE batch = ? AND batch <> '')", batch)
+}
+
+func (t *Tx) end(by int64, which string, arg any) error {
+	if by <= 0 {
+		return fmt.Errorf("entry %d cannot end a row", by)
+	}
+	err := t.settle()
+	if err != nil {
+		return err
+	}
+	for _, p := range projections {
+		err = t.db.Exec("UPDATE "+p.title()+" SET ended = ? WHERE ended = 0 AND "+which, by, arg).Error
+		if err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
+// BlankPerson empties the name, e-mail and badge in every row of a person and marks them erased.
+// Seq is the erasing entry: Changed gives the rows again to whoever knows the book up to before it.
+func (t *Tx) BlankPerson(code string, seq int64) error {
+	err := t.settle()
+	if err != nil {
+		return err
+	}
+	return t.db.Exec("UPDATE people SET name = '', email = '', badge = '', erased = ?, touched = ? WHERE code = ?", true, seq, code).Error
+}
+
+// BlankFacts sets the values of the named facts that entry seq put on record to null. By is the
+// erasing entry, as in BlankPerson.
+func (t *Tx) BlankFacts(seq, by int64, facts ...string) error {
+	err := t.settle()
+	if err != nil {
+		return err
+	}
+	return t.db.Exec("UPDATE facts SET value = 'null', touched = ? WHERE seq = ? AND fact IN ?", by, seq, facts).Error
+}
+
+// DropProjections empties every projection, to be made again from the entries.
+func (t *Tx) DropProjections() error {
+	t.held = nil
+	for _, p := range projections {
+		err := t.db.Exec("DELETE FROM " + p.title()).Error
+		if err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
+// Dump gives every projection's rows as text, sorted, by table: two books with equal dumps have
+// equal projections.
+func (s *Store) Dump(ctx context.Context) (map[string][]string, error) {
+	out := make(map[string][]string)
+	err := s.Read(ctx, func(t *Tx) error {
+		for _, p := range projections {
+			lines, err := t.dump(p.title())
+			if err != nil {
+				return err
+			}
+			out[p.title()] = lines
+		}
+		return nil
+	})
+	return out, err
+}
+
+func (t *Tx) dump(name string) ([]string, error) {
+	var rows []map[string]any
+	err := t.db.Table(name).Find(&rows).Error
+	if err != nil {
+		return nil, err
+	}
+	lines := make([]string, len(rows))
+	for i, r := range rows {
+		cells := make([]string, 0, len(r))
+		for k, v := range r {
+			if b, ok := v.([]byte); ok {
+				v = string(b)
+			}
+			cells = append(cells, fmt.Sprintf("%s=%q", k, fmt.Sprint(v)))
+		}
+		slices.Sort(cells)
+		lines[i] = strings.Join(cells, " ")
+	}
+	slices.Sort(lines)
+	return lines, nil
+}

@@ -1,0 +1,118 @@
+// Package store keeps a book in a SQLite file: its entries with their tree and erasable values,
+// the projections made from them, and what the program needs to run. It is the only room that
+// knows SQL; the row types of rows.go are its contract.
+package store
+
+import (
+	"context"
+	"errors"
+
+	"gorm.io/gorm"
+
+	"lodebook/models/ledger"
+)
+
+// Store is an open book. It may be used by many goroutines at once, beside other programs that
+// have the same book open.
+type Store struct {
+	path string
+	w, r *gorm.DB
+	set  settings
+}
+
+// Path is where the book is.
+func (s *Store) Path() string { return s.path }
+
+// Close closes the book. Nothing may use it any more.
+func (s *Store) Close() error { return errors.Join(disconnect(s.r), disconnect(s.w)) }
+
+// Tx is one transaction. It is for one goroutine and ends with the function that it was given to.
+type Tx struct {
+	db      *gorm.DB
+	builder *ledger.Builder    // the tree that Append grows; nil until it does
+	last    string             // recorded-at of the last entry, as stored; set with builder
+	held    map[string]holding // projection rows that are not in the database yet, by table
+}
+
+// holding is what a transaction holds back of one table, so that rows put one by one are written
+// in batches.
+type holding interface{ flush(t *Tx) error }
+
+// Write runs fn in a transaction that has the write lock from its first moment. If fn gives an
+// error or panics, nothing of it is kept. When Write returns nil, what fn wrote is on the disk.
+// fn must not call Write of the same store: there is one writer. If another program holds the lock for too
+// long, the error is a *Refusal that is ErrBusy.
+func (s *Store) Write(ctx context.Context, fn func(*Tx) error) error {
+	db := s.w.WithContext(ctx).Begin()
+	if db.Error != nil {
+		return explain(s.path, db.Error)
+	}
+	committed := false
+	defer func() {
+		if !committed {
+			db.Rollback() // its error could only be that the transaction has ended already
+		}
+	}()
+	t := &Tx{db: db}
+	err := fn(t)
+	if err == nil {
+		err = t.settle()
+	}
+	if err == nil {
+		err = db.Commit().Error
+		committed = err == nil
+	}
+	return explain(s.path, err)
+}
+
+// Read runs fn in a transaction that sees the book as it was at fn's first look and never waits
+// for a writer. fn must write nothing.
+func (s *Store) Read(ctx context.Context, fn func(*Tx) error) error {
+	db := s.r.WithContext(ctx).Begin()
+	if db.Error != nil {
+		return explain(s.path, db.Error)
+	}
+	defer db.Rollback() // there is nothing to keep
+	return explain(s.path, fn(&Tx{db: db}))
+}
+
+// Size is the number of entries now, those of other programs included.
+func (s *Store) Size(ctx context.Context) (int64, error) {
+	t := &Tx{db: s.r.WithContext(ctx)}
+	n, err := t.Size()
+	return n, explain(s.path, err)
+}
+
+// settle writes the projection rows that are held back.
+func (t *Tx) settle() error {
+	for _, h := range t.held {
+		err := h.flush(t)
+		if err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
+type metaRow struct{ Name, Value string }
+
+// Meta gives a value that the book keeps of itself, and whether there is one.
+func (t *Tx) Meta(name string) (string, bool, error) {
+	rows, err := find[metaRow](t.db.Table("meta").Where("name = ?", name))
+	if err != nil || len(rows) == 0 {
+		return "", false, err
+	}
+	return rows[0].Value, true, nil
+}
+
+// SetMeta sets a value that the book keeps of itself.
+func (t *Tx) SetMeta(name, value string) error {
+	return upsert(t, "meta", metaRow{name, value}, "name")
+}
+
+// find runs a query and gives its rows; none is no error.
+func find[R any](q *gorm.DB) ([]R, error) {
+	var rows []R
+	err := q.Find(&rows).Error
+	return rows, err
+}

@@ -1,0 +1,88 @@
+package store
+
+import (
+	"fmt"
+
+	"gorm.io/gorm"
+
+	"lodebook/models/ledger"
+)
+
+type veilRow struct {
+	Seq    int64  `gorm:"primaryKey;autoIncrement:false"`
+	Path   string `gorm:"primaryKey"`
+	Person string
+	Salt   []byte
+	Value  []byte
+	Erased bool
+}
+
+// appendVeils numbers the erasable values of a new entry and adds their rows.
+func appendVeils(to []veilRow, seq int64, veils []Veil) ([]veilRow, error) {
+	for i := range veils {
+		v := &veils[i]
+		v.Seq = seq
+		if v.Erased || len(v.Salt) != ledger.SaltSize || v.Path == "" {
+			return nil, fmt.Errorf("value %d of entry %d needs a path and a salt of %d bytes", i, seq, ledger.SaltSize)
+		}
+		r := veilRow(*v)
+		if r.Value == nil {
+			r.Value = []byte{} // an empty value is one; only an erased veil has none
+		}
+		to = append(to, r)
+	}
+	return to, nil
+}
+
+// Veils gives the erasable values of the entries of those sequence numbers, in order of path.
+func (t *Tx) Veils(seqs ...int64) (map[int64][]Veil, error) {
+	out := make(map[int64][]Veil)
+	for len(seqs) > 0 {
+		n := min(len(seqs), batchRows)
+		err := t.collect(out, t.db.Where("seq IN ?", seqs[:n]))
+		if err != nil {
+			return nil, err
+		}
+		seqs = seqs[n:]
+	}
+	return out, nil
+}
+
+func (t *Tx) veilsBetween(first, last int64) (map[int64][]Veil, error) {
+	out := make(map[int64][]Veil)
+	err := t.collect(out, t.db.Where("seq BETWEEN ? AND ?", first, last))
+	return out, err
+}
+
+func (t *Tx) collect(to map[int64][]Veil, q *gorm.DB) error {
+	rows, err := find[veilRow](q.Table("veils").Order("seq, path"))
+	for _, r := range rows {
+		to[r.Seq] = append(to[r.Seq], Veil(r))
+	}
+	return err
+}
+
+// VeilsOfPerson gives every erasable value that is about a person, erased ones included.
+func (t *Tx) VeilsOfPerson(code string) ([]Veil, error) {
+	rows, err := find[veilRow](t.db.Table("veils").Where("person = ? AND person <> ''", code).Order("seq, path"))
+	out := make([]Veil, len(rows))
+	for i, r := range rows {
+		out[i] = Veil(r)
+	}
+	return out, err
+}
+
+// EraseVeils destroys the salts and values of the veils, which it knows by Seq and Path. It leaves
+// ErrMissing for one that is not there. The bytes are out of the file for certain once Scrub has
+// run.
+func (t *Tx) EraseVeils(veils []Veil) error {
+	for _, v := range veils {
+		r := t.db.Table("veils").Where("seq = ? AND path = ?", v.Seq, v.Path).
+			Updates(map[string]any{"salt": nil, "value": nil, "erased": true})
+		err := one(r.RowsAffected, r.Error, "entry %d has no value at %q", v.Seq, v.Path)
+		if err != nil {
+			return err
+		}
+	}
+	return nil
+}
