@@ -19,14 +19,6 @@ import (
 	"lodebook/models/ledger"
 )
 
-// Options are what a new book is made with.
-type Options struct {
-	BookID string // the book's identity, a random UUID; it is kept as MetaBookID
-}
-
-// MetaBookID is the name under which a book's identity stands in its meta values.
-const MetaBookID = "book_id"
-
 // waits is how long a statement waits for another program to let go of the book.
 const waits = 15 * time.Second
 
@@ -41,16 +33,14 @@ func usual() settings { return settings{busy: waits, schema: migrations.SQLite()
 
 // Create makes a new book at path, for its user's eyes only. It refuses a path where there is
 // something already.
-func Create(ctx context.Context, path string, o Options) (*Store, error) {
-	return create(ctx, path, o, usual())
-}
+func Create(ctx context.Context, path string) (*Store, error) { return create(ctx, path, usual()) }
 
-func create(ctx context.Context, path string, o Options, set settings) (*Store, error) {
+func create(ctx context.Context, path string, set settings) (*Store, error) {
 	err := reserve(path)
 	if err != nil {
 		return nil, err
 	}
-	s, err := begin(ctx, path, o, set)
+	s, err := begin(ctx, path, set)
 	if err != nil {
 		return nil, errors.Join(err, removeBook(path))
 	}
@@ -69,22 +59,14 @@ func reserve(path string) error {
 	return f.Close()
 }
 
-func begin(ctx context.Context, path string, o Options, set settings) (*Store, error) {
-	s, err := connectBoth(ctx, path, set, func(w *gorm.DB) error {
+func begin(ctx context.Context, path string, set settings) (*Store, error) {
+	return connectBoth(ctx, path, set, func(w *gorm.DB) error {
 		err := w.WithContext(ctx).Exec(fmt.Sprintf("PRAGMA application_id = %d", applicationID)).Error
 		if err != nil {
 			return err
 		}
 		return migrate(ctx, path, w, set.schema)
 	})
-	if err != nil {
-		return nil, err
-	}
-	err = s.Write(ctx, func(t *Tx) error { return t.SetMeta(MetaBookID, o.BookID) })
-	if err != nil {
-		return nil, errors.Join(err, s.Close())
-	}
-	return s, nil
 }
 
 // removeBook removes a book's file and what SQLite may have laid beside it.

@@ -94,6 +94,9 @@ func (t *Tx) settle() error {
 	return nil
 }
 
+// MetaBookID is the name under which a book's identity stands in its meta values.
+const MetaBookID = "book_id"
+
 type metaRow struct{ Name, Value string }
 
 // Meta gives a value that the book keeps of itself, and whether there is one.
