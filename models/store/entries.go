@@ -107,7 +107,7 @@ func (t *Tx) startTree() error {
 		return err
 	}
 	if size > 0 {
-		last, _, err := t.EntryAt(size - 1)
+		last, err := t.EntryAt(size - 1)
 		if err != nil {
 			return err
 		}
@@ -183,9 +183,13 @@ func (t *Tx) SupersededBy(id string) (Entry, bool, error) {
 	return only(t.entries().Where("supersedes = ? AND supersedes <> ''", id))
 }
 
-// EntryAt gives the entry of a sequence number, and whether there is one.
-func (t *Tx) EntryAt(seq int64) (Entry, bool, error) {
-	return only(t.entries().Where("seq = ?", seq))
+// EntryAt gives the entry of a sequence number; ErrMissing if there is none.
+func (t *Tx) EntryAt(seq int64) (Entry, error) {
+	e, ok, err := only(t.entries().Where("seq = ?", seq))
+	if err == nil && !ok {
+		err = fmt.Errorf("%w: there is no entry %d", ErrMissing, seq)
+	}
+	return e, err
 }
 
 func (t *Tx) entries() *gorm.DB { return t.db.Table("entries") }
@@ -297,11 +301,11 @@ func (t *Tx) EachEntry(from int64, fn func(Entry, []Veil) error) error {
 // LastRecordedAt is when the last entry was recorded, and whether there is an entry.
 func (t *Tx) LastRecordedAt() (time.Time, bool, error) {
 	size, err := t.Size()
-	if err != nil {
+	if err != nil || size == 0 {
 		return time.Time{}, false, err
 	}
-	e, ok, err := t.EntryAt(size - 1)
-	return e.RecordedAt, ok, err
+	e, err := t.EntryAt(size - 1)
+	return e.RecordedAt, err == nil, err
 }
 
 // SeqAt is the sequence number of the last entry that was recorded at that moment or before; -1 if

@@ -113,14 +113,14 @@ func (t *Tx) DeleteSessionsOf(account string) error {
 	return t.db.Exec("DELETE FROM sessions WHERE account = ?", account).Error
 }
 
-// ExpireSessions deletes the sessions that have expired at now and the links that no longer can be
-// taken, and tells how many sessions it were.
-func (t *Tx) ExpireSessions(now time.Time) (int64, error) {
-	r := t.db.Exec("DELETE FROM sessions WHERE expires <= ?", instant(now))
-	if r.Error != nil {
-		return 0, r.Error
+// ExpireSessions deletes the sessions that have expired at now and the links that can no longer be
+// taken.
+func (t *Tx) ExpireSessions(now time.Time) error {
+	err := t.db.Exec("DELETE FROM sessions WHERE expires <= ?", instant(now)).Error
+	if err != nil {
+		return err
 	}
-	return r.RowsAffected, t.db.Exec("DELETE FROM links WHERE used IS NOT NULL OR expires <= ?", instant(now)).Error
+	return t.db.Exec("DELETE FROM links WHERE used IS NOT NULL OR expires <= ?", instant(now)).Error
 }
 
 type attemptLine struct {
