@@ -47,6 +47,8 @@ type Program struct {
 	Sheets       []Sheet
 	Items        []Item
 	Source       []byte // the YAML that it was read from
+
+	notes []string // what Warnings tells about how the file is written
 }
 
 // Site names the place and the zone in which its days are counted.

@@ -24,7 +24,18 @@ type Subject struct {
 type Selector struct {
 	source string
 	reads  []string // the fields read, as in "level" or "facts.swing"
+	kinds  []string // the fixture kinds that it can match; nil: any
 	match  func(Subject) (bool, error)
+
+	undeclared []string // fixture kinds that it names and that are not declared
+}
+
+// kindsAsked are the fixture kinds that the expression can match; nil is any.
+func (s *Selector) kindsAsked() []string {
+	if s == nil {
+		return nil
+	}
+	return s.kinds
 }
 
 // MissingFact is the error of a selector that needs a fact which is not on record.
