@@ -88,31 +88,37 @@ func (d Day) Weekday() time.Weekday { return d.utc().Weekday() }
 // ISOWeek gives the ISO 8601 week-numbering year and week.
 func (d Day) ISOWeek() (year, week int) { return d.utc().ISOWeek() }
 
-// Midnight is the first instant of the day in the zone loc. Where clocks skip midnight, it is
-// the first instant that the day has.
+// Midnight is the first instant that falls on the day in the zone loc: local midnight, the moment
+// of the change where clocks skip midnight, and the earlier of two midnights where it comes twice.
+// A day that the zone never had (a move across the date line) begins when the next one does, so
+// that the span from its Midnight to the next day's is empty.
 func (d Day) Midnight(loc *time.Location) time.Time {
-	y, m, dd := d.Date()
-	t := time.Date(y, m, dd, 0, 0, 0, 0, loc)
-	if DayOf(t, loc) == d {
-		// Where midnight comes twice, or the zone's rule gave the later one, the first counts.
-		for _, back := range []time.Duration{3 * time.Hour, 2 * time.Hour, time.Hour, 30 * time.Minute} {
-			if e := t.Add(-back); DayOf(e, loc) == d {
-				return e
-			}
+	const farthest = 24 * time.Hour // no zone was ever this far from UTC
+	utc := d.utc()
+	for t := utc.Add(-farthest).In(loc); ; {
+		_, offset := t.Zone()
+		change := zoneEnd(t)
+		first := utc.Add(-time.Duration(offset) * time.Second).In(loc)
+		if first.Before(t) {
+			first = t
 		}
-		return t
-	}
-	// Midnight was skipped and time.Date fell into the day before: walk to the change.
-	lo, hi := t, t.Add(4*time.Hour)
-	for hi.Sub(lo) > time.Second {
-		mid := lo.Add(hi.Sub(lo) / 2)
-		if DayOf(mid, loc) < d {
-			lo = mid
-		} else {
-			hi = mid
+		if change.IsZero() || first.Before(change) {
+			return first
 		}
+		t = change
 	}
-	return hi.Truncate(time.Second)
+}
+
+// zoneEnd is an instant after t up to which t's offset holds; zero means for ever. ZoneBounds alone
+// will not do: where a zone changes by rule it counts every year as 365 days, so that on the last UTC
+// day of a leap year it gives an end which is not after t. No rule changes clocks on that day.
+func zoneEnd(t time.Time) time.Time {
+	_, end := t.ZoneBounds()
+	if end.IsZero() || end.After(t) {
+		return end
+	}
+	const day = 24 * time.Hour
+	return t.Truncate(day).Add(day).In(t.Location())
 }
 
 // MarshalText writes the day for JSON and YAML.
