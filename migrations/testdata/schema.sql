@@ -1,0 +1,315 @@
+CREATE TABLE accounts (
+    seq BIGINT NOT NULL REFERENCES entries (seq),
+    n BIGINT NOT NULL,
+    ended BIGINT NOT NULL,
+    entry TEXT NOT NULL,
+    batch TEXT NOT NULL,
+    id TEXT NOT NULL,
+    name TEXT NOT NULL,
+    role TEXT NOT NULL,
+    sites TEXT NOT NULL,
+    person TEXT NOT NULL,
+    until_day TEXT,
+    disabled BOOLEAN NOT NULL,
+    PRIMARY KEY (seq, n)
+);
+
+CREATE INDEX accounts_ended ON accounts (ended) WHERE ended > 0;
+
+CREATE TABLE attempts (
+    who TEXT NOT NULL PRIMARY KEY,
+    tries BIGINT NOT NULL,
+    last_try TEXT NOT NULL
+);
+
+CREATE TABLE batches (
+    seq BIGINT NOT NULL REFERENCES entries (seq),
+    n BIGINT NOT NULL,
+    ended BIGINT NOT NULL,
+    entry TEXT NOT NULL,
+    batch TEXT NOT NULL,
+    site TEXT NOT NULL,
+    what TEXT NOT NULL,
+    file TEXT NOT NULL,
+    row_count BIGINT NOT NULL,
+    actor TEXT NOT NULL,
+    at TEXT NOT NULL,
+    PRIMARY KEY (seq, n)
+);
+
+CREATE INDEX batches_ended ON batches (ended) WHERE ended > 0;
+
+CREATE TABLE credentials (
+    account TEXT NOT NULL PRIMARY KEY,
+    hash TEXT NOT NULL,
+    changed TEXT NOT NULL
+);
+
+CREATE TABLE entries (
+    seq INTEGER PRIMARY KEY,
+    id TEXT NOT NULL UNIQUE,
+    kind TEXT NOT NULL,
+    v BIGINT NOT NULL,
+    site TEXT NOT NULL,
+    batch TEXT NOT NULL,
+    supersedes TEXT NOT NULL,
+    actor TEXT NOT NULL,
+    recorded_at TEXT NOT NULL,
+    bytes BLOB NOT NULL
+);
+
+CREATE INDEX entries_actor ON entries (actor, seq);
+
+CREATE INDEX entries_batch ON entries (batch) WHERE batch <> '';
+
+CREATE INDEX entries_kind ON entries (kind, seq);
+
+CREATE INDEX entries_site ON entries (site, seq);
+
+CREATE UNIQUE INDEX entries_supersedes ON entries (supersedes) WHERE supersedes <> '';
+
+CREATE TABLE events (
+    seq BIGINT NOT NULL REFERENCES entries (seq),
+    n BIGINT NOT NULL,
+    ended BIGINT NOT NULL,
+    entry TEXT NOT NULL,
+    batch TEXT NOT NULL,
+    site TEXT NOT NULL,
+    subject_site TEXT NOT NULL,
+    subject_kind TEXT NOT NULL,
+    subject_code TEXT NOT NULL,
+    event TEXT NOT NULL,
+    on_day TEXT NOT NULL,
+    at_time TEXT,
+    PRIMARY KEY (seq, n)
+);
+
+CREATE INDEX events_ended ON events (ended) WHERE ended > 0;
+
+CREATE TABLE excusals (
+    seq BIGINT NOT NULL REFERENCES entries (seq),
+    n BIGINT NOT NULL,
+    ended BIGINT NOT NULL,
+    entry TEXT NOT NULL,
+    batch TEXT NOT NULL,
+    site TEXT NOT NULL,
+    subject_site TEXT NOT NULL,
+    subject_kind TEXT NOT NULL,
+    subject_code TEXT NOT NULL,
+    item TEXT NOT NULL,
+    from_day TEXT NOT NULL,
+    to_day TEXT,
+    opens BOOLEAN NOT NULL,
+    waiting BOOLEAN NOT NULL,
+    PRIMARY KEY (seq, n)
+);
+
+CREATE INDEX excusals_ended ON excusals (ended) WHERE ended > 0;
+
+CREATE TABLE facts (
+    seq BIGINT NOT NULL REFERENCES entries (seq),
+    n BIGINT NOT NULL,
+    ended BIGINT NOT NULL,
+    entry TEXT NOT NULL,
+    batch TEXT NOT NULL,
+    site TEXT NOT NULL,
+    kind TEXT NOT NULL,
+    code TEXT NOT NULL,
+    fact TEXT NOT NULL,
+    from_day TEXT NOT NULL,
+    value TEXT NOT NULL,
+    touched BIGINT NOT NULL,
+    PRIMARY KEY (seq, n)
+);
+
+CREATE INDEX facts_ended ON facts (ended) WHERE ended > 0;
+
+CREATE INDEX facts_touched ON facts (touched) WHERE touched > 0;
+
+CREATE TABLE fixtures (
+    seq BIGINT NOT NULL REFERENCES entries (seq),
+    n BIGINT NOT NULL,
+    ended BIGINT NOT NULL,
+    entry TEXT NOT NULL,
+    batch TEXT NOT NULL,
+    site TEXT NOT NULL,
+    code TEXT NOT NULL,
+    kind TEXT NOT NULL,
+    name TEXT NOT NULL,
+    PRIMARY KEY (seq, n)
+);
+
+CREATE INDEX fixtures_ended ON fixtures (ended) WHERE ended > 0;
+
+CREATE TABLE flags (
+    site TEXT NOT NULL,
+    item TEXT NOT NULL,
+    kind TEXT NOT NULL,
+    code TEXT NOT NULL,
+    standing TEXT NOT NULL,
+    owner TEXT NOT NULL,
+    due TEXT,
+    opened TEXT NOT NULL,
+    cleared TEXT,
+    reopened BIGINT NOT NULL,
+    PRIMARY KEY (site, item, kind, code)
+);
+
+CREATE TABLE links (
+    hash TEXT NOT NULL PRIMARY KEY,
+    account TEXT NOT NULL,
+    expires TEXT NOT NULL,
+    used TEXT
+);
+
+CREATE TABLE meta (
+    name TEXT NOT NULL PRIMARY KEY,
+    value TEXT NOT NULL
+);
+
+CREATE TABLE people (
+    seq BIGINT NOT NULL REFERENCES entries (seq),
+    n BIGINT NOT NULL,
+    ended BIGINT NOT NULL,
+    entry TEXT NOT NULL,
+    batch TEXT NOT NULL,
+    code TEXT NOT NULL,
+    name TEXT NOT NULL,
+    email TEXT NOT NULL,
+    badge TEXT NOT NULL,
+    erased BOOLEAN NOT NULL,
+    touched BIGINT NOT NULL,
+    PRIMARY KEY (seq, n)
+);
+
+CREATE INDEX people_ended ON people (ended) WHERE ended > 0;
+
+CREATE INDEX people_touched ON people (touched) WHERE touched > 0;
+
+CREATE TABLE plans (
+    seq BIGINT NOT NULL REFERENCES entries (seq),
+    n BIGINT NOT NULL,
+    ended BIGINT NOT NULL,
+    entry TEXT NOT NULL,
+    batch TEXT NOT NULL,
+    site TEXT NOT NULL,
+    what TEXT NOT NULL,
+    crew TEXT NOT NULL,
+    on_day TEXT NOT NULL,
+    at_clock TEXT NOT NULL,
+    PRIMARY KEY (seq, n)
+);
+
+CREATE INDEX plans_ended ON plans (ended) WHERE ended > 0;
+
+CREATE TABLE records (
+    seq BIGINT NOT NULL REFERENCES entries (seq),
+    n BIGINT NOT NULL,
+    ended BIGINT NOT NULL,
+    entry TEXT NOT NULL,
+    batch TEXT NOT NULL,
+    ord BIGINT NOT NULL,
+    site TEXT NOT NULL,
+    subject_site TEXT NOT NULL,
+    subject_kind TEXT NOT NULL,
+    subject_code TEXT NOT NULL,
+    what TEXT NOT NULL,
+    on_day TEXT NOT NULL,
+    at_time TEXT,
+    passed BOOLEAN NOT NULL,
+    remark BOOLEAN NOT NULL,
+    until_day TEXT,
+    open_zones TEXT NOT NULL,
+    session TEXT NOT NULL,
+    PRIMARY KEY (seq, n)
+);
+
+CREATE INDEX records_ended ON records (ended) WHERE ended > 0;
+
+CREATE TABLE runs (
+    job TEXT NOT NULL,
+    site TEXT NOT NULL,
+    due TEXT NOT NULL,
+    started TEXT NOT NULL,
+    finished TEXT,
+    outcome TEXT NOT NULL,
+    message TEXT NOT NULL,
+    PRIMARY KEY (job, site, due)
+);
+
+CREATE INDEX runs_started ON runs (started);
+
+CREATE TABLE sessions (
+    hash TEXT NOT NULL PRIMARY KEY,
+    account TEXT NOT NULL,
+    began TEXT NOT NULL,
+    expires TEXT NOT NULL,
+    last_seen TEXT NOT NULL
+);
+
+CREATE INDEX sessions_account ON sessions (account);
+
+CREATE TABLE sites (
+    seq BIGINT NOT NULL REFERENCES entries (seq),
+    n BIGINT NOT NULL,
+    ended BIGINT NOT NULL,
+    entry TEXT NOT NULL,
+    batch TEXT NOT NULL,
+    code TEXT NOT NULL,
+    name TEXT NOT NULL,
+    time_zone TEXT NOT NULL,
+    PRIMARY KEY (seq, n)
+);
+
+CREATE INDEX sites_ended ON sites (ended) WHERE ended > 0;
+
+CREATE TABLE stints (
+    seq BIGINT NOT NULL REFERENCES entries (seq),
+    n BIGINT NOT NULL,
+    ended BIGINT NOT NULL,
+    entry TEXT NOT NULL,
+    batch TEXT NOT NULL,
+    site TEXT NOT NULL,
+    kind TEXT NOT NULL,
+    code TEXT NOT NULL,
+    first_day TEXT,
+    last_day TEXT,
+    PRIMARY KEY (seq, n)
+);
+
+CREATE INDEX stints_ended ON stints (ended) WHERE ended > 0;
+
+CREATE TABLE tree (
+    idx INTEGER PRIMARY KEY,
+    hash BLOB NOT NULL
+);
+
+CREATE TABLE veils (
+    seq BIGINT NOT NULL REFERENCES entries (seq),
+    path TEXT NOT NULL,
+    person TEXT NOT NULL,
+    salt BLOB,
+    value BLOB,
+    erased BOOLEAN NOT NULL,
+    PRIMARY KEY (seq, path),
+    CHECK (erased = (salt IS NULL) AND erased = (value IS NULL))
+);
+
+CREATE INDEX veils_person ON veils (person) WHERE person <> '';
+
+CREATE TABLE versions (
+    seq BIGINT NOT NULL REFERENCES entries (seq),
+    n BIGINT NOT NULL,
+    ended BIGINT NOT NULL,
+    entry TEXT NOT NULL,
+    batch TEXT NOT NULL,
+    site TEXT NOT NULL,
+    number BIGINT NOT NULL,
+    in_force_from TEXT NOT NULL,
+    retroactive BOOLEAN NOT NULL,
+    source BLOB NOT NULL,
+    PRIMARY KEY (seq, n)
+);
+
+CREATE INDEX versions_ended ON versions (ended) WHERE ended > 0;
+
