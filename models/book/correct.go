@@ -1,0 +1,146 @@
+package book
+
+import (
+	"context"
+	"fmt"
+	"strings"
+
+	"lodebook/models/store"
+)
+
+// Withdraw takes an entry back. What it put on record no longer counts; the entry stays readable.
+func (b *Book) Withdraw(ctx context.Context, actor Actor, id string, fix Correction) (Receipt, error) {
+	return b.write(ctx, actor, func(s *session) error {
+		old, ok, err := s.tx.EntryByID(id)
+		if err != nil {
+			return err
+		}
+		if !ok {
+			return &NotFound{"entry", id}
+		}
+		switch old.Kind {
+		case kindProgram, kindErasure, kindWithdrawal, kindBatch, kindAccount:
+			return invalid("entry", id, fmt.Sprintf("is of kind %s, which is not withdrawn alone", old.Kind), "a new version, a new grant, or the undoing of the whole import")
+		}
+		body := &withdrawalBody{}
+		fix.fill(&body.common)
+		return s.add(draft{site: old.Site, supersedes: id, body: body})
+	})
+}
+
+// UndoImport takes a whole import back: every entry of it that still stands. Entries that were
+// corrected since stay as they were corrected.
+func (b *Book) UndoImport(ctx context.Context, actor Actor, batch string) (Receipt, error) {
+	return b.write(ctx, actor, func(s *session) error {
+		head, ok, err := s.tx.EntryByID(batch)
+		if err != nil {
+			return err
+		}
+		if !ok || head.Kind != kindBatch {
+			return &NotFound{"import", batch}
+		}
+		if err := actor.may(ImportTables, head.Site); err != nil {
+			return err
+		}
+		by, taken, err := s.batchUndone(batch)
+		if err != nil {
+			return err
+		}
+		if taken {
+			return &Stale{batch, by}
+		}
+		body := &withdrawalBody{WholeBatch: batch}
+		if err := s.add(draft{site: head.Site, body: body}); err != nil {
+			return err
+		}
+		size, err := s.tx.Size()
+		if err != nil {
+			return err
+		}
+		if err := s.tx.End(head.Seq, size-1); err != nil {
+			return err
+		}
+		return s.tx.EndBatch(batch, size-1)
+	})
+}
+
+// batchUndone tells whether an import was taken back already, and by which entry.
+func (s *session) batchUndone(batch string) (string, bool, error) {
+	for _, r := range s.m.batches {
+		if r.ID != batch || r.Ended == 0 {
+			continue
+		}
+		by, err := s.tx.EntryAt(r.Ended)
+		return by.ID, true, err
+	}
+	return "", false, nil
+}
+
+// ErasePerson makes a person's names and the free text about them unreadable for good. The entries
+// and their hashes stay. The file is scrubbed so that no byte of what was erased remains in it.
+func (b *Book) ErasePerson(ctx context.Context, actor Actor, person string) (Receipt, error) {
+	if err := actor.may(Erase, ""); err != nil {
+		return Receipt{}, err
+	}
+	if actor.Person == person {
+		return Receipt{}, &Denied{Action: Erase, Role: actor.Role, Why: "nobody erases themselves; ask another account"}
+	}
+	receipt, err := b.write(ctx, actor, func(s *session) error { return s.erase(person) })
+	if err != nil {
+		return Receipt{}, err
+	}
+	if err := b.st.Scrub(ctx); err != nil {
+		return receipt, fmt.Errorf("the person is erased, but the file could not be scrubbed; erase again once nobody else has it open: %w", err)
+	}
+	return receipt, b.reload(ctx)
+}
+
+func (s *session) erase(person string) error {
+	if err := s.add(draft{body: &erasureBody{Person: person}}); err != nil {
+		return err
+	}
+	size, err := s.tx.Size()
+	if err != nil {
+		return err
+	}
+	veils, err := s.tx.VeilsOfPerson(person)
+	if err != nil {
+		return err
+	}
+	if err := s.tx.EraseVeils(veils); err != nil {
+		return err
+	}
+	return blankRows(s.tx, person, size-1)
+}
+
+// blankRows takes out of the projected rows what was erased of a person.
+func blankRows(tx *store.Tx, person string, seq int64) error {
+	if err := tx.BlankPerson(person, seq); err != nil {
+		return err
+	}
+	if err := tx.BlankAccounts(person, seq); err != nil {
+		return err
+	}
+	veils, err := tx.VeilsOfPerson(person)
+	if err != nil {
+		return err
+	}
+	for _, v := range veils {
+		fact, ok := strings.CutPrefix(v.Path, "facts.")
+		if !ok {
+			continue
+		}
+		if err := tx.BlankFacts(v.Seq, seq, strings.TrimSuffix(fact, ".w")); err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
+// reload makes the model anew from the store, so that nothing erased stays in memory.
+func (b *Book) reload(ctx context.Context) error {
+	b.mu.Lock()
+	b.m = newModel()
+	b.mu.Unlock()
+	return b.sync(ctx)
+}

@@ -1,0 +1,266 @@
+package book
+
+import (
+	"context"
+	"fmt"
+	"slices"
+	"strings"
+	"time"
+
+	"lodebook/models/program"
+	"lodebook/models/store"
+)
+
+// EntryQuery chooses entries of the book; a zero field asks for nothing.
+type EntryQuery struct {
+	Site, Kind, Batch, Actor string
+	Before                   int64
+	From, To                 time.Time
+	Limit                    int
+}
+
+// Kinds are the kinds of entry with their words, for a filter.
+var Kinds = []struct{ Kind, Words string }{
+	{kindRecord, "Record"}, {kindPerson, "Person"}, {kindFixture, "Fixture"}, {kindEvent, "Event"}, {kindExcusal, "Excusal"},
+	{kindPause, "Pause"}, {kindPlan, "Plan"}, {kindWithdrawal, "Withdrawal"}, {kindProgram, "Program"}, {kindBatch, "Import"},
+	{kindAccount, "Account"}, {kindErasure, "Erasure"},
+}
+
+// Entries gives entries of the sites that the actor belongs to, newest first.
+func (b *Book) Entries(ctx context.Context, actor Actor, q EntryQuery) ([]EntryLine, error) {
+	if err := actor.may(SeeBook, q.Site); err != nil {
+		return nil, err
+	}
+	f := store.EntryFilter{Site: q.Site, Batch: q.Batch, Actor: q.Actor, Before: q.Before, From: q.From, To: q.To, Limit: max(1, min(q.Limit, 500))}
+	if q.Kind != "" {
+		f.Kinds = []string{q.Kind}
+	}
+	var out []EntryLine
+	err := b.withEntries(ctx, func(tx *store.Tx, m *model) error {
+		list, err := tx.Entries(f)
+		if err != nil {
+			return err
+		}
+		for _, e := range list {
+			line, _, err := m.entryLine(tx, e)
+			if err != nil {
+				return err
+			}
+			if e.Site == "" || actor.SeesSite(e.Site) {
+				out = append(out, line)
+			}
+		}
+		return nil
+	})
+	return out, err
+}
+
+func (b *Book) withEntries(ctx context.Context, fn func(tx *store.Tx, m *model) error) error {
+	return b.read(ctx, func(m *model) error {
+		return b.st.Read(ctx, func(tx *store.Tx) error { return fn(tx, m) })
+	})
+}
+
+// Entry gives one entry with its fields, what it superseded and what superseded it.
+func (b *Book) Entry(ctx context.Context, actor Actor, id string) (EntryView, error) {
+	var out EntryView
+	err := b.withEntries(ctx, func(tx *store.Tx, m *model) error {
+		e, ok, err := tx.EntryByID(id)
+		if err != nil {
+			return err
+		}
+		if !ok {
+			return &NotFound{"entry", id}
+		}
+		if err := m.maySeeEntry(tx, actor, e); err != nil {
+			return err
+		}
+		out, err = m.entryView(tx, e)
+		if err != nil {
+			return err
+		}
+		out.MayCorrect, out.NeedReason = m.mayCorrectEntry(actor, e, b.Now(), out)
+		return m.neighbours(tx, &out)
+	})
+	return out, err
+}
+
+// maySeeEntry lets everybody see what they wrote themselves, and what is about them.
+func (m *model) maySeeEntry(tx *store.Tx, actor Actor, e store.Entry) error {
+	denied := actor.may(SeeBook, e.Site)
+	if denied == nil || actor.Account != "" && e.Actor == actor.Account && actor.may(SeeOwn, e.Site) == nil {
+		return nil
+	}
+	if actor.may(SeeSite, e.Site) == nil && slices.Contains([]string{kindRecord, kindEvent, kindFixture}, e.Kind) {
+		return nil
+	}
+	veils, err := tx.Veils(e.Seq)
+	if err != nil {
+		return err
+	}
+	bd, err := decode(e, veils[e.Seq])
+	if err != nil {
+		return err
+	}
+	if r, ok := bd.(*recordBody); ok && actor.Person != "" && r.Subject.person() == actor.Person {
+		return nil
+	}
+	return denied
+}
+
+func (m *model) mayCorrectEntry(actor Actor, e store.Entry, now time.Time, v EntryView) (may, reason bool) {
+	if v.SupersededBy != "" || !slices.Contains([]string{kindRecord, kindPerson, kindFixture, kindEvent, kindExcusal, kindPause, kindPlan}, e.Kind) {
+		return false, false
+	}
+	own := actor.Account != "" && e.Actor == actor.Account
+	if own {
+		return actor.may(CorrectOwn, e.Site) == nil, now.Sub(e.RecordedAt) > slipTime
+	}
+	return actor.may(Correct, e.Site) == nil, true
+}
+
+func (m *model) neighbours(tx *store.Tx, v *EntryView) error {
+	for _, n := range []struct {
+		id string
+		to **EntryView
+	}{{v.Supersedes, &v.Old}, {v.SupersededBy, &v.New}} {
+		if n.id == "" {
+			continue
+		}
+		e, ok, err := tx.EntryByID(n.id)
+		if err != nil {
+			return err
+		}
+		if !ok {
+			continue
+		}
+		view, err := m.entryView(tx, e)
+		if err != nil {
+			return err
+		}
+		*n.to = &view
+	}
+	return nil
+}
+
+func (m *model) entryLine(tx *store.Tx, e store.Entry) (EntryLine, body, error) {
+	veils, err := tx.Veils(e.Seq)
+	if err != nil {
+		return EntryLine{}, nil, err
+	}
+	bd, err := decode(e, veils[e.Seq])
+	if err != nil {
+		return EntryLine{}, nil, err
+	}
+	line := EntryLine{
+		Seq: e.Seq, ID: e.ID, Kind: e.Kind, Site: e.Site, At: e.RecordedAt, ActorID: e.Actor, Actor: m.actorName(e.Actor, bd),
+		Summary: m.summary(e, bd), Batch: e.Batch, Supersedes: e.Supersedes,
+	}
+	by, ok, err := tx.SupersededBy(e.ID)
+	if err != nil {
+		return line, bd, err
+	}
+	if ok {
+		line.SupersededBy, line.Withdrawn = by.ID, by.Kind == kindWithdrawal
+	}
+	for _, r := range m.batches {
+		if r.ID == e.Batch && r.Ended != 0 || r.ID == e.ID && r.Ended != 0 {
+			line.Withdrawn = true
+		}
+	}
+	return line, bd, nil
+}
+
+func (m *model) actorName(id string, bd body) string {
+	switch id {
+	case "operator":
+		return "operator " + bd.shared().Operator.String()
+	case "job":
+		return "a scheduled job"
+	}
+	if a, ok := m.account(id); ok && a.Name != "" {
+		return a.Name
+	}
+	return "account " + id
+}
+
+func (m *model) subjectWords(site string, s subjectBody) string {
+	v := &siteOn{SiteView: SiteView{Code: site, Program: &program.Program{}}, m: m}
+	if sm := m.site(site); sm != nil {
+		v.Program, v.Name = sm.newest().program, sm.newest().program.Site.Name
+	}
+	return v.subjectName(subjectOf(s.Kind, s.Code))
+}
+
+// summary says in one line what the entry says.
+func (m *model) summary(e store.Entry, bd body) string {
+	switch b := bd.(type) {
+	case *recordBody:
+		result := "passed"
+		if b.Result == Fail {
+			result = "failed"
+		}
+		return fmt.Sprintf("%s %s, %s, %s", b.Record, result, m.subjectWords(e.Site, b.Subject), b.On)
+	case *personBody:
+		return "Person " + m.subjectWords(e.Site, subjectBody{"person", b.Code}) + saidOf(b.Stint, b.Facts)
+	case *fixtureBody:
+		return "Fixture " + m.subjectWords(e.Site, subjectBody{"fixture", b.Code}) + saidOf(b.Stint, b.Facts)
+	case *eventBody:
+		return fmt.Sprintf("%s, %s, %s", b.Event, m.subjectWords(e.Site, b.Subject), b.On)
+	case *excusalBody:
+		return fmt.Sprintf("%s excused for %s, %s to %s", b.Item, m.subjectWords(e.Site, b.Subject), b.From, b.To)
+	case *pauseBody:
+		return fmt.Sprintf("Pause of %s, %s to %s", m.subjectWords(e.Site, b.Subject), b.From, dayOr(b.To, "no end yet"))
+	case *planBody:
+		return fmt.Sprintf("Planned: %s for %s", b.Record, b.Day)
+	case *programBody:
+		return fmt.Sprintf("Program, version %d, in force from %s", b.Number, b.InForceFrom)
+	case *batchBody:
+		return fmt.Sprintf("Import of %d %s", b.Rows, b.Table)
+	case *withdrawalBody:
+		if b.WholeBatch != "" {
+			return "An import taken back whole"
+		}
+		return "Withdrawn: an earlier entry"
+	case *erasureBody:
+		return "A person erased: " + b.Person
+	case *accountBody:
+		return fmt.Sprintf("Account %s, %s", b.Name, b.Role.Words())
+	default:
+		return e.Kind
+	}
+}
+
+func saidOf(s *stintBody, facts map[string]factValue) string {
+	var parts []string
+	if s != nil {
+		parts = append(parts, "from "+dayOr(s.First, "the beginning")+" to "+dayOr(s.Last, "no end yet"))
+	}
+	for _, k := range sortedKeys(facts) {
+		parts = append(parts, k+" "+facts[k].show())
+	}
+	if len(parts) == 0 {
+		return ""
+	}
+	return ": " + strings.Join(parts, ", ")
+}
+
+func (m *model) entryView(tx *store.Tx, e store.Entry) (EntryView, error) {
+	line, bd, err := m.entryLine(tx, e)
+	if err != nil {
+		return EntryView{}, err
+	}
+	v := EntryView{EntryLine: line, Canonical: string(e.Bytes), Fields: m.fields(e, bd)}
+	if r, ok := bd.(*recordBody); ok {
+		s := subjectOf(r.Subject.Kind, r.Subject.Code)
+		v.SubjectRef, v.Record = &s, r.Record
+	}
+	c := bd.shared()
+	if c.Reason != "" {
+		v.Reason = ReasonWords(c.Reason)
+	}
+	if !c.ReasonText.IsZero() {
+		v.Reason = strings.TrimPrefix(v.Reason+": "+c.ReasonText.String(), ": ")
+	}
+	return v, nil
+}

@@ -1,0 +1,285 @@
+package book
+
+import (
+	"context"
+	"fmt"
+	"slices"
+	"strings"
+
+	"lodebook/models/civil"
+	"lodebook/models/program"
+)
+
+// RecordForm is something done, as typed. Subject is a code, or kind:code where two kinds share one.
+type RecordForm struct {
+	ID      string // the entry's identifier; empty: a new one
+	Record  string // kind/code
+	Subject string
+	On      string // YYYY-MM-DD, or an instant in RFC 3339
+	Result  string // pass or fail; empty: pass
+	Until   string
+	Limit   string // zones, separated by spaces
+	By      string
+	Note    string
+}
+
+// Record puts one thing done on record.
+func (b *Book) Record(ctx context.Context, actor Actor, site string, f RecordForm, fix Correction) (Receipt, error) {
+	return b.write(ctx, actor, func(s *session) error {
+		body, faults := s.check(site).recordBody(f)
+		if len(faults) > 0 {
+			return &Invalid{faults}
+		}
+		if err := s.mayRecord(site, body); err != nil {
+			return err
+		}
+		fix.fill(&body.common)
+		return s.add(draft{id: f.ID, site: site, supersedes: fix.Supersedes, body: body})
+	})
+}
+
+// recordBody reads the form.
+func (c *check) recordBody(f RecordForm) (*recordBody, []Fault) {
+	subject, faults := c.subject("subject", f.Subject)
+	body := &recordBody{
+		Record: strings.TrimSpace(f.Record), Subject: subject, On: strings.TrimSpace(f.On), Result: strings.TrimSpace(f.Result),
+		Limit: strings.Fields(f.Limit), By: c.claim(f.By), Note: veiled(strings.TrimSpace(f.Note), subject.person()),
+	}
+	if body.Result == "" {
+		body.Result = Pass
+	}
+	if f.Until != "" {
+		d, err := civil.ParseDay(f.Until)
+		if err != nil {
+			faults = append(faults, Fault{"until", f.Until, "is not a day", "write it as YYYY-MM-DD"})
+		}
+		body.Until = &d
+	}
+	return body, faults
+}
+
+// claim veils the name of whoever is said to have done or approved something; where it is a person
+// of the book it goes with them when they are erased.
+func (c *check) claim(by string) Veiled {
+	by = strings.TrimSpace(by)
+	if by == "" {
+		return Veiled{}
+	}
+	if _, ok := c.m.person(by); ok {
+		return veiled(by, by)
+	}
+	return veiled(by, c.m.personNamed(by))
+}
+
+// subject resolves a code, or kind:code, to the subject that bears it.
+func (c *check) subject(field, text string) (subjectBody, []Fault) {
+	text = strings.TrimSpace(text)
+	if kind, code, ok := strings.Cut(text, ":"); ok && slices.Contains(program.AllAsks, program.Asks(kind)) {
+		return subjectBody{kind, code}, nil
+	}
+	kinds := c.m.kindsOf(c.site, text)
+	switch len(kinds) {
+	case 1:
+		return subjectBody{kinds[0], text}, nil
+	case 0:
+		return subjectBody{}, []Fault{{field, text, "is on record neither as a person nor as anything of this site", "the code of a person, fixture, zone, crew, post or document"}}
+	default:
+		forms := make([]string, len(kinds))
+		for i, k := range kinds {
+			forms[i] = k + ":" + text
+		}
+		return subjectBody{}, []Fault{{field, text, "is the code of more than one thing", "write " + strings.Join(forms, " or ")}}
+	}
+}
+
+// mayRecord checks the actor's permission for a kind of record and its subject.
+func (s *session) mayRecord(site string, b *recordBody) error {
+	kind, code, _ := strings.Cut(b.Record, "/")
+	self := s.actor.Person != "" && s.actor.Person == b.Subject.person()
+	switch kind {
+	case "inspection", "check":
+		return s.mayFill(site, code)
+	case "acknowledgement":
+		if self {
+			return s.actor.may(Acknowledge, site)
+		}
+	case "screening", "appointment":
+		if self {
+			return &Denied{Action: RecordDone, Role: s.actor.Role, Why: "nobody records their own " + kind + "; ask another safety officer"}
+		}
+	}
+	return s.actor.may(RecordDone, site)
+}
+
+// mayFill checks that the sheet's recorded_by names the actor's role, crew or level.
+func (s *session) mayFill(site, sheet string) error {
+	if err := s.actor.may(FillSheet, site); err != nil {
+		return err
+	}
+	return s.m.mayFill(s.actor, site, sheet, s.check(site).today())
+}
+
+func (m *model) mayFill(actor Actor, site, sheet string, on civil.Day) error {
+	recorders := []string{string(Facilities), string(SafetyOfficer)}
+	sm := m.site(site)
+	if sm == nil {
+		return &NotFound{"site", site}
+	}
+	p := sm.on(on).program
+	if sh, ok := p.Sheet(sheet); ok {
+		recorders = p.Recorders(sh)
+	}
+	names := []string{string(actor.Role)}
+	if actor.Person != "" {
+		profile := m.engine.Profile(site, subjectOf("person", actor.Person), on, always64)
+		names = append(names, profile.Crew, profile.Level)
+	}
+	for _, n := range names {
+		if n != "" && slices.Contains(recorders, n) {
+			return nil
+		}
+	}
+	return &Denied{Action: FillSheet, Role: actor.Role, Why: fmt.Sprintf("this sheet is recorded by %s", strings.Join(recorders, ", "))}
+}
+
+// SessionForm is one training, screening or review that many people took part in.
+type SessionForm struct {
+	Record string
+	On     string
+	Until  string
+	By     string
+	Note   string
+	People []string // codes of those who passed
+	Failed []string // codes of those who did not
+}
+
+// RecordSession puts one record for each person on record, all in one write.
+func (b *Book) RecordSession(ctx context.Context, actor Actor, site string, f SessionForm) (Receipt, error) {
+	if err := actor.may(RecordDone, site); err != nil {
+		return Receipt{}, err
+	}
+	if len(f.People)+len(f.Failed) == 0 {
+		return Receipt{}, invalid("people", "", "nobody is chosen", "tick everybody who took part")
+	}
+	return b.write(ctx, actor, func(s *session) error {
+		id, err := b.newID(s.now)
+		if err != nil {
+			return err
+		}
+		return s.addRecords(site, id, f, nil)
+	})
+}
+
+// addRecords writes a record for each person of a session, and for its crew where it is a drill.
+func (s *session) addRecords(site, session string, f SessionForm, crew *recordBody) error {
+	var drafts []draft
+	var all []Fault
+	if crew != nil {
+		drafts = append(drafts, draft{site: site, body: crew})
+	}
+	for _, who := range []struct {
+		codes  []string
+		result string
+	}{{f.People, Pass}, {f.Failed, Fail}} {
+		for _, code := range who.codes {
+			body, faults := s.check(site).recordBody(RecordForm{Record: f.Record, Subject: "person:" + code, On: f.On, Until: f.Until, By: f.By, Note: f.Note, Result: who.result})
+			all = append(all, faults...)
+			body.Session = session
+			if err := s.mayRecord(site, body); err != nil {
+				return err
+			}
+			drafts = append(drafts, draft{site: site, body: body})
+		}
+	}
+	if len(all) > 0 {
+		return &Invalid{all}
+	}
+	return s.add(drafts...)
+}
+
+// DrillForm is a drill that was held: with a crew, and with who took part.
+type DrillForm struct {
+	Plan   string // identifier of the plan that it answers, or empty
+	Record string // drill/code
+	Crew   string
+	On     string
+	People []string
+	Result string
+	By     string
+	Note   string
+}
+
+// RecordDrill puts a drill on record: for its crew and for each person who took part.
+func (b *Book) RecordDrill(ctx context.Context, actor Actor, site string, f DrillForm) (Receipt, error) {
+	if err := actor.may(RecordDone, site); err != nil {
+		return Receipt{}, err
+	}
+	if f.Crew == "" && len(f.People) == 0 {
+		return Receipt{}, invalid("crew", "", "neither a crew nor anybody is named", "choose the crew, or tick who took part")
+	}
+	return b.write(ctx, actor, func(s *session) error {
+		id := f.Plan
+		if id == "" {
+			var err error
+			if id, err = b.newID(s.now); err != nil {
+				return err
+			}
+		}
+		var crew *recordBody
+		if f.Crew != "" {
+			body, faults := s.check(site).recordBody(RecordForm{Record: f.Record, Subject: "crew:" + f.Crew, On: f.On, By: f.By, Note: f.Note, Result: f.Result})
+			if len(faults) > 0 {
+				return &Invalid{faults}
+			}
+			body.Session, body.Takers = id, f.People
+			crew = body
+		}
+		people := SessionForm{Record: f.Record, On: f.On, By: f.By, Note: f.Note, People: f.People}
+		if f.Result == Fail {
+			people.People, people.Failed = nil, f.People
+		}
+		return s.addRecords(site, id, people, crew)
+	})
+}
+
+// PlanForm is a drill or session to come.
+type PlanForm struct{ Record, Crew, Day, At, Note string }
+
+// PlanDrill puts a plan on record.
+func (b *Book) PlanDrill(ctx context.Context, actor Actor, site string, f PlanForm, fix Correction) (Receipt, error) {
+	if err := actor.may(PlanDrills, site); err != nil {
+		return Receipt{}, err
+	}
+	day, err := civil.ParseDay(f.Day)
+	if err != nil {
+		return Receipt{}, invalid("day", f.Day, "is not a day", "write it as YYYY-MM-DD")
+	}
+	return b.write(ctx, actor, func(s *session) error {
+		body := &planBody{Record: f.Record, Crew: f.Crew, Day: day, At: f.At, Note: veiled(strings.TrimSpace(f.Note), "")}
+		fix.fill(&body.common)
+		return s.add(draft{site: site, supersedes: fix.Supersedes, body: body})
+	})
+}
+
+// EventForm is something that happened to a subject, as typed.
+type EventForm struct{ ID, Event, Subject, On, Note string }
+
+// ReportEvent puts an event on record.
+func (b *Book) ReportEvent(ctx context.Context, actor Actor, site string, f EventForm, fix Correction) (Receipt, error) {
+	if err := actor.may(ReportEvent, site); err != nil {
+		return Receipt{}, err
+	}
+	return b.write(ctx, actor, func(s *session) error {
+		body, faults := s.check(site).eventBody(f)
+		if len(faults) > 0 {
+			return &Invalid{faults}
+		}
+		fix.fill(&body.common)
+		return s.add(draft{id: f.ID, site: site, supersedes: fix.Supersedes, body: body})
+	})
+}
+
+func (c *check) eventBody(f EventForm) (*eventBody, []Fault) {
+	subject, faults := c.subject("subject", f.Subject)
+	return &eventBody{Event: strings.TrimSpace(f.Event), Subject: subject, On: strings.TrimSpace(f.On), Note: veiled(strings.TrimSpace(f.Note), subject.person())}, faults
+}
