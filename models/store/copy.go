@@ -104,9 +104,9 @@ func verifyAndClose(ctx context.Context, s *Store) (Report, error) {
 // withCopy lets make fill an empty file beside out and then gives it that name. If anything fails,
 // nothing is left.
 func withCopy(out string, make func(temporary string) error) error {
-	_, err := os.Lstat(out)
-	if err == nil {
-		return refuse(nil, "%s exists already and is left as it is; name another file.", out)
+	err := vacant(out)
+	if err != nil {
+		return err
 	}
 	f, err := os.CreateTemp(filepath.Dir(out), "."+filepath.Base(out)+".*")
 	if err != nil {
@@ -129,7 +129,11 @@ func withCopy(out string, make func(temporary string) error) error {
 // place gives a finished file its name for good: its bytes are on the disk before the name is, and
 // a file that somebody else made there meanwhile is not overwritten.
 func place(temporary, out string) error {
-	err := sync(temporary)
+	err := vacant(temporary + "-wal")
+	if err != nil {
+		return err // the copy is not all in its file
+	}
+	err = sync(temporary)
 	if err != nil {
 		return err
 	}

@@ -1,7 +1,9 @@
 package store
 
 import (
+	"cmp"
 	"fmt"
+	"slices"
 	"sort"
 	"time"
 
@@ -230,23 +232,50 @@ type EntryFilter struct {
 
 // Entries gives the entries that the filter chooses, newest first.
 func (t *Tx) Entries(f EntryFilter) ([]Entry, error) {
+	q, err := t.chosen(f)
+	if err != nil {
+		return nil, err
+	}
+	if len(f.Kinds) == 0 {
+		rows, err := find[entryRow](q)
+		return entriesOf(rows), err
+	}
+	// Each kind is asked for by itself, which its index answers in order; several at once would be
+	// sorted whole for the first page of them.
+	var all []entryRow
+	for _, kind := range f.Kinds {
+		rows, err := find[entryRow](q.Where("kind = ?", kind))
+		if err != nil {
+			return nil, err
+		}
+		all = append(all, rows...)
+	}
+	slices.SortFunc(all, func(a, b entryRow) int { return cmp.Compare(b.Seq, a.Seq) })
+	if f.Limit > 0 && len(all) > f.Limit {
+		all = all[:f.Limit]
+	}
+	return entriesOf(all), nil
+}
+
+// chosen is the query of a filter without its kinds. It can be gone on from more than once.
+func (t *Tx) chosen(f EntryFilter) (*gorm.DB, error) {
 	q, err := t.span(t.entries(), f)
 	if err != nil {
 		return nil, err
 	}
-	for column, value := range map[string]string{"site": f.Site, "batch": f.Batch, "actor": f.Actor} {
-		if value != "" {
-			q = q.Where(column+" = ?", value)
-		}
+	if f.Site != "" {
+		q = q.Where("site = ?", f.Site)
 	}
-	if len(f.Kinds) > 0 {
-		q = q.Where("kind IN ?", f.Kinds)
+	if f.Batch != "" {
+		q = q.Where("batch = ? AND batch <> ''", f.Batch)
+	}
+	if f.Actor != "" {
+		q = q.Where("actor = ?", f.Actor)
 	}
 	if f.Limit > 0 {
 		q = q.Limit(f.Limit)
 	}
-	rows, err := find[entryRow](q.Order("seq DESC"))
-	return entriesOf(rows), err
+	return q.Order("seq DESC").Session(&gorm.Session{}), nil
 }
 
 // span narrows a query to the sequence numbers that the filter's bounds come down to.

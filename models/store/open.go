@@ -3,6 +3,7 @@ package store
 import (
 	"context"
 	"database/sql"
+	"encoding/binary"
 	"errors"
 	"fmt"
 	"io"
@@ -47,8 +48,24 @@ func create(ctx context.Context, path string, set settings) (*Store, error) {
 	return s, nil
 }
 
+// vacant refuses a path where there is a file, or where a journal was left behind: SQLite would play
+// that into whatever book is put beside it.
+func vacant(path string) error {
+	for _, end := range []string{"", "-wal", "-journal"} {
+		_, err := os.Lstat(path + end)
+		if err == nil {
+			return refuse(fs.ErrExist, "%s exists already and is left as it is; name another file.", path+end)
+		}
+	}
+	return nil
+}
+
 // reserve makes an empty file where there must be none.
 func reserve(path string) error {
+	err := vacant(path)
+	if err != nil {
+		return err
+	}
 	f, err := os.OpenFile(path, os.O_RDWR|os.O_CREATE|os.O_EXCL, 0o600)
 	if errors.Is(err, fs.ErrExist) {
 		return refuse(err, "%s exists already and is left as it is; name another file.", path)
@@ -142,23 +159,43 @@ func mustBeFile(path string) error {
 func tryFile(path string, how int) error {
 	f, err := os.OpenFile(path, how, 0)
 	if errors.Is(err, fs.ErrPermission) || errors.Is(err, syscall.EROFS) {
-		return refuse(err, "%s is read-only for this user; a book must be writable.", path)
+		return refuse(err, "%s cannot be written by this user; a book must be writable.", path)
 	}
 	if err != nil {
 		return refuse(err, "%s cannot be opened: %s.", path, plainly(err))
 	}
-	err = checkMagic(path, f)
+	err = checkForm(path, f)
 	return errors.Join(err, f.Close())
 }
 
-// magic is how every SQLite file begins.
-const magic = "SQLite format 3\x00"
+// magic is how every SQLite file begins. The page size stands at pageSizeAt, in two bytes, of which
+// 1 means 65536 (SQLite's file format, section 1.3).
+const (
+	magic      = "SQLite format 3\x00"
+	headerSize = 100
+	pageSizeAt = 16
+)
 
-func checkMagic(path string, f io.Reader) error {
-	head := make([]byte, len(magic))
+// checkForm looks at what SQLite itself takes no notice of: a file that another program wrote, and
+// one whose last page was cut off, which it would fill up with zeros.
+func checkForm(path string, f *os.File) error {
+	head := make([]byte, headerSize)
 	_, err := io.ReadFull(f, head)
-	if err != nil || string(head) != magic {
+	if err != nil || string(head[:len(magic)]) != magic {
 		return refuse(err, "%s is not a book.", path)
+	}
+	size := int64(binary.BigEndian.Uint16(head[pageSizeAt:]))
+	if size == 1 {
+		size = 65536
+	}
+	info, err := f.Stat()
+	if err != nil {
+		return err
+	}
+	// What is still in the journal may mend a file that a crash left so.
+	journal, err := os.Stat(path + "-wal")
+	if info.Size()%max(size, 1) != 0 && (err != nil || journal.Size() == 0) {
+		return refuse(ErrCorrupt, "%s is damaged: its end is missing; restore it from a backup.", path)
 	}
 	return nil
 }

@@ -3,6 +3,8 @@ package store
 import (
 	"cmp"
 	"context"
+	"database/sql"
+	"errors"
 	"fmt"
 	"slices"
 	"strings"
@@ -186,7 +188,7 @@ func (t *Tx) Changed(since int64) (Delta, error) {
 }
 
 func (p table[T, R]) changed(t *Tx, since int64, to *Delta) error {
-	rows, err := find[R](p.since(t.db.Table(p.name), since).Order("seq, n"))
+	rows, err := p.since(t.db.Table(p.name), since)
 	if err != nil {
 		return err
 	}
@@ -198,16 +200,32 @@ func (p table[T, R]) changed(t *Tx, since int64, to *Delta) error {
 	return nil
 }
 
-// since writes its conditions so that each side of the OR finds its index (the indexes on ended
-// and touched hold only what is above 0).
-func (p table[T, R]) since(q *gorm.DB, since int64) *gorm.DB {
-	switch {
-	case since < 0:
-		return q
-	case p.blanks:
-		return q.Where("seq > ? OR (ended > 0 AND ended > ?) OR (touched > 0 AND touched > ?)", since, since, since)
+// since asks for new, ended and blanked rows one after the other, each by its index: SQLite would
+// answer them in one condition, or in order, by reading the whole table. The indexes on ended and
+// touched hold only what is above 0.
+func (p table[T, R]) since(q *gorm.DB, since int64) ([]R, error) {
+	if since < 0 {
+		return find[R](q.Order("seq, n"))
 	}
-	return q.Where("seq > ? OR (ended > 0 AND ended > ?)", since, since)
+	conditions := []string{"seq > @since", "ended > 0 AND ended > @since AND +seq <= @since"}
+	if p.blanks {
+		conditions = append(conditions, "touched > 0 AND touched > @since AND +seq <= @since AND ended <= @since")
+	}
+	var all []R
+	for _, c := range conditions {
+		rows, err := find[R](q.Session(&gorm.Session{}).Where(c, sql.Named("since", since)))
+		if err != nil {
+			return nil, err
+		}
+		all = append(all, rows...)
+	}
+	slices.SortFunc(all, func(a, b R) int { return p.columns(&a).compare(p.columns(&b)) })
+	return all, nil
+}
+
+// compare orders rows by their entry and their place in it.
+func (c *lineColumns) compare(d *lineColumns) int {
+	return cmp.Or(cmp.Compare(c.Seq, d.Seq), cmp.Compare(c.N, d.N))
 }
 
 // End marks the rows of entry seq that stand as ended by entry by.
@@ -290,23 +308,44 @@ func (s *Store) Dump(ctx context.Context) (map[string][]string, error) {
 }
 
 func (t *Tx) dump(name string) ([]string, error) {
-	var rows []map[string]any
-	err := t.db.Table(name).Find(&rows).Error
+	rows, err := t.db.Table(name).Rows()
 	if err != nil {
 		return nil, err
 	}
-	lines := make([]string, len(rows))
-	for i, r := range rows {
-		cells := make([]string, 0, len(r))
-		for k, v := range r {
-			if b, ok := v.([]byte); ok {
-				v = string(b)
-			}
-			cells = append(cells, fmt.Sprintf("%s=%q", k, fmt.Sprint(v)))
+	lines, err := rowsAsText(rows)
+	return lines, errors.Join(err, rows.Close())
+}
+
+// rowsAsText writes each row as name="value" for every column, and sorts the rows.
+func rowsAsText(rows *sql.Rows) ([]string, error) {
+	columns, err := rows.Columns()
+	if err != nil {
+		return nil, err
+	}
+	cells := make([]sql.NullString, len(columns))
+	into := make([]any, len(columns))
+	for i := range cells {
+		into[i] = &cells[i]
+	}
+	lines := []string{}
+	for rows.Next() {
+		err = rows.Scan(into...)
+		if err != nil {
+			return nil, err
 		}
-		slices.Sort(cells)
-		lines[i] = strings.Join(cells, " ")
+		lines = append(lines, rowAsText(columns, cells))
 	}
 	slices.Sort(lines)
-	return lines, nil
+	return lines, rows.Err()
+}
+
+func rowAsText(columns []string, cells []sql.NullString) string {
+	parts := make([]string, len(columns))
+	for i, c := range cells {
+		parts[i] = fmt.Sprintf("%s=%q", columns[i], c.String)
+		if !c.Valid {
+			parts[i] = columns[i] + "=null"
+		}
+	}
+	return strings.Join(parts, " ")
 }

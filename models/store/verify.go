@@ -51,19 +51,10 @@ func (s *Store) Verify(ctx context.Context, progress func(done, total int64), ch
 		report.FirstFault = f.sentence
 		err = nil
 	case errors.Is(err, ErrCorrupt):
-		report.FirstFault = "The book's file is damaged: " + cause(err) + "."
+		report.FirstFault = err.Error()
 		err = nil
 	}
 	return report, err
-}
-
-// cause is the innermost sentence of a damaged file's error.
-func cause(err error) string {
-	var r *Refusal
-	if errors.As(err, &r) && r.Err != nil {
-		err = r.Err
-	}
-	return regexp.MustCompile(`\s+`).ReplaceAllString(err.Error(), " ")
 }
 
 type verifier struct {
@@ -108,13 +99,13 @@ func (v *verifier) structure() error {
 	if found != "ok" {
 		return faulty("The book's file is damaged: %s.", found)
 	}
-	var dangling []map[string]any
-	err = v.t.db.Raw("PRAGMA foreign_key_check").Scan(&dangling).Error
+	var dangling []string
+	err = v.t.db.Raw(`SELECT DISTINCT "table" FROM pragma_foreign_key_check ORDER BY 1`).Scan(&dangling).Error
 	if err != nil {
 		return err
 	}
 	if len(dangling) > 0 {
-		return faulty("A row of %v belongs to an entry that is not in the book.", dangling[0]["table"])
+		return faulty("A row of %s belongs to an entry that is not in the book.", dangling[0])
 	}
 	return nil
 }
