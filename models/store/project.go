@@ -200,19 +200,24 @@ func (p table[T, R]) changed(t *Tx, since int64, to *Delta) error {
 	return nil
 }
 
-// since asks for new, ended and blanked rows one after the other, each by its index: SQLite would
-// answer them in one condition, or in order, by reading the whole table. The indexes on ended and
-// touched hold only what is above 0.
+// sinceConditions ask for new, ended and (of a table that has them) blanked rows, each by its index:
+// SQLite would answer them in one condition, or in order, by reading the whole table. The indexes
+// on ended and touched hold only what is above 0; the plus keeps SQLite from choosing another.
+func sinceConditions(blanks bool) []string {
+	c := []string{"seq > @since", "ended > 0 AND ended > @since AND +seq <= @since"}
+	if blanks {
+		c = append(c, "touched > 0 AND touched > @since AND +seq <= @since AND +ended <= @since")
+	}
+	return c
+}
+
+// since gives the rows that changed, in order.
 func (p table[T, R]) since(q *gorm.DB, since int64) ([]R, error) {
 	if since < 0 {
 		return find[R](q.Order("seq, n"))
 	}
-	conditions := []string{"seq > @since", "ended > 0 AND ended > @since AND +seq <= @since"}
-	if p.blanks {
-		conditions = append(conditions, "touched > 0 AND touched > @since AND +seq <= @since AND ended <= @since")
-	}
 	var all []R
-	for _, c := range conditions {
+	for _, c := range sinceConditions(p.blanks) {
 		rows, err := find[R](q.Session(&gorm.Session{}).Where(c, sql.Named("since", since)))
 		if err != nil {
 			return nil, err
