@@ -133,7 +133,7 @@ func place(temporary, out string) error {
 	if err != nil {
 		return err // the copy is not all in its file
 	}
-	err = sync(temporary)
+	err = flush(temporary)
 	if err != nil {
 		return err
 	}
@@ -145,10 +145,11 @@ func place(temporary, out string) error {
 	if err != nil {
 		return errors.Join(err, os.Remove(out))
 	}
-	return sync(filepath.Dir(out))
+	return flush(filepath.Dir(out))
 }
 
-func sync(path string) error {
+// flush makes sure that a file, or the names in a folder, are on the disk.
+func flush(path string) error {
 	f, err := os.Open(path)
 	if err != nil {
 		return err

@@ -9,7 +9,6 @@ import (
 	"path/filepath"
 	"strings"
 	"testing"
-	"time"
 
 	"lodebook/models/ledger"
 )
@@ -282,11 +281,10 @@ func TestScrubSaysWhenItCannot(t *testing.T) {
 		_, err := tx.Size()
 		must(t, err)
 		write(t, s, func(w *Tx) error { _, err := w.Append([]Entry{entry(10)}, nil); return err })
-		start := time.Now()
 		err = s.Scrub(background)
 		refused(t, err, "by another program")
-		if !errors.Is(err, ErrBusy) || time.Since(start) < s.set.busy {
-			t.Errorf("it gave up after %v with %v", time.Since(start), err)
+		if !errors.Is(err, ErrBusy) {
+			t.Errorf("%v is not ErrBusy", err)
 		}
 		return nil
 	})
