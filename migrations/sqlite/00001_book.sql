@@ -235,9 +235,11 @@ CREATE TABLE accounts (
     person TEXT NOT NULL,
     until_day TEXT,
     disabled BOOLEAN NOT NULL,
+    touched BIGINT NOT NULL,
     PRIMARY KEY (seq, n)
 );
 CREATE INDEX accounts_ended ON accounts (ended) WHERE ended > 0;
+CREATE INDEX accounts_touched ON accounts (touched) WHERE touched > 0;
 
 CREATE TABLE batches (
     seq BIGINT NOT NULL REFERENCES entries (seq),

@@ -11,10 +11,13 @@ CREATE TABLE accounts (
     person TEXT NOT NULL,
     until_day TEXT,
     disabled BOOLEAN NOT NULL,
+    touched BIGINT NOT NULL,
     PRIMARY KEY (seq, n)
 );
 
 CREATE INDEX accounts_ended ON accounts (ended) WHERE ended > 0;
+
+CREATE INDEX accounts_touched ON accounts (touched) WHERE touched > 0;
 
 CREATE TABLE attempts (
     who TEXT NOT NULL PRIMARY KEY,

@@ -210,10 +210,11 @@ type accountLine struct {
 	Person         string
 	UntilDay       *day
 	Disabled       bool
+	Touched        int64
 }
 
 func accountIn(r AccountRow) accountLine {
-	return accountLine{lineIn(r.Line), r.ID, r.Name, r.Role, codes(r.Sites), r.Person, (*day)(r.Until), r.Disabled}
+	return accountLine{lineIn(r.Line), r.ID, r.Name, r.Role, codes(r.Sites), r.Person, (*day)(r.Until), r.Disabled, 0}
 }
 
 func accountOut(r accountLine) AccountRow {

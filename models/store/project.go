@@ -60,7 +60,7 @@ var projections = []projection{
 	table[EventRow, eventLine]{"events", eventIn, eventOut, func(r *eventLine) *lineColumns { return &r.Line }, func(d *Delta) *[]EventRow { return &d.Events }, false},
 	table[ExcusalRow, excusalLine]{"excusals", excusalIn, excusalOut, func(r *excusalLine) *lineColumns { return &r.Line }, func(d *Delta) *[]ExcusalRow { return &d.Excusals }, false},
 	table[PlanRow, planLine]{"plans", planIn, planOut, func(r *planLine) *lineColumns { return &r.Line }, func(d *Delta) *[]PlanRow { return &d.Plans }, false},
-	table[AccountRow, accountLine]{"accounts", accountIn, accountOut, func(r *accountLine) *lineColumns { return &r.Line }, func(d *Delta) *[]AccountRow { return &d.Accounts }, false},
+	table[AccountRow, accountLine]{"accounts", accountIn, accountOut, func(r *accountLine) *lineColumns { return &r.Line }, func(d *Delta) *[]AccountRow { return &d.Accounts }, true},
 	table[BatchRow, batchLine]{"batches", batchIn, batchOut, func(r *batchLine) *lineColumns { return &r.Line }, func(d *Delta) *[]BatchRow { return &d.Batches }, false},
 }
 
@@ -298,21 +298,27 @@ func (t *Tx) end(by int64, which string, arg any) error {
 // BlankPerson empties the name, e-mail and badge in every row of a person and marks them erased.
 // Seq is the erasing entry: Changed gives the rows again to whoever knows the book up to before it.
 func (t *Tx) BlankPerson(code string, seq int64) error {
-	err := t.settle()
-	if err != nil {
-		return err
-	}
-	return t.db.Exec("UPDATE people SET name = '', email = '', badge = '', erased = ?, touched = ? WHERE code = ?", true, seq, code).Error
+	return t.blank("UPDATE people SET name = '', email = '', badge = '', erased = ?, touched = ? WHERE code = ?", true, seq, code)
+}
+
+// BlankAccounts empties the name in every row of the accounts that belong to a person. Seq is the
+// erasing entry, as in BlankPerson.
+func (t *Tx) BlankAccounts(person string, seq int64) error {
+	return t.blank("UPDATE accounts SET name = '', touched = ? WHERE person = ? AND person <> ''", seq, person)
 }
 
 // BlankFacts sets the values of the named facts that entry seq put on record to null. By is the
 // erasing entry, as in BlankPerson.
 func (t *Tx) BlankFacts(seq, by int64, facts ...string) error {
+	return t.blank("UPDATE facts SET value = 'null', touched = ? WHERE seq = ? AND fact IN ?", by, seq, facts)
+}
+
+func (t *Tx) blank(statement string, args ...any) error {
 	err := t.settle()
 	if err != nil {
 		return err
 	}
-	return t.db.Exec("UPDATE facts SET value = 'null', touched = ? WHERE seq = ? AND fact IN ?", by, seq, facts).Error
+	return t.db.Exec(statement, args...).Error
 }
 
 // DropProjections empties every projection, to be made again from the entries.

@@ -300,20 +300,22 @@ func TestBlankingEmptiesNamesAndNothingElse(t *testing.T) {
 			FactRow{Line: Line{Seq: 0}, Code: "P1", Fact: "employer", Value: `"Example Ltd"`},
 			FactRow{Line: Line{Seq: 0}, Code: "P1", Fact: "crew", Value: `"early"`},
 			FactRow{Line: Line{Seq: 1}, Code: "P2", Fact: "employer", Value: `"Example Ltd"`},
+			AccountRow{Line: Line{Seq: 0}, ID: "a-1", Name: "ada", Role: "member", Person: "P1"},
+			AccountRow{Line: Line{Seq: 1}, ID: "a-2", Name: "bo", Role: "member", Person: "P2"},
+			AccountRow{Line: Line{Seq: 2}, ID: "a-3", Name: "desk", Role: "reader"},
 		))
-		return errors.Join(tx.BlankPerson("P1", 4), tx.BlankFacts(0, 4, "employer", "remark"))
+		return errors.Join(tx.BlankPerson("P1", 4), tx.BlankFacts(0, 4, "employer", "remark"),
+			tx.BlankAccounts("P1", 4), tx.BlankAccounts("", 4))
 	})
 	d := changed(t, s, 3)
 	people := []PersonRow{{Line: Line{Seq: 0, ID: "i"}, Code: "P1", Erased: true}}
 	facts := []FactRow{{Line: Line{Seq: 0}, Code: "P1", Fact: "employer", Value: "null"}}
-	for i := range d.Facts {
-		d.Facts[i].From = 0
-	}
-	if !reflect.DeepEqual(d.People, people) || !reflect.DeepEqual(d.Facts, facts) {
-		t.Errorf("changed: %+v and %+v", d.People, d.Facts)
+	accounts := []AccountRow{{Line: Line{Seq: 0}, ID: "a-1", Role: "member", Person: "P1"}}
+	if !reflect.DeepEqual(d, Delta{People: people, Facts: facts, Accounts: accounts}) {
+		t.Errorf("changed: %+v", d)
 	}
 	all := changed(t, s, -1)
-	if all.People[1].Name != "Bo Example" || all.Facts[1].Value != `"early"` || all.Facts[2].Value != `"Example Ltd"` {
+	if all.Accounts[1].Name != "bo" || all.Accounts[2].Name != "desk" || all.People[1].Name != "Bo Example" || all.Facts[1].Value != `"early"` || all.Facts[2].Value != `"Example Ltd"` {
 		t.Errorf("others were blanked: %+v", all)
 	}
 }
