@@ -56,12 +56,17 @@ func (t *Tx) Size() (int64, error) {
 // their erasable values (veils may be nil, or holds those of entries[i] at i). It numbers the entries
 // and sets Seq in both slices; first is the number of the first. RecordedAt must not be before
 // the entry in front; it is kept to the microsecond. An identifier that is in the book already is
-// refused with ErrExists, a supersession of what was superseded before with ErrSuperseded.
+// refused with ErrExists, a supersession of what was superseded before with ErrSuperseded. After an
+// error the transaction cannot be kept.
 func (t *Tx) Append(entries []Entry, veils [][]Veil) (first int64, err error) {
 	err = t.startTree()
-	if err != nil {
-		return 0, err
+	if err == nil {
+		first, err = t.append(entries, veils)
 	}
+	return first, t.fail(err)
+}
+
+func (t *Tx) append(entries []Entry, veils [][]Veil) (first int64, err error) {
 	first = t.builder.Size()
 	rows := make([]entryRow, len(entries))
 	hashes := make([]treeRow, 0, 2*len(entries)+64)
@@ -88,9 +93,9 @@ func (t *Tx) Append(entries []Entry, veils [][]Veil) (first int64, err error) {
 }
 
 func (t *Tx) insertEntries(rows []entryRow, hashes []treeRow, veils []veilRow) error {
-	err := insert(t, "entries", rows)
+	err := clash(insert(t, "entries", rows))
 	if err != nil {
-		return clash(err)
+		return err
 	}
 	err = insert(t, "tree", hashes)
 	if err != nil {
@@ -151,7 +156,15 @@ func insert[R any](t *Tx, table string, rows []R) error {
 	if len(rows) == 0 {
 		return nil
 	}
-	return t.db.Table(table).CreateInBatches(rows, batchRows).Error
+	return t.fail(t.db.Table(table).CreateInBatches(rows, batchRows).Error)
+}
+
+// fail notes that the transaction cannot be kept, and gives the error back.
+func (t *Tx) fail(err error) error {
+	if t.failed == nil {
+		t.failed = err
+	}
+	return err
 }
 
 // ReadHashes reads stored hashes of the tree, which makes a transaction a ledger.Reader.

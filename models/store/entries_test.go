@@ -112,6 +112,36 @@ func TestAppendRefuses(t *testing.T) {
 	}
 }
 
+// A caller who passes over an error of Append or Put keeps nothing of the transaction: the tree would
+// have hashes of entries that are not there.
+func TestAnErrorThatIsPassedOverKeepsNothing(t *testing.T) {
+	s := filled(t, 3)
+	for name, fn := range map[string]func(*Tx) error{
+		"append": func(tx *Tx) error { _, err := tx.Append([]Entry{entry(3), entry(1)}, nil); return err },
+		"an entry without bytes": func(tx *Tx) error {
+			e := entry(4)
+			e.Bytes = nil
+			_, err := tx.Append([]Entry{entry(3), e}, nil)
+			return err
+		},
+		"put": func(tx *Tx) error { return tx.Put(make([]SiteRow, batchRows-1), []SiteRow{{Line: Line{Seq: 9}}}) },
+	} {
+		err := s.Write(background, func(tx *Tx) error {
+			if fn(tx) == nil {
+				t.Errorf("%s: gave no error", name)
+			}
+			_, err := tx.Append([]Entry{entry(5)}, nil)
+			return err
+		})
+		if err == nil {
+			t.Errorf("%s: the transaction was kept", name)
+		}
+	}
+	if r := sound(t, s); r.Entries != 3 {
+		t.Errorf("%d entries are there", r.Entries)
+	}
+}
+
 func TestAnEntryIsSupersededOnce(t *testing.T) {
 	s := filled(t, 1)
 	for i := 1; i <= 2; i++ {

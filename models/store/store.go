@@ -32,6 +32,7 @@ type Tx struct {
 	builder *ledger.Builder    // the tree that Append grows; nil until it does
 	last    string             // recorded-at of the last entry, as stored; set with builder
 	held    map[string]holding // projection rows that are not in the database yet, by table
+	failed  error              // of an insert: what it was to write is in part forgotten
 }
 
 // holding is what a transaction holds back of one table, so that rows put one by one are written
@@ -83,8 +84,12 @@ func (s *Store) Size(ctx context.Context) (int64, error) {
 	return n, explain(s.path, err)
 }
 
-// settle writes the projection rows that are held back.
+// settle writes the projection rows that are held back. After an insert has failed, it fails too, so
+// that a caller who passed over the error does not keep half of the rest.
 func (t *Tx) settle() error {
+	if t.failed != nil {
+		return t.failed
+	}
 	for _, h := range t.held {
 		err := h.flush(t)
 		if err != nil {

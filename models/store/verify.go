@@ -131,7 +131,7 @@ func (v *verifier) entry(e Entry, veils []Veil) error {
 	for _, check := range v.checks {
 		err = check(e, veils)
 		if err != nil {
-			return faulty("Entry %d: %s", e.Seq, err)
+			return faulty("Entry %d: %s.", e.Seq, err)
 		}
 	}
 	if v.tree.Size()%batchRows != 0 {

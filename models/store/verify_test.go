@@ -114,7 +114,7 @@ func TestVerifyCallsTheCallersChecks(t *testing.T) {
 		},
 		func(e Entry, _ []Veil) error {
 			if e.Seq == 5 {
-				return errors.New("the columns say otherwise.")
+				return errors.New("the columns say otherwise")
 			}
 			return nil
 		})
