@@ -1,0 +1,35 @@
+package standing
+
+import "lodebook/models/civil"
+
+// after looks for the earliest event that no accepted record answers.
+func (ob *obligation) after() finding {
+	for i := range ob.events {
+		ev := ob.events[i]
+		if ob.answer(ev) == nil {
+			return ob.unanswered(ev)
+		}
+	}
+	latest := ob.events[len(ob.events)-1]
+	return finding{word: Met, record: ob.answer(latest), event: &latest, open: true, lasts: civil.LastDay}
+}
+
+// unanswered words the standing after an event: closing at once, a gap once the window is over.
+func (ob *obligation) unanswered(ev happening) finding {
+	due := ev.day.Add(ob.item.Cadence.Within)
+	f := finding{word: Closing, due: &due, from: ev.day, event: &ev}
+	if last := due.Add(ob.item.Grace); ob.on > last {
+		f.word, f.since = ob.gap(), last+1
+	}
+	return f
+}
+
+// answer is the last accepted record that answers the event, or nil.
+func (ob *obligation) answer(ev happening) *Record {
+	for i := len(ob.deeds) - 1; i >= 0 && ob.deeds[i].day >= ev.day; i-- {
+		if d := ob.deeds[i]; d.Passed && d.answers(ev, len(ob.item.Guards) > 0) {
+			return d.Record
+		}
+	}
+	return nil
+}

@@ -1,0 +1,17 @@
+package standing
+
+import "lodebook/models/civil"
+
+// once goes by the latest accepted record: met for good, or due on its own last good day.
+func (ob *obligation) once() finding {
+	d, any := ob.accepted()
+	switch {
+	case !any:
+		return ob.first()
+	case d.Until == nil:
+		return finding{word: Met, record: d.Record, open: true, lasts: civil.LastDay}
+	}
+	f := ob.byDue(*d.Until)
+	f.record, f.from = d.Record, d.day
+	return f
+}

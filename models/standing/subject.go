@@ -1,0 +1,149 @@
+package standing
+
+import (
+	"slices"
+	"strings"
+
+	"lodebook/models/civil"
+	"lodebook/models/program"
+)
+
+// The facts that fill fields of their own; all others are declared ones.
+const (
+	factName  = "name"
+	factLevel = "level"
+	factCrew  = "crew"
+	factKind  = "kind"
+	factZone  = "zone"
+)
+
+// appointment is the kind of the records that fill a post; the code behind it is the post's.
+const appointment = "appointment/"
+
+// builtIn tells whether a fact of such a subject is a field of its own.
+func builtIn(asks program.Asks, code string) bool {
+	switch asks {
+	case program.AsksPerson:
+		return code == factName || code == factLevel || code == factCrew
+	case program.AsksFixture:
+		return code == factKind || code == factZone
+	}
+	return false
+}
+
+// Profile is the subject as a selector reads it on the day, as known at k: its facts, and what
+// follows from the records (held level, posts, holders). Rights are not on record yet.
+func (e *Engine) Profile(site string, s Subject, on civil.Day, k int64) program.Subject {
+	v, err := e.view(site, k)
+	if err != nil {
+		return program.Subject{Asks: s.Asks, Code: s.Code, Facts: map[string]any{}}
+	}
+	return v.profile(v.local(s), on, nil)
+}
+
+// profile fills in the fields that are asked for; what costs no more than a look is always there.
+// A nil list asks for everything.
+func (v *view) profile(l *local, on civil.Day, reads []string) program.Subject {
+	wants := func(field string) bool { return reads == nil || slices.Contains(reads, field) }
+	p := program.Subject{Asks: l.subject.Asks, Code: l.subject.Code, Facts: v.facts(l, on)}
+	switch p.Asks {
+	case program.AsksPerson:
+		p.Name, p.Level, p.Crew = v.text(l, factName, on), v.text(l, factLevel, on), v.text(l, factCrew, on)
+		if wants("held") {
+			p.Held = v.heldLevel(l, on)
+		}
+		if wants("posts") {
+			p.Posts = v.posts(l, on)
+		}
+		// Zones stays empty until rights are on record.
+	case program.AsksFixture:
+		p.Kind, p.Zone = v.text(l, factKind, on), v.text(l, factZone, on)
+	case program.AsksPost:
+		if wants("holders") {
+			p.Holders = v.holders(p.Code, on)
+		}
+	}
+	return p
+}
+
+func (v *view) facts(l *local, on civil.Day) map[string]any {
+	all := make(map[string]any, len(l.facts))
+	for code := range l.facts {
+		if value := v.fact(l, code, on); value != nil && !builtIn(l.subject.Asks, code) {
+			all[code] = value
+		}
+	}
+	return all
+}
+
+// fact is the value that holds on the day, nil where there is none: of the latest day, the last
+// recorded.
+func (v *view) fact(l *local, code string, on civil.Day) any {
+	list := l.facts[code]
+	for i := len(list) - 1; i >= 0; i-- {
+		if f := &list[i]; f.From <= on && f.KnownAt(v.k) {
+			return f.Value
+		}
+	}
+	return nil
+}
+
+func (v *view) text(l *local, code string, on civil.Day) string {
+	s, _ := v.fact(l, code, on).(string)
+	return s
+}
+
+// posts are those that the person holds on the day, sorted.
+func (v *view) posts(person *local, on civil.Day) []string {
+	var out []string
+	for what := range person.past.records {
+		if post, ok := strings.CutPrefix(what, appointment); ok && v.holdsPost(person, post, on) {
+			out = append(out, post)
+		}
+	}
+	slices.Sort(out)
+	return out
+}
+
+// holders are the people who hold the post on the day, sorted.
+func (v *view) holders(post string, on civil.Day) []string {
+	var out []string
+	for _, person := range v.site.appointed[post] {
+		if v.holdsPost(person, post, on) {
+			out = append(out, person.subject.Code)
+		}
+	}
+	slices.Sort(out)
+	return out
+}
+
+// holdsPost tells whether the last appointment of the person to the post, up to the day, passed and
+// has not run out. Only the site's own appointments count, and only while the person is there: a
+// post whose holder has left stands empty.
+func (v *view) holdsPost(person *local, post string, on civil.Day) bool {
+	if _, here := v.presence(person, on); !here {
+		return false
+	}
+	last := v.appointment(person, post, on)
+	return last != nil && last.Passed && (last.Until == nil || on <= *last.Until)
+}
+
+func (v *view) appointment(person *local, post string, on civil.Day) *Record {
+	ed := v.edition(on)
+	if ed == nil {
+		return nil
+	}
+	var last deed
+	list := person.past.records[appointment+post]
+	for i := range list {
+		r := &list[i]
+		if r.Site != v.site.code || !r.KnownAt(v.k) {
+			continue
+		}
+		d := deed{dayIn(r.Day, r.Time, ed.loc), r}
+		if d.day <= on && (last.Record == nil || compareDeeds(last, d) < 0) {
+			last = d
+		}
+	}
+	return last.Record
+}

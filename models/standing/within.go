@@ -1,0 +1,34 @@
+package standing
+
+// within counts back over the days that have an accepted record: the count-th latest one and the
+// length of the window give the due day.
+func (ob *obligation) within() finding {
+	c := &ob.item.Cadence
+	days := 0
+	for i := len(ob.deeds) - 1; i >= 0; i-- {
+		d := ob.deeds[i]
+		if !d.Passed {
+			continue
+		}
+		if later, any := ob.acceptedAfter(i); any && later.day == d.day {
+			continue // records of one day count once
+		}
+		if days++; days == c.Count {
+			f := ob.byDue(d.day.Add(c.Within))
+			f.record, f.from = d.Record, d.day
+			f.open, f.lasts = f.word == Met, ob.item.Notice.Before(*f.due)-1
+			return f
+		}
+	}
+	return ob.first()
+}
+
+// acceptedAfter is the first accepted record behind the i-th.
+func (ob *obligation) acceptedAfter(i int) (deed, bool) {
+	for _, d := range ob.deeds[i+1:] {
+		if d.Passed {
+			return d, true
+		}
+	}
+	return deed{}, false
+}
