@@ -109,7 +109,7 @@ func in1252(s string) []byte {
 }
 
 // TestEncodingsAndDelimiters reads the same dirty table in every encoding, with every delimiter and
-// every line end.
+// every line end, with blank rows and an old end-of-file mark (Ctrl-Z) below it.
 func TestEncodingsAndDelimiters(t *testing.T) {
 	encodings := map[string]func(string) []byte{
 		"UTF-8":                func(s string) []byte { return []byte(s) },
@@ -127,7 +127,7 @@ func TestEncodingsAndDelimiters(t *testing.T) {
 		"010|\u00a0Åse \"\"|\u00a0|  5 € a day ",
 		"P3|\"a \"\"quoted\"\" name\"|\"two",
 		"lines\"|",
-		"|||", "", "|||",
+		"|||", "", "|||", "\x1a",
 	}
 	lines[3] = "010|\u00a0Åse\u00a0||  5 € a day "
 	want := [][]string{
@@ -291,6 +291,8 @@ func TestCells(t *testing.T) {
 	if f := only(t, faults, 2, "name", "longer than a cell can be"); len(f.Value) > 400 {
 		t.Errorf("the fault repeats %d bytes", len(f.Value))
 	}
+	_, _, faults = read(t, []byte("code,name\nP1,"+long+long+"\nP2,Bo\n"), Options{})
+	only(t, faults, 2, "", "longer than a cell can be")
 	rows, _, faults := read(t, []byte("code,name\nP1,\""+long[:2*32767]+"\"\n"), Options{}, "name")
 	if len(faults) > 0 || len([]rune(rows[0][0])) != 32767 {
 		t.Errorf("a cell of 32,767 characters is a cell: %v", faults)

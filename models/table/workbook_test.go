@@ -148,6 +148,12 @@ func TestWorkbookSheets(t *testing.T) {
 	only(t, faults[:1], 0, "", `"Cover, Empty, Staff, Other" none of the workbook's visible sheets has the table; the faults of "Staff" follow`)
 	only(t, faults[1:], 1, "nmae", `did you mean "name"?`)
 
+	farther := data(1, []string{"code", "nmae", "shoe size"})
+	b = written{sheets: []writtenSheet{{"Draft", "", farther}, {"Staff", "", near}, {"Older", "", farther}}}
+	_, _, faults = read(t, b.bytes(t), Options{})
+	if len(faults) != 2 || !strings.Contains(faults[0].Problem, `"Staff"`) {
+		t.Error(faults)
+	}
 	_, _, faults = read(t, single(near).bytes(t), Options{})
 	only(t, faults, 1, "nmae", "did you mean")
 	_, _, faults = read(t, single("").bytes(t), Options{})
@@ -202,6 +208,19 @@ func TestDamagedWorkbook(t *testing.T) {
 	changed[at+1] = '9'
 	_, _, faults = read(t, changed, Options{})
 	only(t, faults, 0, "", "checksum")
+}
+
+// TestPanicOfALibrary checks that a library that gives up over a workbook takes nothing with it.
+func TestPanicOfALibrary(t *testing.T) {
+	err := func() (err error) {
+		defer guardPanic(&err)
+		var rows []string
+		return errors.New(rows[3])
+	}()
+	var f *Fault
+	if !errors.As(err, &f) || !strings.Contains(f.Problem, "damaged") {
+		t.Errorf("%v", err)
+	}
 }
 
 // stored is a workbook whose parts are not compressed.
