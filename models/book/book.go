@@ -32,13 +32,17 @@ type Book struct {
 
 // Create makes a new, empty book. It refuses a path that exists.
 func Create(ctx context.Context, path string, o Options) (*Book, error) {
-	var id uuid.UUID
-	if _, err := io.ReadFull(o.Random, id[:]); err != nil {
-		return nil, err
-	}
-	st, err := store.Create(ctx, path, store.Options{BookID: id.String()})
+	st, err := store.Create(ctx, path)
 	if err != nil {
 		return nil, err
+	}
+	id, err := uuid.NewRandomFromReader(o.Random)
+	if err != nil {
+		return nil, errors.Join(err, st.Close())
+	}
+	err = st.Write(ctx, func(tx *store.Tx) error { return tx.SetMeta(store.MetaBookID, id.String()) })
+	if err != nil {
+		return nil, errors.Join(err, st.Close())
 	}
 	return start(ctx, st, o)
 }

@@ -57,11 +57,23 @@ func (b *Book) UndoImport(ctx context.Context, actor Actor, batch string) (Recei
 		if err != nil {
 			return err
 		}
-		if err := s.tx.End(head.Seq, size-1); err != nil {
-			return err
-		}
-		return s.tx.EndBatch(batch, size-1)
+		return endBatch(s.tx, batch, size-1)
 	})
+}
+
+// endBatch ends the rows of an import: those of its own entry and of every entry that it brought.
+func endBatch(tx *store.Tx, batch string, by int64) error {
+	head, ok, err := tx.EntryByID(batch)
+	if err != nil {
+		return err
+	}
+	if !ok {
+		return &NotFound{"import", batch}
+	}
+	if err := tx.End(head.Seq, by); err != nil {
+		return err
+	}
+	return tx.EndBatch(batch, by)
 }
 
 // batchUndone tells whether an import was taken back already, and by which entry.

@@ -59,7 +59,7 @@ func (c *check) fixtureBody(f FixtureForm) (*fixtureBody, []Fault) {
 	faults = append(faults, more...)
 	from, fault := c.factsFrom(f.From, stint, c.pastStint(program.AsksFixture, f.Code, f.Since), known)
 	if fault != nil {
-		return nil, append(faults, *fault)
+		faults = append(faults, *fault)
 	}
 	body.Facts = c.newFacts(factKey(c.site, program.AsksFixture, f.Code), values, from)
 	if len(body.Facts) > 0 {

@@ -1,6 +1,7 @@
 package book
 
 import (
+	"slices"
 	"strings"
 
 	"github.com/google/uuid"
@@ -65,6 +66,9 @@ func (c *cells) moment(col string) string {
 // add turns faults of a body into faults of the row.
 func (c *cells) add(faults []Fault) {
 	for _, f := range faults {
+		if slices.ContainsFunc(c.faults, func(o table.Fault) bool { return o.Column == f.Field }) {
+			continue // one fault of a cell is enough
+		}
 		c.faults = append(c.faults, table.Fault{Line: c.row.Line, Column: f.Field, Value: f.Value, Problem: f.Problem, Accepted: f.Accepted})
 	}
 }
@@ -73,11 +77,8 @@ func (c *cells) content() string { return strings.Join(c.parts, "\x1f") }
 
 // finish validates the body and gives the draft, or the faults.
 func (c *cells) finish(d rowDraft, silent bool) (rowDraft, []table.Fault) {
-	if len(c.faults) > 0 {
-		return d, c.faults
-	}
 	d.content = c.content()
-	if silent {
+	if silent && len(c.faults) == 0 {
 		d.body = nil
 		return d, nil
 	}
@@ -141,7 +142,7 @@ func personRow(in *importing, row table.Row) (rowDraft, []table.Fault) {
 	}
 	body, faults := in.c.personBody(f)
 	c.add(faults)
-	if len(c.faults) > 0 {
+	if body == nil {
 		return rowDraft{}, c.faults
 	}
 	d := rowDraft{key: store.SubjectKey{Kind: string(program.AsksPerson), Code: f.Code}, body: body}
@@ -170,7 +171,7 @@ func fixtureRow(in *importing, row table.Row) (rowDraft, []table.Fault) {
 	f.Facts = c.factCells(all)
 	body, faults := in.c.fixtureBody(f)
 	c.add(faults)
-	if len(c.faults) > 0 {
+	if body == nil {
 		return rowDraft{}, c.faults
 	}
 	d := rowDraft{key: store.SubjectKey{Site: in.o.Site, Kind: string(program.AsksFixture), Code: f.Code}, body: body}
@@ -206,9 +207,6 @@ func eventRow(in *importing, row table.Row) (rowDraft, []table.Fault) {
 func excusalRow(in *importing, row table.Row) (rowDraft, []table.Fault) {
 	c := &cells{in: in, row: row}
 	f := ExcusalForm{Item: c.text("item"), Subject: c.text("subject"), From: c.day("from"), To: c.day("to"), Reason: c.text("reason"), ApprovedBy: c.text("approved_by"), Opens: c.text("opens")}
-	if len(c.faults) > 0 {
-		return rowDraft{}, c.faults
-	}
 	body, faults := in.c.excusalBody(f)
 	c.add(faults)
 	return c.finish(rowDraft{key: body.Subject.key(in.o.Site), body: body}, false)
@@ -217,9 +215,6 @@ func excusalRow(in *importing, row table.Row) (rowDraft, []table.Fault) {
 func pauseRow(in *importing, row table.Row) (rowDraft, []table.Fault) {
 	c := &cells{in: in, row: row}
 	f := PauseForm{Subject: c.text("subject"), From: c.day("from"), To: c.day("to"), Reason: c.text("reason")}
-	if len(c.faults) > 0 {
-		return rowDraft{}, c.faults
-	}
 	body, faults := in.c.pauseBody(f)
 	c.add(faults)
 	return c.finish(rowDraft{key: body.Subject.key(in.o.Site), body: body}, false)

@@ -117,7 +117,7 @@ func (s *siteModel) event(code string) (program.Event, bool) {
 	}
 	for i := len(s.versions) - 1; i >= 0; i-- {
 		if e, ok := s.versions[i].program.Event(code); ok {
-			return e, true
+			return *e, true
 		}
 	}
 	return program.Event{}, false

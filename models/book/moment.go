@@ -4,6 +4,7 @@ import (
 	"time"
 
 	"lodebook/models/civil"
+	"lodebook/models/table"
 )
 
 // moment is when something happened: a day, or an instant and the day that the site's zone gives it.
@@ -24,6 +25,16 @@ func parseMoment(on string, loc *time.Location) moment {
 	}
 	t = t.UTC()
 	return moment{day: civil.DayOf(t, loc), time: &t}
+}
+
+// readMoment reads what was typed: a day, an instant, or a date and a time of day by the site's
+// clocks. It gives the form that an entry holds.
+func (c *check) readMoment(field, text string) (string, []Fault) {
+	m, f := table.ReadMoment(text, c.zone())
+	if f != nil {
+		return "", []Fault{{field, f.Value, f.Problem, f.Accepted}}
+	}
+	return moment{day: m.Day, time: m.Time}.String(), nil
 }
 
 // String is the moment as an entry holds it.

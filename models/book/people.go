@@ -78,7 +78,7 @@ func (c *check) personBody(f PersonForm) (*personBody, []Fault) {
 	faults = append(faults, more...)
 	from, fault := c.factsFrom(f.From, stint, c.pastStint(program.AsksPerson, f.Code, f.Joined), known)
 	if fault != nil {
-		return nil, append(faults, *fault)
+		faults = append(faults, *fault)
 	}
 	body.Facts = c.newFacts(factKey(c.site, program.AsksPerson, f.Code), values, from)
 	if len(body.Facts) > 0 {

@@ -41,8 +41,10 @@ func (b *Book) Record(ctx context.Context, actor Actor, site string, f RecordFor
 // recordBody reads the form.
 func (c *check) recordBody(f RecordForm) (*recordBody, []Fault) {
 	subject, faults := c.subject("subject", f.Subject)
+	on, bad := c.readMoment("on", f.On)
+	faults = append(faults, bad...)
 	body := &recordBody{
-		Record: strings.TrimSpace(f.Record), Subject: subject, On: strings.TrimSpace(f.On), Result: strings.TrimSpace(f.Result),
+		Record: strings.TrimSpace(f.Record), Subject: subject, On: on, Result: strings.TrimSpace(f.Result),
 		Limit: strings.Fields(f.Limit), By: c.claim(f.By), Note: veiled(strings.TrimSpace(f.Note), subject.person()),
 	}
 	if body.Result == "" {
@@ -281,5 +283,7 @@ func (b *Book) ReportEvent(ctx context.Context, actor Actor, site string, f Even
 
 func (c *check) eventBody(f EventForm) (*eventBody, []Fault) {
 	subject, faults := c.subject("subject", f.Subject)
-	return &eventBody{Event: strings.TrimSpace(f.Event), Subject: subject, On: strings.TrimSpace(f.On), Note: veiled(strings.TrimSpace(f.Note), subject.person())}, faults
+	on, bad := c.readMoment("on", f.On)
+	faults = append(faults, bad...)
+	return &eventBody{Event: strings.TrimSpace(f.Event), Subject: subject, On: on, Note: veiled(strings.TrimSpace(f.Note), subject.person())}, faults
 }

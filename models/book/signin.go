@@ -27,11 +27,8 @@ const (
 
 // SetPassword sets an account's password. An actor may set their own; an administrator anybody's.
 func (b *Book) SetPassword(ctx context.Context, actor Actor, name, password string) error {
-	if n := len([]rune(password)); n < passwordLow || n > passwordHigh {
-		return invalid("password", "", fmt.Sprintf("has %d characters", n), fmt.Sprintf("%d to %d characters", passwordLow, passwordHigh))
-	}
-	if strings.EqualFold(password, name) {
-		return invalid("password", "", "is the account's name", "something that nobody guesses")
+	if err := CheckPassword(name, password); err != nil {
+		return err
 	}
 	hash, err := b.hashPassword(password)
 	if err != nil {
@@ -49,6 +46,17 @@ func (b *Book) SetPassword(ctx context.Context, actor Actor, name, password stri
 		}
 		return tx.PutCredential(store.CredentialRow{Account: a.ID, Hash: hash, Changed: b.Now()})
 	})
+}
+
+// CheckPassword tells whether a password will do for an account of that name.
+func CheckPassword(name, password string) error {
+	if n := len([]rune(password)); n < passwordLow || n > passwordHigh {
+		return invalid("password", "", fmt.Sprintf("has %d characters", n), fmt.Sprintf("%d to %d characters", passwordLow, passwordHigh))
+	}
+	if strings.EqualFold(password, name) {
+		return invalid("password", "", "is the account's name", "something that nobody guesses")
+	}
+	return nil
 }
 
 func (b *Book) hashPassword(password string) (string, error) {

@@ -7,6 +7,7 @@ import (
 	"time"
 
 	"lodebook/models/civil"
+	"lodebook/models/standing"
 	"lodebook/models/store"
 )
 
@@ -322,7 +323,7 @@ func replayEnds(tx *store.Tx, e store.Entry, bd body) error {
 		return tx.End(old.Seq, e.Seq)
 	}
 	if w, ok := bd.(*withdrawalBody); ok && w.WholeBatch != "" {
-		return tx.EndBatch(w.WholeBatch, e.Seq)
+		return endBatch(tx, w.WholeBatch, e.Seq)
 	}
 	if x, ok := bd.(*erasureBody); ok {
 		return blankRows(tx, x.Person, e.Seq)
@@ -344,7 +345,7 @@ func (b *Book) knownAt(ctx context.Context, at *time.Time) (int64, error) {
 	return seq, err
 }
 
-const always64 = int64(1)<<63 - 1
+const always64 = standing.Always
 
 // dayPtr gives a pointer to a copy of the day.
 func dayPtr(d civil.Day) *civil.Day { return &d }
