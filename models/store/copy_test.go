@@ -290,3 +290,8 @@ func TestScrubSaysWhenItCannot(t *testing.T) {
 	})
 	must(t, s.Scrub(background))
 }
+
+func TestACopyWithAnotherHeadIsRefused(t *testing.T) {
+	s := filled(t, 10)
+	refused(t, s.agrees(background, "copy", Report{Entries: 5}), "does not have the head of the book")
+}

@@ -451,3 +451,13 @@ func TestAReadSeesOneMomentAndWritesNothing(t *testing.T) {
 		t.Error("a read wrote")
 	}
 }
+
+func TestAFullDiskIsToldAndKeepsNothing(t *testing.T) {
+	s := filled(t, 3)
+	must(t, s.w.Exec("PRAGMA max_page_count = 100").Error)
+	err := s.Write(background, func(tx *Tx) error { _, err := tx.Append(entriesUpTo(3, 5000), nil); return err })
+	refused(t, err, "no room left on the disk")
+	if r := sound(t, s); r.Entries != 3 {
+		t.Errorf("%d entries are there", r.Entries)
+	}
+}
