@@ -19,21 +19,39 @@ const (
 	LastDay  Day = 2932896
 )
 
+const secondsPerDay = 86400
+
+// monthStarts are the days of a common year before each month.
+var monthStarts = [13]int{0, 31, 59, 90, 120, 151, 181, 212, 243, 273, 304, 334, 365}
+
+func isLeap(year int) bool { return year%4 == 0 && (year%100 != 0 || year%400 == 0) }
+
+// yearStart is the number of days from 0001-01-01 to the year's first day.
+func yearStart(year int) int {
+	y := year - 1
+	return y*365 + floorDiv(y, 4) - floorDiv(y, 100) + floorDiv(y, 400)
+}
+
+// monthStart is the number of days of the year before the month, counted from 0; 12 is the year's end.
+func monthStart(year, month int) int {
+	if month > 1 && isLeap(year) {
+		return monthStarts[month] + 1
+	}
+	return monthStarts[month]
+}
+
 // Of gives the day of a proleptic Gregorian date. Months and days outside their usual range
 // carry over, as in time.Date.
 func Of(year int, month time.Month, day int) Day {
-	const secondsPerDay = 86400
-	s := time.Date(year, month, day, 0, 0, 0, 0, time.UTC).Unix()
-	if s < 0 {
-		s -= secondsPerDay - 1
-	}
-	return Day(s / secondsPerDay)
+	months := year*12 + int(month) - 1
+	year = floorDiv(months, 12)
+	return FirstDay + Day(yearStart(year)+monthStart(year, months-year*12)+day-1)
 }
 
 // DayOf gives the civil day on which the instant t falls in the zone loc.
 func DayOf(t time.Time, loc *time.Location) Day {
-	y, m, d := t.In(loc).Date()
-	return Of(y, m, d)
+	_, offset := t.In(loc).Zone()
+	return Day(floorDiv(int(t.Unix())+offset, secondsPerDay))
 }
 
 // ParseDay reads a day written as YYYY-MM-DD and nothing else.
@@ -66,15 +84,29 @@ func digits(s string) int {
 
 // DaysIn is the number of days of a month.
 func DaysIn(year int, month time.Month) int {
-	return time.Date(year, month+1, 0, 0, 0, 0, 0, time.UTC).Day()
+	return monthStart(year, int(month)) - monthStart(year, int(month)-1)
 }
 
 // Date splits the day into year, month and day of the month.
 func (d Day) Date() (year int, month time.Month, day int) {
-	return d.utc().Date()
+	const daysIn400Years = 146097
+	n := int(d - FirstDay)
+	year = floorDiv(n*400, daysIn400Years) + 1 // this year or one beside it
+	switch {
+	case n < yearStart(year):
+		year--
+	case n >= yearStart(year+1):
+		year++
+	}
+	n -= yearStart(year)
+	m := n / 32 // this month or the one before it
+	if n >= monthStart(year, m+1) {
+		m++
+	}
+	return year, time.Month(m + 1), n - monthStart(year, m) + 1
 }
 
-func (d Day) utc() time.Time { return time.Unix(int64(d)*86400, 0).UTC() }
+func (d Day) utc() time.Time { return time.Unix(int64(d)*secondsPerDay, 0).UTC() }
 
 // String writes the day as YYYY-MM-DD.
 func (d Day) String() string { return d.utc().Format("2006-01-02") }
@@ -82,8 +114,11 @@ func (d Day) String() string { return d.utc().Format("2006-01-02") }
 // Format writes the day by a layout of package time.
 func (d Day) Format(layout string) string { return d.utc().Format(layout) }
 
-// Weekday is the day's weekday.
-func (d Day) Weekday() time.Weekday { return d.utc().Weekday() }
+// Weekday is the day's weekday; day 0 was a Thursday.
+func (d Day) Weekday() time.Weekday {
+	n := int(d) + int(time.Thursday)
+	return time.Weekday(n - floorDiv(n, 7)*7)
+}
 
 // ISOWeek gives the ISO 8601 week-numbering year and week.
 func (d Day) ISOWeek() (year, week int) { return d.utc().ISOWeek() }

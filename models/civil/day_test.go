@@ -61,6 +61,40 @@ func TestDayBounds(t *testing.T) {
 	}
 }
 
+// Every day of the calendar, against the standard library.
+func TestDatesAgainstPackageTime(t *testing.T) {
+	at := time.Date(1, time.January, 1, 0, 0, 0, 0, time.UTC)
+	for d := civil.FirstDay; d <= civil.LastDay; d++ {
+		y, m, dom := at.Date()
+		gy, gm, gd := d.Date()
+		if gy != y || gm != m || gd != dom || civil.Of(y, m, dom) != d || d.Weekday() != at.Weekday() || civil.DayOf(at, time.UTC) != d {
+			t.Fatalf("day %d is %d-%d-%d, a %v; package time has %v", d, gy, gm, gd, d.Weekday(), at)
+		}
+		at = at.Add(24 * time.Hour)
+	}
+}
+
+// Months and days outside their range carry over as in time.Date, which DaysIn and PeriodOf lean on.
+func TestDatesCarryOver(t *testing.T) {
+	rapid.Check(t, func(t *rapid.T) {
+		y, m, dom := rapid.IntRange(-50, 10050).Draw(t, "y"), rapid.IntRange(-40, 40).Draw(t, "m"), rapid.IntRange(-900, 900).Draw(t, "d")
+		want := time.Date(y, time.Month(m), dom, 0, 0, 0, 0, time.UTC).Unix() / 86400
+		if got := civil.Of(y, time.Month(m), dom); int64(got) != want {
+			t.Fatalf("%d-%d-%d is day %d, want %d", y, m, dom, got, want)
+		}
+	})
+}
+
+func TestDaysIn(t *testing.T) {
+	for _, y := range []int{1900, 2000, 2023, 2024, 2100} {
+		for m := time.January; m <= time.December; m++ {
+			if got, want := civil.DaysIn(y, m), time.Date(y, m+1, 0, 0, 0, 0, 0, time.UTC).Day(); got != want {
+				t.Errorf("%v %d has %d days, want %d", m, y, got, want)
+			}
+		}
+	}
+}
+
 func TestDayRoundTrips(t *testing.T) {
 	rapid.Check(t, func(t *rapid.T) {
 		d := civil.Day(rapid.Int32Range(int32(civil.FirstDay), int32(civil.LastDay)).Draw(t, "day"))

@@ -16,8 +16,8 @@ func (ob *obligation) after() finding {
 
 // unanswered words the standing after an event: closing at once, a gap once the window is over.
 func (ob *obligation) unanswered(ev happening) finding {
-	due := ev.day.Add(ob.item.Cadence.Within)
-	f := finding{word: Closing, due: &due, from: ev.day, event: &ev}
+	due := ev.on.Add(ob.item.Cadence.Within)
+	f := finding{word: Closing, due: ob.day(due), from: ev.on, event: &ev}
 	if last := due.Add(ob.item.Grace); ob.on > last {
 		f.word, f.since = ob.gap(), last+1
 	}
@@ -25,10 +25,10 @@ func (ob *obligation) unanswered(ev happening) finding {
 }
 
 // answer is the last accepted record that answers the event, or nil.
-func (ob *obligation) answer(ev happening) *Record {
-	for i := len(ob.deeds) - 1; i >= 0 && ob.deeds[i].day >= ev.day; i-- {
-		if d := ob.deeds[i]; d.Passed && d.answers(ev, len(ob.item.Guards) > 0) {
-			return d.Record
+func (ob *obligation) answer(ev happening) *record {
+	for i := len(ob.deeds) - 1; i >= 0 && ob.deeds[i].on >= ev.on; i-- {
+		if d := ob.deeds[i]; d.passed && d.answers(ev, len(ob.item.Guards) > 0) {
+			return d.record
 		}
 	}
 	return nil

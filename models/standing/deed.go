@@ -11,20 +11,20 @@ import (
 
 // deed is a record on the day that the judging site gives it.
 type deed struct {
-	day civil.Day
-	*Record
+	on civil.Day
+	*record
 }
 
 // compareDeeds orders records by day; within a day those without a time come first, in order of
 // recording, then those with a time, by it.
 func compareDeeds(a, b deed) int {
-	if a.day != b.day {
-		return cmp.Compare(a.day, b.day)
+	if a.on != b.on {
+		return cmp.Compare(a.on, b.on)
 	}
-	if c := compareTimes(a.Time, b.Time); c != 0 {
+	if c := compareTimes(a.time, b.time); c != 0 {
 		return c
 	}
-	return cmp.Or(cmp.Compare(a.Order, b.Order), cmp.Compare(a.Seq, b.Seq))
+	return cmp.Or(cmp.Compare(a.order, b.order), cmp.Compare(a.Seq, b.Seq))
 }
 
 // compareTimes puts no time before any.
@@ -48,10 +48,10 @@ func (v *view) gather(item *program.Item, l *local, ed *edition, on civil.Day) [
 		list := l.past.records[what]
 		for i := range list {
 			r := &list[i]
-			if !r.KnownAt(v.k) || item.Local && r.Site != v.site.code {
+			if !r.KnownAt(v.k) || item.Local && r.site != v.site {
 				continue
 			}
-			day := dayIn(r.Day, r.Time, ed.loc)
+			day := dayIn(r.day, r.time, ed.loc)
 			if day <= on {
 				out = append(out, deed{day, r})
 			} else if day > on+2 {
@@ -68,7 +68,7 @@ func (v *view) gather(item *program.Item, l *local, ed *edition, on civil.Day) [
 
 // happening is an event on the day that the judging site gives it.
 type happening struct {
-	day civil.Day
+	on civil.Day
 	*Event
 }
 
@@ -85,7 +85,7 @@ func (v *view) happenings(item *program.Item, l *local, ed *edition, on civil.Da
 		}
 	}
 	slices.SortFunc(out, func(a, b happening) int {
-		return cmp.Or(cmp.Compare(a.day, b.day), compareTimes(a.Time, b.Time), cmp.Compare(a.Seq, b.Seq))
+		return cmp.Or(cmp.Compare(a.on, b.on), compareTimes(a.Time, b.Time), cmp.Compare(a.Seq, b.Seq))
 	})
 	return out
 }
@@ -94,10 +94,10 @@ func (v *view) happenings(item *program.Item, l *local, ed *edition, on civil.Da
 // time where both have one, and else unless the item guards a zone.
 func (d deed) answers(ev happening, guards bool) bool {
 	switch {
-	case d.day != ev.day:
-		return d.day > ev.day
-	case d.Time != nil && ev.Time != nil:
-		return d.Time.After(*ev.Time)
+	case d.on != ev.on:
+		return d.on > ev.on
+	case d.time != nil && ev.Time != nil:
+		return d.time.After(*ev.Time)
 	}
 	return !guards
 }

@@ -18,7 +18,7 @@ func (ob *obligation) first() finding {
 // byDue words the standing by its due day: met, closing from the notice on and through the grace,
 // then a gap. Whether it is open stands for every and once with an accepted record.
 func (ob *obligation) byDue(due civil.Day) finding {
-	f := finding{word: Met, due: &due, open: true, lasts: due.Add(ob.item.Grace)}
+	f := finding{word: Met, due: ob.day(due), open: true, lasts: due.Add(ob.item.Grace)}
 	switch {
 	case ob.on < ob.item.Notice.Before(due):
 	case ob.on <= f.lasts:

@@ -33,25 +33,25 @@ func (ob *obligation) each() finding {
 		return finding{word: Awaited} // the site never opens, so nothing will ever be asked
 	}
 	d, any := ob.accepted()
-	if any && d.day >= p.First { // (i)
-		f := finding{word: Met, record: d.Record, period: p, from: d.day, open: true, lasts: s.next(p.Period).first - 1}
+	if any && d.on >= p.First { // (i)
+		f := finding{word: Met, record: d.record, period: p, from: d.on, open: true, lasts: s.next(p.Period).first - 1}
 		if n, ok := s.asking(p.Next(s.unit), s.from); ok {
-			f.due = &n.last
+			f.due = ob.day(n.last)
 		}
 		return f
 	}
-	missed := func(a asked) bool { return !any || d.day < a.First }
+	missed := func(a asked) bool { return !any || d.on < a.First }
 	if q, ok := s.latest(p, ob.on, ob.item.Grace); ok && missed(q) { // (ii)
-		return finding{word: ob.gap(), due: &q.last, period: q, since: q.last.Add(ob.item.Grace) + 1}
+		return finding{word: ob.gap(), due: ob.day(q.last), period: q, since: q.last.Add(ob.item.Grace) + 1}
 	}
 	if r, ok := s.latest(p, ob.on, civil.Duration{}); ok && missed(r) { // (iii)
-		return finding{word: Closing, due: &r.last, period: r, from: ob.spanBegan()}
+		return finding{word: Closing, due: ob.day(r.last), period: r, from: ob.spanBegan()}
 	}
 	n, ok := s.asking(civil.PeriodOf(s.unit, ob.on), max(s.from, ob.on)) // (iv)
 	if !ok {
 		return finding{word: Awaited}
 	}
-	f := finding{word: Awaited, due: &n.last, period: n, from: ob.spanBegan()}
+	f := finding{word: Awaited, due: ob.day(n.last), period: n, from: ob.spanBegan()}
 	if ob.on >= ob.item.Notice.Before(n.last) {
 		f.word = Closing
 	}
@@ -61,7 +61,7 @@ func (ob *obligation) each() finding {
 // spanBegan is the day of the last accepted record, or the start.
 func (ob *obligation) spanBegan() civil.Day {
 	if d, any := ob.accepted(); any {
-		return d.day
+		return d.on
 	}
 	return ob.begins()
 }

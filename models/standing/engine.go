@@ -3,6 +3,7 @@ package standing
 import (
 	"cmp"
 	"slices"
+	"sort"
 	"strings"
 	"time"
 
@@ -41,9 +42,20 @@ type local struct {
 
 // past is what happened to a subject. A person's is shared by all sites.
 type past struct {
-	records map[string][]Record // by kind/code; then by compareRecords
+	records map[string][]record // by kind/code; then by compareRecords
 	events  map[string][]Event  // by code; then by Seq
 	pauses  []Excusal           // by Seq
+}
+
+// record is a Record as it is kept: what the rules read and no more, since there are many.
+type record struct {
+	Line
+	order  int64
+	site   *site
+	time   *time.Time
+	until  *civil.Day
+	day    civil.Day
+	passed bool
 }
 
 // New is an engine with nothing on record.
@@ -54,19 +66,19 @@ func New() *Engine {
 // PutVersion puts a recorded version of the site's program.
 func (e *Engine) PutVersion(site string, v Version) {
 	s := e.site(site)
-	s.editions = upsert(s.editions, newEdition(site, v), func(a, b *edition) int { return cmp.Compare(a.Seq, b.Seq) })
+	s.editions = upsert(s.editions, newEdition(site, v), func(a, b **edition) int { return cmp.Compare((*a).Seq, (*b).Seq) })
 }
 
 // PutStint puts a span of presence of a person or a fixture, which makes it known at the site.
 func (e *Engine) PutStint(site string, s Stint) {
 	l := e.local(site, s.Subject)
-	l.stints = upsert(l.stints, s, func(a, b Stint) int { return cmp.Compare(a.Seq, b.Seq) })
+	l.stints = upsert(l.stints, s, func(a, b *Stint) int { return cmp.Compare(a.Seq, b.Seq) })
 }
 
 // PutFact puts a dated value that is on record at the site.
 func (e *Engine) PutFact(site string, f Fact) {
 	l := e.local(site, f.Subject)
-	l.facts[f.Code] = upsert(l.facts[f.Code], f, func(a, b Fact) int {
+	l.facts[f.Code] = upsert(l.facts[f.Code], f, func(a, b *Fact) int {
 		return cmp.Or(cmp.Compare(a.From, b.From), cmp.Compare(a.Seq, b.Seq))
 	})
 }
@@ -74,10 +86,11 @@ func (e *Engine) PutFact(site string, f Fact) {
 // PutRecord puts something done. A person's record counts at every site, except for local items; a
 // record of any other subject belongs to the site where it was recorded.
 func (e *Engine) PutRecord(r Record) {
-	p := e.past(r.Site, r.Subject)
-	p.records[r.What] = upsert(p.records[r.What], r, compareRecords)
+	s, p := e.site(r.Site), e.past(r.Site, r.Subject)
+	kept := record{r.Line, r.Order, s, r.Time, r.Until, r.Day, r.Passed}
+	p.records[r.What] = upsert(p.records[r.What], kept, compareRecords)
 	if post, ok := strings.CutPrefix(r.What, appointment); ok && r.Subject.Asks == program.AsksPerson {
-		s, l := e.site(r.Site), e.local(r.Site, r.Subject)
+		l := e.local(r.Site, r.Subject)
 		if !slices.Contains(s.appointed[post], l) {
 			s.appointed[post] = append(s.appointed[post], l)
 		}
@@ -88,13 +101,13 @@ func (e *Engine) PutRecord(r Record) {
 // code, others at their site.
 func (e *Engine) PutEvent(site string, ev Event) {
 	p := e.past(site, ev.Subject)
-	p.events[ev.Code] = upsert(p.events[ev.Code], ev, func(a, b Event) int { return cmp.Compare(a.Seq, b.Seq) })
+	p.events[ev.Code] = upsert(p.events[ev.Code], ev, func(a, b *Event) int { return cmp.Compare(a.Seq, b.Seq) })
 }
 
 // PutExcusal puts an excusal, which counts at its site, or a pause (an empty Item); a person's
 // pauses count at every site.
 func (e *Engine) PutExcusal(site string, x Excusal) {
-	bySeq := func(a, b Excusal) int { return cmp.Compare(a.Seq, b.Seq) }
+	bySeq := func(a, b *Excusal) int { return cmp.Compare(a.Seq, b.Seq) }
 	if x.Item == "" {
 		p := e.past(site, x.Subject)
 		p.pauses = upsert(p.pauses, x, bySeq)
@@ -144,15 +157,16 @@ func (e *Engine) person(code string) *past {
 }
 
 func newPast() *past {
-	return &past{records: map[string][]Record{}, events: map[string][]Event{}}
+	return &past{records: map[string][]record{}, events: map[string][]Event{}}
 }
 
 // upsert puts v in its place in the ordered list, over an equal one if there is one.
-func upsert[T any](list []T, v T, compare func(a, b T) int) []T {
-	if n := len(list); n == 0 || compare(list[n-1], v) < 0 {
+func upsert[T any](list []T, v T, compare func(a, b *T) int) []T {
+	n := len(list)
+	if n == 0 || compare(&list[n-1], &v) < 0 {
 		return append(list, v) // lines mostly come in order
 	}
-	i, found := slices.BinarySearchFunc(list, v, compare)
+	i, found := sort.Find(n, func(i int) int { return compare(&v, &list[i]) })
 	if found {
 		list[i] = v
 		return list
@@ -162,8 +176,8 @@ func upsert[T any](list []T, v T, compare func(a, b T) int) []T {
 
 // compareRecords orders records as the design does, with the days of those that have a time
 // counted in UTC: a site's own zone moves them by a day at most.
-func compareRecords(a, b Record) int {
-	return compareDeeds(deed{dayIn(a.Day, a.Time, time.UTC), &a}, deed{dayIn(b.Day, b.Time, time.UTC), &b})
+func compareRecords(a, b *record) int {
+	return compareDeeds(deed{dayIn(a.day, a.time, time.UTC), a}, deed{dayIn(b.day, b.time, time.UTC), b})
 }
 
 // dayIn is the day in the zone of something that has a day and perhaps a time.

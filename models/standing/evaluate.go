@@ -18,24 +18,19 @@ func (e *Engine) Evaluate(site string, q Query) ([]Standing, error) {
 	if ed == nil {
 		return nil, nil
 	}
-	var out []Standing
-	subjects := map[program.Asks][]presence{}
-	for _, item := range ed.items {
-		if q.Item != "" && item.Code != q.Item {
-			continue
-		}
-		of, listed := subjects[item.Asks]
-		if !listed {
-			of = v.asked(item.Asks, q)
-			subjects[item.Asks] = of
-		}
-		for _, p := range of {
-			if s, ok := v.standing(item, p, ed, q); ok {
-				out = append(out, s)
+	c := v.columns(ed, q)
+	for _, asks := range program.AllAsks {
+		for _, p := range c.subjects[asks] { // by subject first, since what is on record about one lies together
+			for i := range c.columns {
+				if col := &c.columns[i]; col.item.Asks == asks {
+					if s, ok := v.standing(col.item, p, ed, q); ok {
+						col.rows = append(col.rows, s)
+					}
+				}
 			}
 		}
 	}
-	return out, nil
+	return c.join(), nil
 }
 
 // asked lists the subjects of the kind that the query asks for.
@@ -70,10 +65,8 @@ func (v *view) standing(item *program.Item, p presence, ed *edition, q Query) (S
 // fill writes the finding down.
 func (ob *obligation) fill(s *Standing, f finding) {
 	s.Start = ob.day(ob.begins())
-	if f.due != nil {
-		s.Due = ob.day(*f.due)
-		s.InGrace = f.word == Closing && ob.on > *f.due
-	}
+	s.Due = f.due
+	s.InGrace = f.word == Closing && ob.on > *f.due
 	if f.record != nil {
 		s.Record = f.record.ID
 	}
@@ -99,4 +92,47 @@ func (f finding) left(on civil.Day) float64 {
 		return 0
 	}
 	return min(1, float64(left)/float64(span))
+}
+
+// columns are the items that a query asks for, each with room for a standing of every subject.
+type columns struct {
+	subjects map[program.Asks][]presence
+	columns  []column
+	room     []Standing
+}
+
+type column struct {
+	item *program.Item
+	rows []Standing
+}
+
+func (v *view) columns(ed *edition, q Query) *columns {
+	c := &columns{subjects: map[program.Asks][]presence{}}
+	for _, asks := range program.AllAsks {
+		c.subjects[asks] = v.asked(asks, q)
+	}
+	most := 0
+	for _, item := range ed.items {
+		if q.Item == "" || q.Item == item.Code {
+			c.columns = append(c.columns, column{item: item})
+			most += len(c.subjects[item.Asks])
+		}
+	}
+	c.room = make([]Standing, most)
+	at := 0
+	for i := range c.columns {
+		end := at + len(c.subjects[c.columns[i].item.Asks])
+		c.columns[i].rows = c.room[at:at:end]
+		at = end
+	}
+	return c
+}
+
+// join closes the gaps between the columns.
+func (c *columns) join() []Standing {
+	out := c.room[:0]
+	for _, col := range c.columns {
+		out = append(out, col.rows...)
+	}
+	return out
 }

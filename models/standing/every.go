@@ -5,7 +5,8 @@ import (
 	"lodebook/models/program"
 )
 
-// renewal is how one accepted record set the due day of an item with every.
+// renewal is how one accepted record set the due day of an item with every. Without a record it is
+// none.
 type renewal struct {
 	deed
 	anniversary bool      // counted from the old due day, since the record came early
@@ -18,29 +19,29 @@ type renewal struct {
 // every folds over the records: each accepted one renews, a failed one makes the old due day
 // forgotten.
 func (ob *obligation) every() finding {
-	var r *renewal
+	var r renewal
 	for _, d := range ob.deeds {
-		if d.Passed {
+		if d.passed {
 			r = renew(&ob.item.Cadence, d, r)
 		} else {
-			r = nil
+			r = renewal{}
 		}
 	}
-	if r == nil {
+	if r.record == nil {
 		return ob.first()
 	}
 	f := ob.byDue(r.due)
-	f.record, f.renewal = r.Record, r
-	f.from = ob.deeds[len(ob.deeds)-1].day
+	f.record, f.renewal = r.record, r
+	f.from = ob.deeds[len(ob.deeds)-1].on
 	return f
 }
 
 // renew is the due day after an accepted record; old is what the ones before it made, if anything.
 // A record that would not move the due day on leaves the old renewal standing, unless it has a
 // last good day of its own.
-func renew(c *program.Cadence, d deed, old *renewal) *renewal {
-	r := &renewal{deed: d, from: d.day}
-	if old != nil && c.Early != nil && old.due.Sub(*c.Early) <= d.day && d.day <= old.due {
+func renew(c *program.Cadence, d deed, old renewal) renewal {
+	r, renews := renewal{deed: d, from: d.on}, old.record != nil
+	if renews && c.Early != nil && old.due.Sub(*c.Early) <= d.on && d.on <= old.due {
 		r.anniversary, r.from = true, old.due
 	}
 	r.sum = r.from.Add(c.Every)
@@ -49,9 +50,9 @@ func renew(c *program.Cadence, d deed, old *renewal) *renewal {
 		r.end = r.sum.MonthEnd()
 	}
 	r.due = r.end
-	if d.Until != nil {
-		r.due = min(*d.Until, r.end)
-	} else if old != nil && old.due > r.end {
+	if d.until != nil {
+		r.due = min(*d.until, r.end)
+	} else if renews && old.due > r.end {
 		return old
 	}
 	return r

@@ -235,16 +235,16 @@ func (v *view) postTurns(t *turns, person *local, post string) {
 
 // recordTurns adds the days of the records in every zone that the site has had, and the days after
 // their last good ones.
-func (v *view) recordTurns(t *turns, records []Record) {
+func (v *view) recordTurns(t *turns, records []record) {
 	for i := range records {
 		r := &records[i]
 		if !r.KnownAt(v.k) {
 			continue
 		}
 		for j := range v.reigns {
-			t.add(dayIn(r.Day, r.Time, v.reigns[j].loc))
+			t.add(dayIn(r.day, r.time, v.reigns[j].loc))
 		}
-		t.addSpan(nil, r.Until)
+		t.addSpan(nil, r.until)
 	}
 }
 

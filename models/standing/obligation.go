@@ -24,7 +24,7 @@ type obligation struct {
 type finding struct {
 	word   Word
 	due    *civil.Day
-	record *Record // the one that decided
+	record *record // the one that decided
 	// open tells whether it opens reach; then it stays open through the day lasts if nothing more
 	// goes on record, no version, fact or excusal begins or ends.
 	open  bool
@@ -33,7 +33,7 @@ type finding struct {
 	from  civil.Day // of met and closing: the day on which the span up to the due day began
 
 	excusal *Excusal
-	renewal *renewal
+	renewal renewal
 	period  asked
 	event   *happening
 	// Of a data-fault: the selector that cannot be judged, and why not.
@@ -41,7 +41,8 @@ type finding struct {
 	err error
 }
 
-// verdict judges the item of the subject; asked is false where there is no obligation.
+// verdict judges the item of the subject; asked is false where there is no obligation. The
+// obligation is good until the next call.
 func (v *view) verdict(item *program.Item, p presence, ed *edition, on civil.Day) (ob *obligation, f finding, asked bool) {
 	if v.inForce(item, on) > on {
 		return nil, finding{}, false
@@ -53,7 +54,8 @@ func (v *view) verdict(item *program.Item, p presence, ed *edition, on civil.Day
 	if !yes {
 		return nil, finding{}, false
 	}
-	ob = &obligation{view: v, edition: ed, item: item, subject: p, on: on}
+	ob = &v.obligation
+	*ob = obligation{view: v, edition: ed, item: item, subject: p, on: on}
 	ob.deeds = v.gather(item, p.local, ed, on)
 	ob.excusals = v.excuse(item.Code, p.local)
 	if item.Cadence.Rule == program.After {
@@ -88,7 +90,7 @@ func (ob *obligation) last() (deed, bool) {
 // accepted is the last accepted record.
 func (ob *obligation) accepted() (deed, bool) {
 	for i := len(ob.deeds) - 1; i >= 0; i-- {
-		if ob.deeds[i].Passed {
+		if ob.deeds[i].passed {
 			return ob.deeds[i], true
 		}
 	}
@@ -99,19 +101,19 @@ func (ob *obligation) accepted() (deed, bool) {
 // an item asked after events has nothing to ask.
 func (ob *obligation) judge() (finding, bool) {
 	last, any := ob.last()
-	failed := any && !last.Passed
-	if ob.item.Cadence.Rule == program.After && len(ob.events) == 0 && !(failed && last.day >= ob.begins()) {
+	failed := any && !last.passed
+	if ob.item.Cadence.Rule == program.After && len(ob.events) == 0 && !(failed && last.on >= ob.begins()) {
 		return finding{}, false
 	}
 	before := civil.FirstDay - 1
 	if failed {
-		before = last.day
+		before = last.on
 	}
 	if x := longest(ob.excusals, ob.on, before); x != nil {
 		return finding{word: Excused, excusal: x, open: !failed && opening(ob.excusals, ob.on), lasts: civil.LastDay}, true
 	}
 	if failed {
-		return finding{word: Failed, record: last.Record, since: last.day}, true
+		return finding{word: Failed, record: last.record, since: last.on}, true
 	}
 	return ob.byCadence(), true
 }

@@ -8,10 +8,10 @@ func (ob *obligation) once() finding {
 	switch {
 	case !any:
 		return ob.first()
-	case d.Until == nil:
-		return finding{word: Met, record: d.Record, open: true, lasts: civil.LastDay}
+	case d.until == nil:
+		return finding{word: Met, record: d.record, open: true, lasts: civil.LastDay}
 	}
-	f := ob.byDue(*d.Until)
-	f.record, f.from = d.Record, d.day
+	f := ob.byDue(*d.until)
+	f.record, f.from = d.record, d.on
 	return f
 }

@@ -125,10 +125,10 @@ func (v *view) holdsPost(person *local, post string, on civil.Day) bool {
 		return false
 	}
 	last := v.appointment(person, post, on)
-	return last != nil && last.Passed && (last.Until == nil || on <= *last.Until)
+	return last != nil && last.passed && (last.until == nil || on <= *last.until)
 }
 
-func (v *view) appointment(person *local, post string, on civil.Day) *Record {
+func (v *view) appointment(person *local, post string, on civil.Day) *record {
 	ed := v.edition(on)
 	if ed == nil {
 		return nil
@@ -137,13 +137,13 @@ func (v *view) appointment(person *local, post string, on civil.Day) *Record {
 	list := person.past.records[appointment+post]
 	for i := range list {
 		r := &list[i]
-		if r.Site != v.site.code || !r.KnownAt(v.k) {
+		if r.site != v.site || !r.KnownAt(v.k) {
 			continue
 		}
-		d := deed{dayIn(r.Day, r.Time, ed.loc), r}
-		if d.day <= on && (last.Record == nil || compareDeeds(last, d) < 0) {
+		d := deed{dayIn(r.day, r.time, ed.loc), r}
+		if d.on <= on && (last.record == nil || compareDeeds(last, d) < 0) {
 			last = d
 		}
 	}
-	return last.Record
+	return last.record
 }

@@ -20,8 +20,9 @@ type view struct {
 	// can never hang on itself. In the view beneath it is nil.
 	beneath *view
 
-	deeds []deed      // scratch, see gather
-	days  []civil.Day // what the days of standings point into
+	obligation obligation  // scratch, see verdict
+	deeds      []deed      // scratch, see gather
+	days       []civil.Day // what the days of standings point into
 }
 
 func (e *Engine) view(code string, k int64) (*view, error) {

@@ -4,6 +4,7 @@ import (
 	"errors"
 	"fmt"
 	"strings"
+	"time"
 
 	"lodebook/models/civil"
 	"lodebook/models/program"
@@ -72,8 +73,8 @@ func (ob *obligation) whyExcused(r *reasons, f finding) {
 		until = fmt.Sprintf("to %v, both days included", *x.To)
 	}
 	r.say("%s%s covers %v: it runs from %v %s.", what, entry(x.ID), ob.on, x.From, until)
-	if last, any := ob.last(); any && !last.Passed {
-		r.say("The last record, %s, failed, but the excusal begins on a later day.", ob.named(last.Record))
+	if last, any := ob.last(); any && !last.passed {
+		r.say("The last record, %s, failed, but the excusal begins on a later day.", ob.named(last.record))
 	}
 }
 
@@ -106,12 +107,12 @@ func (ob *obligation) whyCadence(r *reasons, f finding) {
 func (ob *obligation) whyEvery(r *reasons, f finding) {
 	c := &ob.item.Cadence
 	r.say("The item wants %s every %v.", ob.wanted(), c.Every)
-	if f.renewal == nil {
+	if f.renewal.record == nil {
 		ob.whyFirst(r, f)
 		return
 	}
-	n := f.renewal
-	r.say("The deciding record is %s; it passed.", ob.named(n.Record))
+	n := &f.renewal
+	r.say("The deciding record is %s; it passed.", ob.named(n.record))
 	sum := fmt.Sprintf("%v plus %v is %v", n.from, c.Every, n.sum)
 	if n.anniversary {
 		sum = fmt.Sprintf("It came no more than %v before the old due day and not after it, so the anniversary is kept: %s", *c.Early, sum)
@@ -120,11 +121,11 @@ func (ob *obligation) whyEvery(r *reasons, f finding) {
 		sum += fmt.Sprintf(", moved to the month's end: %v", n.end)
 	}
 	r.say("%s.", sum)
-	if n.Until != nil {
-		r.say("The record itself is good until %v; the earlier of the two days counts, which is %v.", *n.Until, n.due)
+	if n.until != nil {
+		r.say("The record itself is good until %v; the earlier of the two days counts, which is %v.", *n.until, n.due)
 	}
-	if last := ob.deeds[len(ob.deeds)-1]; last.Record != n.Record {
-		r.say("The later record, %s, would not move that day on, so it stays.", ob.named(last.Record))
+	if last := ob.deeds[len(ob.deeds)-1]; last.record != n.record {
+		r.say("The later record, %s, would not move that day on, so it stays.", ob.named(last.record))
 	}
 }
 
@@ -228,7 +229,7 @@ func (ob *obligation) whyAfter(r *reasons, f finding) {
 	c := &ob.item.Cadence
 	ev := f.event
 	r.say("The item wants %s within %v after %s.", ob.wanted(), c.Within, strings.Join(c.After, " or "))
-	happened := fmt.Sprintf("%s%s on %s", ev.Code, entry(ev.ID), ob.at(*ev))
+	happened := fmt.Sprintf("%s%s on %s", ev.Code, entry(ev.ID), ob.moment(ev.Day, ev.Time))
 	if f.word == Met {
 		r.say("Every such event is answered; the latest, %s, by %s, which passed.", happened, ob.named(f.record))
 		return
@@ -237,7 +238,7 @@ func (ob *obligation) whyAfter(r *reasons, f finding) {
 	if len(ob.item.Guards) > 0 {
 		r.say("The item guards a zone, so on the day itself only a record with a later time would answer.")
 	}
-	r.say("%v plus %v is %v.", ev.day, c.Within, *f.due)
+	r.say("%v plus %v is %v.", ev.on, c.Within, *f.due)
 	if f.word == Closing {
 		ob.whyClosing(r, *f.due, "That day has not gone by")
 		return
@@ -245,20 +246,30 @@ func (ob *obligation) whyAfter(r *reasons, f finding) {
 	ob.whyWord(r, f)
 }
 
-// named says which record: its entry, day and time.
-func (ob *obligation) named(rec *Record) string {
-	on := rec.Day.String()
-	if rec.Time != nil {
-		on = rec.Time.In(ob.edition.loc).Format("2006-01-02 at 15:04")
-	}
-	return fmt.Sprintf("%s of %s%s", rec.What, on, entry(rec.ID))
+// named says which record: its kind, day, time and entry.
+func (ob *obligation) named(r *record) string {
+	return fmt.Sprintf("%s of %s%s", ob.kind(r), ob.moment(r.day, r.time), entry(r.ID))
 }
 
-func (ob *obligation) at(ev happening) string {
-	if ev.Time == nil {
-		return ev.day.String()
+// kind is the kind and code under which the record is on file.
+func (ob *obligation) kind(r *record) string {
+	for _, what := range ob.item.Records {
+		list := ob.subject.past.records[what]
+		for i := range list {
+			if &list[i] == r {
+				return what
+			}
+		}
 	}
-	return ev.Time.In(ob.edition.loc).Format("2006-01-02 at 15:04")
+	return "a record"
+}
+
+// moment is a day, with the time by the site's clock where there is one.
+func (ob *obligation) moment(day civil.Day, at *time.Time) string {
+	if at == nil {
+		return day.String()
+	}
+	return at.In(ob.edition.loc).Format("2006-01-02 at 15:04")
 }
 
 func entry(id string) string {
