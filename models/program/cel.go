@@ -15,7 +15,10 @@ import (
 	"lodebook/models/civil"
 )
 
-const subjectName = "subject"
+const (
+	subjectName = "subject"
+	typePrefix  = "lodebook." // begins the names of the subjects' types, which no file can use
+)
 
 // Bounds of an expression. Only exists and all can take more steps than the expression is long;
 // one that holds them runs under a limit of cost.
@@ -179,15 +182,16 @@ func syntaxFlaw(src string, issues *cel.Issues) flaw {
 	return f
 }
 
-// checkFlaws words the type checker's errors. Those of unknown names the inspector tells better.
+// checkFlaws words the type checker's errors. Those of unknown names, and of the subject as a
+// whole, the inspector tells better.
 func checkFlaws(src string, issues *cel.Issues, inspected bool) []flaw {
 	if issues.Err() == nil {
 		return nil
 	}
 	var flaws []flaw
 	for _, e := range issues.Errors() {
-		unknown := strings.HasPrefix(e.Message, "undefined field") || strings.HasPrefix(e.Message, "undeclared reference")
-		if unknown && inspected {
+		told := strings.HasPrefix(e.Message, "undefined field") || strings.HasPrefix(e.Message, "undeclared reference") || strings.Contains(e.Message, typePrefix)
+		if told && inspected {
 			continue
 		}
 		problem, accepted := e.Message, "write a CEL expression that gives true or false"

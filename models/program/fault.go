@@ -86,7 +86,7 @@ func suggest(name string, known []string) string {
 
 // nearest finds the known name that a slip of the fingers would turn into name.
 func nearest(name string, known []string) (string, bool) {
-	if name == "" {
+	if name == "" || len(name) > 100 {
 		return "", false
 	}
 	best, least := "", max(1, len([]rune(name))/3)+1

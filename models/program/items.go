@@ -197,14 +197,14 @@ func (r *reader) belongs(o object, c Cadence) {
 		ok  bool
 		of  string
 	}{
-		{"to", c.Rule == Every, "only with every"},
-		{"early", c.Rule == Every, "only with every"},
-		{"count", c.Rule == Within, "only with within"},
-		{"days", c.Rule == Each, "only with each"},
-		{"first", c.Rule != After && c.Rule != Holds, "not with after or holds"},
+		{"to", c.Rule == Every, "goes only with every"},
+		{"early", c.Rule == Every, "goes only with every"},
+		{"count", c.Rule == Within, "goes only with within"},
+		{"days", c.Rule == Each, "goes only with each"},
+		{"first", c.Rule != After && c.Rule != Holds, "does not go with after or holds"},
 	} {
 		if o.get(k.key) != nil && !k.ok && c.Rule != "" {
-			r.fault(o.place(k.key), o.at(k.key), shown(k.key), "the key stands "+k.of, "leave it out")
+			r.fault(o.place(k.key), o.at(k.key), shown(k.key), "it "+k.of, "leave it out")
 		}
 	}
 }

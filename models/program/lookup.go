@@ -92,17 +92,19 @@ func (p *Program) FactsOf(asks Asks) []Fact {
 
 func (p *Program) fixtureFacts() []Fact {
 	var out []Fact
+	at := map[string]int{}
 	for _, k := range p.FixtureKinds {
 		for _, f := range k.Facts {
-			known, ok := find(out, func(g *Fact) bool { return g.Code == f.Code })
-			if !ok {
+			i, known := at[f.Code]
+			if !known {
+				at[f.Code] = len(out)
 				f.Choices = slices.Clone(f.Choices)
 				out = append(out, f)
 				continue
 			}
 			for _, c := range f.Choices {
-				if !slices.Contains(known.Choices, c) {
-					known.Choices = append(known.Choices, c)
+				if !slices.Contains(out[i].Choices, c) {
+					out[i].Choices = append(out[i].Choices, c)
 				}
 			}
 		}

@@ -31,7 +31,7 @@ type attribute struct {
 
 const factsField = "facts"
 
-func (s *scope) typeName() string      { return "lodebook." + string(s.asks) }
+func (s *scope) typeName() string      { return typePrefix + string(s.asks) }
 func (s *scope) factsTypeName() string { return s.typeName() + "." + factsField }
 
 // scope gives the reader's scope of a kind of subject; the vocabulary is read by then.

@@ -114,6 +114,10 @@ func (r *reader) hours(o object) {
 	slices.SortStableFunc(r.p.Hours, func(a, b OpenHours) int {
 		return cmp.Or(cmp.Compare(a.Weekday, b.Weekday), cmp.Compare(a.From, b.From))
 	})
+	if most := 7 * 24; len(r.p.Hours) > most {
+		r.fault(n, "calendar.hours", fmt.Sprintf("%d spans of hours", len(r.p.Hours)), "more than any week needs", fmt.Sprintf("write at most %d", most))
+		return
+	}
 	if a, b, clash := overlap(r.p.Hours); clash {
 		r.wrong(n, "calendar.hours", fmt.Sprintf("the hours %s and %s overlap", a, b), "write each hour of the week once")
 	}

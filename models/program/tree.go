@@ -2,6 +2,7 @@ package program
 
 import (
 	"errors"
+	"fmt"
 	"strings"
 
 	"github.com/goccy/go-yaml/ast"
@@ -44,11 +45,13 @@ type node struct {
 
 type entry struct{ key, value *node }
 
-// Bounds of nesting: the YAML parser recurses, and nothing here nests deeper than six.
+// Bounds for the YAML parser, which recurses: nothing in a program nests deeper than six.
 const (
 	maxDepth     = 40
 	maxEntryCol  = 200
 	maxRefusals  = 100
+	maxGlued     = 50
+	maxTokens    = 150_000 // some three thousand items; the parser's time grows faster than they do
 	problemDepth = "nested deeper than anything in a program"
 )
 
@@ -66,8 +69,11 @@ func grow(text string) (root *node, faults Faults) {
 		return nil, faults
 	}
 	file, err := parser.Parse(tokens, 0, parser.AllowDuplicateMapKey())
+	if err != nil && len(faults) > 0 {
+		return nil, faults // the parser stumbles over what was refused
+	}
 	if err != nil {
-		return nil, append(faults, syntaxFault(err))
+		return nil, Faults{syntaxFault(err)}
 	}
 	body, more := oneDocument(file)
 	faults = append(faults, more...)
@@ -92,6 +98,9 @@ var refusals = map[token.Type][2]string{
 // screen looks for what is refused before the parser sees it. readable is false where the parser
 // had better not.
 func screen(tokens token.Tokens) (faults Faults, readable bool) {
+	if len(tokens) > maxTokens {
+		return Faults{{Line: 1, Column: 1, Found: fmt.Sprintf("%d pieces of YAML", len(tokens)), Problem: "more than any program needs", Accepted: fmt.Sprintf("write at most %d", maxTokens)}}, false
+	}
 	depth, readable := 0, true
 	for _, t := range tokens {
 		if t.Type == token.DirectiveType || t.Type == token.MappingKeyType {
@@ -115,7 +124,7 @@ func screen(tokens token.Tokens) (faults Faults, readable bool) {
 
 // syntaxFault places the parser's one error.
 func syntaxFault(err error) Fault {
-	f := Fault{Line: 1, Column: 1, Problem: "not YAML: " + err.Error(), Accepted: "write YAML 1.2"}
+	f := Fault{Line: 1, Column: 1, Problem: "this is not YAML", Accepted: "write YAML 1.2"}
 	var placed interface {
 		GetMessage() string
 		GetToken() *token.Token
@@ -213,7 +222,7 @@ func glue(m *node, v *ast.MappingValueNode) bool {
 		return false
 	}
 	last, key := m.entries[len(m.entries)-1].value, v.Key.GetToken()
-	if last.kind != scalar || last.style != plain || key.Type == token.SingleQuoteType || key.Type == token.DoubleQuoteType {
+	if len(last.glued) == maxGlued || last.kind != scalar || last.style != plain || key.Type == token.SingleQuoteType || key.Type == token.DoubleQuoteType {
 		return false
 	}
 	last.text += ", " + key.Value
@@ -244,6 +253,7 @@ func (g *grower) scalar(t *token.Token) *node {
 	default:
 		if strings.Contains(n.text, ": ") || strings.HasSuffix(n.text, ":") {
 			g.faults = append(g.faults, Fault{Line: n.line, Column: n.col, Found: shown(n.text), Problem: "a colon in a text without quotes", Accepted: "put the text in quotes, or a comma between two keys"})
+			n.kind = refused
 		}
 	}
 	return n

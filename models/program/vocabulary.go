@@ -46,6 +46,11 @@ func (r *reader) fixtureKinds(root object) {
 			r.wrong(o.get("code"), o.at("code"), "the word names a kind of subject", "give the fixture kind another code")
 		}
 		k.Facts = r.facts(o, "facts", AsksFixture)
+		for _, f := range k.Facts {
+			if _, known := r.kindOf[f.Code]; !known {
+				r.kindOf[f.Code] = kindFact{k.Code, f}
+			}
+		}
 		r.p.FixtureKinds = append(r.p.FixtureKinds, k)
 	})
 }
@@ -163,15 +168,18 @@ func (r *reader) sameEverywhere(n *node, path string, f Fact, of Asks) {
 	if of != AsksFixture {
 		return
 	}
-	for _, k := range r.p.FixtureKinds {
-		for _, g := range k.Facts {
-			if g.Code != f.Code || f.Type == "" || g.Type == "" || g.Type == f.Type && g.Unit == f.Unit {
-				continue
-			}
-			r.fault(n, path, shown(f.typed()), fmt.Sprintf("kind %s declares the fact as %s", k.Code, shown(g.typed())), "give it one type and unit, or two codes")
-			return
-		}
+	first, known := r.kindOf[f.Code]
+	g := first.fact
+	if !known || f.Type == "" || g.Type == "" || g.Type == f.Type && g.Unit == f.Unit {
+		return
 	}
+	r.fault(n, path, shown(f.typed()), fmt.Sprintf("kind %s declares the fact as %s", first.kind, shown(g.typed())), "give it one type and unit, or two codes")
+}
+
+// kindFact is a fact and the fixture kind that declares it.
+type kindFact struct {
+	kind string
+	fact Fact
 }
 
 func (f Fact) typed() string {

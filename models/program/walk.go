@@ -18,10 +18,11 @@ type reader struct {
 	p      *Program
 	scopes map[Asks]*scope
 	asked  map[string]map[string]bool // object -> keys that were asked for
+	kindOf map[string]kindFact        // fact of fixtures -> where it was declared first
 }
 
 func newReader(text string) *reader {
-	r := &reader{p: &Program{}, scopes: map[Asks]*scope{}, asked: map[string]map[string]bool{}}
+	r := &reader{p: &Program{}, scopes: map[Asks]*scope{}, asked: map[string]map[string]bool{}, kindOf: map[string]kindFact{}}
 	for line := range strings.SplitSeq(text, "\n") {
 		r.lines = append(r.lines, []rune(line))
 	}
@@ -67,6 +68,9 @@ func (r *reader) object(n *node, path, name string) (object, bool) {
 // gather hands on each entry of a mapping whose key stands there for the first time, and tells of
 // the others.
 func (r *reader) gather(n *node, path string, each func(entry)) {
+	if r.tooMany(n, path, len(n.entries)) {
+		return
+	}
 	first := map[string]int{}
 	for _, e := range n.entries {
 		if line, twice := first[e.key.text]; twice {
@@ -79,6 +83,10 @@ func (r *reader) gather(n *node, path string, each func(entry)) {
 }
 
 func join(path, key string) string {
+	const most = 60
+	if r := []rune(key); len(r) > most {
+		key = string(r[:most]) + "…"
+	}
 	if path == "" {
 		return key
 	}
@@ -116,7 +124,11 @@ func (o object) close() {
 		known = append(known, k)
 	}
 	slices.Sort(known)
-	for key, e := range o.values {
+	for _, e := range o.n.entries {
+		key := e.key.text
+		if o.values[key].key != e.key {
+			continue // told as a key that stands there twice
+		}
 		if !o.r.asked[o.name][key] {
 			o.r.fault(e.key, o.at(key), shown(key), "no such key here", suggest(key, known))
 		}
@@ -305,9 +317,23 @@ func (r *reader) list(n *node, path, accepted string, read func(n *node, path st
 		r.wrong(n, path, "not a list", accepted)
 		return
 	}
+	if r.tooMany(n, path, len(n.items)) {
+		return
+	}
 	for i, item := range n.items {
 		read(item, fmt.Sprintf("%s[%d]", path, i))
 	}
+}
+
+// maxList bounds a list or mapping: what is compared with everything else in it must not take
+// minutes.
+const maxList = 2000
+
+func (r *reader) tooMany(n *node, path string, count int) bool {
+	if count > maxList {
+		r.fault(n, path, fmt.Sprintf("%d entries", count), "more than any program needs", fmt.Sprintf("write at most %d", maxList))
+	}
+	return count > maxList
 }
 
 // objects walks a list of objects of one name.
@@ -327,13 +353,14 @@ func (o object) distinct(key, accepted string, read func(n *node, path string) s
 		return nil
 	}
 	var out []string
+	taken := map[string]bool{}
 	o.r.list(n, o.at(key), accepted, func(n *node, path string) {
-		s := read(n, path)
-		if s != "" && slices.Contains(out, s) {
+		switch s := read(n, path); {
+		case s == "":
+		case taken[s]:
 			o.r.wrong(n, path, "stands in the list twice", "keep one of the two")
-			return
-		}
-		if s != "" {
+		default:
+			taken[s] = true
 			out = append(out, s)
 		}
 	})
@@ -343,11 +370,11 @@ func (o object) distinct(key, accepted string, read func(n *node, path string) s
 // one reads a reference to something that the program declares.
 func (r *reader) one(n *node, path, what string, declared []string) string {
 	if n.kind != scalar {
-		r.wrong(n, path, "not the code of "+what, suggest("", declared))
+		r.wrong(n, path, "not "+what, suggest("", declared))
 		return ""
 	}
 	if !slices.Contains(declared, n.text) {
-		r.wrong(n, path, "no "+strings.TrimPrefix(strings.TrimPrefix(what, "an "), "a ")+" has that code", suggest(n.text, declared))
+		r.wrong(n, path, "there is no such "+strings.TrimPrefix(strings.TrimPrefix(what, "an "), "a "), suggest(n.text, declared))
 		return ""
 	}
 	return n.text
