@@ -124,7 +124,7 @@ func (r *Runner) turn(ctx context.Context, j Job, site book.SiteView) error {
 		return nil
 	}
 	last, ran, err := r.b.LastRun(ctx, j.Name, site.Code)
-	if err != nil || ran && !last.Due.Before(due) {
+	if err != nil || ran && !last.Due.Before(due) && !last.Stuck(r.b.Now()) {
 		return err
 	}
 	_, err = r.b.Claimed(ctx, j.Name, site.Code, due, func() (string, error) {

@@ -11,6 +11,9 @@ import (
 	"sync"
 	"time"
 
+	"github.com/gin-gonic/gin"
+
+	"lodebook/api"
 	"lodebook/jobs"
 	"lodebook/models/book"
 	"lodebook/web"
@@ -47,6 +50,7 @@ func (f *serveFlags) serve(a *app, b *book.Book, ready func(url string) error) e
 	url := f.url(l.Addr())
 	handler, err := web.New(b, web.Options{
 		PublicURL: url, Secure: f.TLSCert != "" || isHTTPS(f.PublicURL), TrustedProxies: f.TrustedProxy, Log: log, Jobs: nextRuns(b),
+		API: func(r gin.IRouter, auth func(*http.Request) (book.Actor, error)) { api.Register(r, b, auth) },
 	})
 	if err != nil {
 		return errors.Join(err, l.Close())

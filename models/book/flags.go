@@ -155,22 +155,33 @@ func (b *Book) LastRun(ctx context.Context, job, site string) (RunView, bool, er
 	return out, found, err
 }
 
+// stuckAfter is how long after its start a run that has no end is taken for one that was cut off.
+const stuckAfter = 30 * time.Minute
+
+// Stuck tells whether the run began long ago and never ended: the program that ran it is gone.
+func (r RunView) Stuck(now time.Time) bool {
+	return r.Outcome == store.RunRunning && now.Sub(r.Started) > stuckAfter
+}
+
 // Claimed runs fn as the run of a job at a site that was due at a moment, if nobody has claimed that
-// run yet; the outcome is recorded either way. It tells whether it ran.
+// run yet (or whoever did is gone); the outcome is recorded either way. It tells whether it ran.
 func (b *Book) Claimed(ctx context.Context, job, site string, due time.Time, fn func() (string, error)) (bool, error) {
 	var mine bool
 	err := b.operate(ctx, func(tx *store.Tx, _ *model) error {
 		var err error
 		mine, err = tx.ClaimRun(job, site, due, b.Now())
+		if err == nil && !mine {
+			mine, err = tx.RetakeRun(job, site, due, b.Now().Add(-stuckAfter), b.Now())
+		}
 		return err
 	})
 	if err != nil || !mine {
 		return false, err
 	}
 	message, failure := fn()
-	outcome := "done"
+	outcome := store.RunDone
 	if failure != nil {
-		outcome, message = "failed", failure.Error()
+		outcome, message = store.RunFailed, failure.Error()
 	}
 	err = b.operate(ctx, func(tx *store.Tx, _ *model) error {
 		return tx.FinishRun(job, site, due, b.Now(), outcome, message)
