@@ -2,6 +2,7 @@ package program
 
 import (
 	"fmt"
+	"math/big"
 	"regexp"
 	"slices"
 	"strconv"
@@ -10,168 +11,200 @@ import (
 	"lodebook/models/civil"
 )
 
-// Judgement is what a filled-in sheet comes to: a pass, a pass with a remark, or a fail, with the
-// reasons in sentences.
+// Judgement is the result of a filled-in sheet. Passed is false where anything fails; Remark is
+// true where all passes and something lies beyond a warn limit. Reasons say, in sentences and in
+// order of the fields, what failed or was remarked. Values are the answers as they are kept: numbers
+// with the digits that were typed, a decimal comma made a point and the unit left off; yes or no;
+// days as YYYY-MM-DD. Fields left empty are not among them.
 type Judgement struct {
-	Passed, Remark bool
-	Reasons        []string
+	Passed  bool
+	Remark  bool
+	Reasons []string
+	Values  map[string]string
 }
 
-// FieldFault is a value that cannot be judged.
-type FieldFault struct{ Field, Value, Problem, Accepted string }
-
-// verdict is what one value comes to.
-type verdict struct {
-	fails, remark bool
-	reason        string
+// FieldFault is an answer that cannot be judged.
+type FieldFault struct {
+	Field    string `json:"field"`    // the field's code
+	Value    string `json:"value"`    // what was given
+	Problem  string `json:"problem"`  // what is wrong with it
+	Accepted string `json:"accepted"` // what would be accepted
 }
 
-// Judge computes what the values come to. Values are as typed, by field code; faults name what
-// cannot be judged, and then the judgement is void. A value of no field of the sheet is a fault.
+// Judge computes the result from the answers by field code. With faults, nothing has passed, and
+// the judgement covers the other fields alone.
 func (s *Sheet) Judge(values map[string]string) (Judgement, []FieldFault) {
-	j := Judgement{Passed: true}
+	j := Judgement{Passed: true, Values: map[string]string{}}
 	var faults []FieldFault
 	for i := range s.Fields {
 		f := &s.Fields[i]
-		v, fault := f.judge(strings.TrimSpace(values[f.Code]))
-		if fault != nil {
-			faults = append(faults, *fault)
+		given := strings.TrimSpace(values[f.Code])
+		if given == "" {
+			if f.Required {
+				faults = append(faults, FieldFault{f.Code, "", "not filled in", "give " + f.wanted()})
+			}
 			continue
 		}
-		j.Passed = j.Passed && !v.fails
-		j.Remark = j.Remark || v.remark
-		if v.reason != "" {
-			j.Reasons = append(j.Reasons, v.reason)
+		kept, problem := f.keep(given)
+		if problem != "" {
+			faults = append(faults, FieldFault{f.Code, given, problem, "give " + f.wanted()})
+			continue
 		}
+		j.Values[f.Code] = kept
+		j.weigh(f, kept)
 	}
-	for code, value := range values {
-		if !slices.ContainsFunc(s.Fields, func(f Field) bool { return f.Code == code }) {
-			faults = append(faults, FieldFault{code, value, "is no field of this sheet", "leave it out"})
-		}
-	}
+	faults = append(faults, s.unknown(values)...)
+	j.Passed = j.Passed && len(faults) == 0
 	j.Remark = j.Remark && j.Passed
 	return j, faults
 }
 
-func (f *Field) judge(text string) (verdict, *FieldFault) {
-	if text == "" {
-		if f.Required {
-			return verdict{}, f.fault(text, "is empty", f.wanted())
-		}
-		return verdict{}, nil
-	}
-	switch f.Type {
-	case FieldNumber:
-		return f.judgeNumber(text)
-	case FieldYesNo:
-		return f.judgeYesNo(text)
-	case FieldChoice:
-		return f.judgeChoice(text)
-	case FieldDay:
-		if _, err := civil.ParseDay(text); err != nil {
-			return verdict{}, f.fault(text, "is not a day", f.wanted())
+// unknown lists answers to questions that the sheet does not ask.
+func (s *Sheet) unknown(values map[string]string) []FieldFault {
+	var faults []FieldFault
+	asked := codes(s.Fields, func(f Field) string { return f.Code })
+	for _, code := range sortedKeys(values) {
+		if !slices.Contains(asked, code) {
+			faults = append(faults, FieldFault{code, values[code], "the sheet has no such field", suggest(code, asked)})
 		}
 	}
-	return verdict{}, nil
-}
-
-func (f *Field) fault(value, problem, accepted string) *FieldFault {
-	return &FieldFault{f.Code, value, problem, accepted}
+	return faults
 }
 
 // wanted says what the field takes.
 func (f *Field) wanted() string {
 	switch f.Type {
 	case FieldNumber:
-		return strings.TrimSpace("write a number such as 2.1 " + f.inUnit())
+		if f.Unit != "" {
+			return "a number in " + f.Unit + ", such as 2.1"
+		}
+		return "a number such as 2.1"
 	case FieldYesNo:
-		return "answer yes or no"
+		return "yes or no"
 	case FieldChoice:
-		return "choose one of " + strings.Join(f.Choices, ", ")
+		return anyOf(f.Choices)
 	case FieldDay:
-		return "write a day as YYYY-MM-DD"
-	default:
-		return "write something"
+		return "a day as YYYY-MM-DD"
 	}
+	return "a text"
 }
 
-func (f *Field) inUnit() string {
-	if f.Unit == "" {
-		return ""
+// keep turns an answer into what is kept of it, or tells why it cannot be.
+func (f *Field) keep(given string) (kept, problem string) {
+	switch f.Type {
+	case FieldNumber:
+		return f.keepNumber(given)
+	case FieldYesNo:
+		switch strings.ToLower(given) {
+		case "yes", "true":
+			return "yes", ""
+		case "no", "false":
+			return "no", ""
+		}
+		return "", "neither yes nor no"
+	case FieldChoice:
+		if !slices.Contains(f.Choices, given) {
+			return "", "not one of the choices"
+		}
+	case FieldDay:
+		if _, err := civil.ParseDay(given); err != nil {
+			return "", "not a day of the calendar"
+		}
 	}
-	return "in " + f.Unit
+	return given, ""
 }
 
-func (f *Field) judgeNumber(text string) (verdict, *FieldFault) {
-	typed, ok := f.Number(text)
-	if !ok {
-		return verdict{}, f.fault(text, "is not a number"+spaced(f.inUnit()), f.wanted())
-	}
-	n, err := strconv.ParseFloat(typed, 64)
-	if err != nil {
-		return verdict{}, f.fault(text, "is not a number that can be counted with", f.wanted())
-	}
-	is := f.Label + " is " + typed + f.unitAfter()
-	switch {
-	case f.Min != nil && n < *f.Min:
-		return verdict{fails: true, reason: is + "; at least " + f.written(*f.Min) + " is asked."}, nil
-	case f.Max != nil && n > *f.Max:
-		return verdict{fails: true, reason: is + "; at most " + f.written(*f.Max) + " is allowed."}, nil
-	case f.WarnBelow != nil && n < *f.WarnBelow:
-		return verdict{remark: true, reason: is + ", which is less than " + f.written(*f.WarnBelow) + "."}, nil
-	case f.WarnAbove != nil && n > *f.WarnAbove:
-		return verdict{remark: true, reason: is + ", which is more than " + f.written(*f.WarnAbove) + "."}, nil
-	}
-	return verdict{}, nil
-}
+// typedNumber is a number as people type it: plain digits, with a point or a comma.
+var typedNumber = regexp.MustCompile(`^[+-]?[0-9]{1,20}([.,][0-9]{1,20})?$`)
 
-func spaced(s string) string {
-	if s == "" {
-		return ""
-	}
-	return " " + s
-}
-
-func (f *Field) unitAfter() string { return spaced(f.Unit) }
-
-func (f *Field) written(n float64) string {
-	return strconv.FormatFloat(n, 'f', -1, 64) + f.unitAfter()
-}
-
-var plainNumber = regexp.MustCompile(`^[+-]?(\d{1,12}([.]\d{0,12})?|[.]\d{1,12})$`)
-
-// Number reads a number as typed and gives it with a decimal point, its digits kept (19.50 stays
-// 19.50). A decimal comma will do, and the field's own unit behind it; nothing else will.
-func (f *Field) Number(text string) (string, bool) {
-	text = strings.TrimSpace(text)
+func (f *Field) keepNumber(given string) (kept, problem string) {
+	number := given
 	if f.Unit != "" {
-		text = strings.TrimSpace(strings.TrimSuffix(text, f.Unit))
+		number = strings.TrimSpace(strings.TrimSuffix(given, f.Unit))
 	}
-	text = strings.Replace(text, ",", ".", 1)
-	return text, plainNumber.MatchString(text)
+	number = strings.Replace(number, "\u2212", "-", 1) // the minus sign that tables print
+	if typedNumber.MatchString(number) {
+		return strings.TrimPrefix(strings.Replace(number, ",", ".", 1), "+"), ""
+	}
+	if digits, unit := splitUnit(number); unit != "" && typedNumber.MatchString(digits) {
+		if f.Unit == "" {
+			return "", "the field has no unit"
+		}
+		return "", "the unit is not the field's own"
+	}
+	return "", "not a number"
 }
 
-func (f *Field) judgeYesNo(text string) (verdict, *FieldFault) {
-	var yes bool
-	switch strings.ToLower(text) {
-	case "yes":
-		yes = true
-	case "no":
-	default:
-		return verdict{}, f.fault(text, "is neither yes nor no", f.wanted())
-	}
-	if f.Must != nil && yes != *f.Must {
-		return verdict{fails: true, reason: fmt.Sprintf("%s: %s.", f.Label, strings.ToLower(text))}, nil
-	}
-	return verdict{}, nil
+// splitUnit splits "2.1 cm" where the digits end.
+func splitUnit(s string) (number, unit string) {
+	i := strings.LastIndexAny(s, "0123456789") + 1
+	return s[:i], strings.TrimSpace(s[i:])
 }
 
-func (f *Field) judgeChoice(text string) (verdict, *FieldFault) {
-	if !slices.Contains(f.Choices, text) {
-		return verdict{}, f.fault(text, "is not one of the choices", f.wanted())
+// weigh holds what is kept against the field's demands.
+func (j *Judgement) weigh(f *Field, kept string) {
+	fail := func(format string, args ...any) {
+		j.Passed = false
+		j.Reasons = append(j.Reasons, fmt.Sprintf(format, args...))
 	}
-	if slices.Contains(f.FailOn, text) {
-		return verdict{fails: true, reason: f.Label + ": " + text + "."}, nil
+	switch f.Type {
+	case FieldNumber:
+		j.weighNumber(f, kept, fail)
+	case FieldYesNo:
+		if f.Must != nil && kept != yesOrNo(*f.Must) {
+			fail("%s: the answer is %s; %s is asked.", f.Label, kept, yesOrNo(*f.Must))
+		}
+	case FieldChoice:
+		if slices.Contains(f.FailOn, kept) {
+			fail("%s is %s, which fails.", f.Label, kept)
+		}
 	}
-	return verdict{}, nil
+}
+
+func (j *Judgement) weighNumber(f *Field, kept string, fail func(string, ...any)) {
+	v, ok := new(big.Rat).SetString(kept)
+	if !ok {
+		fail("%s is %s, which cannot be compared.", f.Label, kept)
+		return
+	}
+	remark := func(format string, args ...any) {
+		j.Remark = true
+		j.Reasons = append(j.Reasons, fmt.Sprintf(format, args...))
+	}
+	switch {
+	case f.Min != nil && v.Cmp(exactly(*f.Min)) < 0:
+		fail("%s is %s; at least %s is asked.", f.Label, f.inUnit(kept), f.inUnit(decimal(*f.Min)))
+	case f.Max != nil && v.Cmp(exactly(*f.Max)) > 0:
+		fail("%s is %s; at most %s is asked.", f.Label, f.inUnit(kept), f.inUnit(decimal(*f.Max)))
+	case f.WarnBelow != nil && v.Cmp(exactly(*f.WarnBelow)) < 0:
+		remark("%s is %s; below %s is worth a remark.", f.Label, f.inUnit(kept), f.inUnit(decimal(*f.WarnBelow)))
+	case f.WarnAbove != nil && v.Cmp(exactly(*f.WarnAbove)) > 0:
+		remark("%s is %s; above %s is worth a remark.", f.Label, f.inUnit(kept), f.inUnit(decimal(*f.WarnAbove)))
+	}
+}
+
+// exactly is the limit as it is written: 0.1 is one tenth, and not the nearest binary fraction, so
+// that an answer of 0.1 is never below it.
+func exactly(limit float64) *big.Rat {
+	r, ok := new(big.Rat).SetString(decimal(limit))
+	if !ok {
+		return new(big.Rat).SetFloat64(limit)
+	}
+	return r
+}
+
+func decimal(v float64) string { return strconv.FormatFloat(v, 'f', -1, 64) }
+
+func (f *Field) inUnit(number string) string {
+	if f.Unit == "" {
+		return number
+	}
+	return number + " " + f.Unit
+}
+
+func yesOrNo(b bool) string {
+	if b {
+		return "yes"
+	}
+	return "no"
 }
