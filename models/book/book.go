@@ -96,6 +96,9 @@ func (b *Book) catchUp(tx *store.Tx) error {
 	if size == b.m.head {
 		return nil
 	}
+	if err := knownKinds(tx, b.m.head-1); err != nil {
+		return err
+	}
 	delta, err := tx.Changed(b.m.head - 1)
 	if err != nil {
 		return err
@@ -104,6 +107,20 @@ func (b *Book) catchUp(tx *store.Tx) error {
 		return err
 	}
 	b.m.head = size
+	return nil
+}
+
+// knownKinds refuses a book with entries that this program is too old to read.
+func knownKinds(tx *store.Tx, after int64) error {
+	kinds, err := tx.KindVersions(after)
+	if err != nil {
+		return err
+	}
+	for _, k := range sortedKeys(kinds) {
+		if mk, ok := newBody[k]; !ok || mk().version() < kinds[k] {
+			return &TooNew{k, kinds[k]}
+		}
+	}
 	return nil
 }
 

@@ -4,6 +4,7 @@ import (
 	"bytes"
 	"context"
 	"crypto/rand"
+	"database/sql"
 	"errors"
 	"os"
 	"path/filepath"
@@ -12,6 +13,8 @@ import (
 	"testing"
 	"time"
 	_ "time/tzdata"
+
+	_ "github.com/mattn/go-sqlite3"
 
 	"lodebook/models/book"
 	"lodebook/models/civil"
@@ -432,4 +435,14 @@ func TestReopenedBookIsTheSame(t *testing.T) {
 			t.Errorf("row %d: live %s %s %s, reopened %s %s %s", i, a.Item, a.Subject.Code, a.Word, b.Item, b.Subject.Code, b.Word)
 		}
 	}
+}
+
+// rawSQL changes the file behind the book's back.
+func (d *desk) rawSQL(statement string) {
+	d.Helper()
+	db, err := sql.Open("sqlite3", d.path)
+	d.ok(err)
+	_, err = db.ExecContext(d.Context(), statement)
+	d.ok(err)
+	d.ok(db.Close())
 }

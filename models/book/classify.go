@@ -29,6 +29,7 @@ func Classify(err error) Class {
 		signIn   *BadSignIn
 		many     *TooMany
 		refusal  *store.Refusal
+		tooNew   *TooNew
 	)
 	switch {
 	case errors.As(err, &invalid), errors.As(err, &faults):
@@ -45,6 +46,8 @@ func Classify(err error) Class {
 		return Class{429, upperFirst(err.Error()) + "."}
 	case errors.As(err, &refusal):
 		return Class{503, upperFirst(refusal.Reason)}
+	case errors.As(err, &tooNew):
+		return Class{503, upperFirst(err.Error()) + "."}
 	default:
 		return Class{500, Unknown}
 	}
