@@ -172,8 +172,11 @@ func (a *app) open(f bookFlag, fn func(b *book.Book) error) error {
 	return errors.Join(fn(b), b.Close())
 }
 
-// pathOnly refuses an address where only a file will do.
+// pathOnly refuses an empty name, and an address where only a file will do.
 func pathOnly(path string) error {
+	if path == "" {
+		return &exit{exitUsage, errors.New("--book: name the book, or set LODEBOOK_BOOK")}
+	}
 	for _, scheme := range []string{"postgres://", "postgresql://"} {
 		if len(path) > len(scheme) && path[:len(scheme)] == scheme {
 			return fmt.Errorf("--book: found a PostgreSQL address; this version keeps its books in SQLite files, so name a path such as site.book")
