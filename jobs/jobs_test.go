@@ -4,7 +4,6 @@ import (
 	"context"
 	"crypto/rand"
 	"errors"
-	"io"
 	"log/slog"
 	"path/filepath"
 	"strings"
@@ -70,7 +69,7 @@ func (x *bench) imp(table, csv string) {
 
 func (x *bench) turn() {
 	x.Helper()
-	x.ok(NewRunner(x.b, slog.New(slog.NewTextHandler(io.Discard, nil))).Turn(x.Context()))
+	x.ok(NewRunner(x.b, slog.New(slog.DiscardHandler)).Turn(x.Context()))
 }
 
 func (x *bench) flags() []book.FlagView {
@@ -164,7 +163,7 @@ func TestTwoProgramsRunOnce(t *testing.T) {
 	done := make(chan error, 2)
 	for _, b := range []*book.Book{x.b, other} {
 		go func() {
-			done <- NewRunner(b, slog.New(slog.NewTextHandler(io.Discard, nil))).Turn(context.WithoutCancel(t.Context()))
+			done <- NewRunner(b, slog.New(slog.DiscardHandler)).Turn(context.WithoutCancel(t.Context()))
 		}()
 	}
 	x.ok(errors.Join(<-done, <-done))

@@ -1,6 +1,7 @@
 package book
 
 import (
+	"maps"
 	"slices"
 	"strings"
 
@@ -88,14 +89,15 @@ func (c *cells) finish(d rowDraft, silent bool) (rowDraft, []table.Fault) {
 
 func personFactColumns(in *importing) []string { return declaredColumns(in.c.personFacts()) }
 
-func fixtureFactColumns(in *importing) []string {
+func fixtureFactColumns(in *importing) []string { return declaredColumns(in.allFixtureFacts()) }
+
+// allFixtureFacts are the facts of every fixture kind of the site.
+func (in *importing) allFixtureFacts() map[string]program.Fact {
 	all := map[string]program.Fact{}
-	for _, k := range in.c.m.site(in.o.Site).kindCodes() {
-		for code, f := range in.c.fixtureFacts(k) {
-			all[code] = f
-		}
+	for _, k := range in.m.site(in.o.Site).kindCodes() {
+		maps.Copy(all, in.c.fixtureFacts(k))
 	}
-	return declaredColumns(all)
+	return all
 }
 
 // declaredColumns are the facts that have no column of their own.
@@ -156,19 +158,7 @@ func fixtureRow(in *importing, row table.Row) (rowDraft, []table.Fault) {
 	f := FixtureForm{
 		Code: c.text("code"), Kind: c.text("kind"), Name: c.text("name"), Zone: c.text("zone"), Since: c.day("since"), Until: c.day("until"), From: c.day("from"),
 	}
-	kind := f.Kind
-	if old, ok := in.m.fixture(in.o.Site, f.Code); ok && kind == "" {
-		kind = old.Kind
-	}
-	all := map[string]program.Fact{}
-	for _, k := range fixtureFactColumns(in) {
-		for _, kc := range in.m.site(in.o.Site).kindCodes() {
-			if fact, ok := in.c.fixtureFacts(kc)[k]; ok {
-				all[k] = fact
-			}
-		}
-	}
-	f.Facts = c.factCells(all)
+	f.Facts = c.factCells(in.allFixtureFacts())
 	body, faults := in.c.fixtureBody(f)
 	c.add(faults)
 	if body == nil {

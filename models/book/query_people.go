@@ -247,9 +247,6 @@ func factShown(value, unit string) string {
 	}
 }
 
-// lateAfter is how long after it happened a record counts as recorded late.
-const lateAfter = 14
-
 func (v *siteOn) recordLines(rows []store.RecordRow) []RecordLine {
 	out := make([]RecordLine, 0, len(rows))
 	for _, r := range rows {

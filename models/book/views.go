@@ -129,23 +129,22 @@ type FactLine struct {
 
 // RecordLine is one record in a history.
 type RecordLine struct {
-	Entry         string
-	What          string // kind/code
-	Title         string // of the item or sheet that it answers
-	SubjectKind   string
-	Subject       string
-	SubjectName   string
-	Site          string
-	Day           civil.Day
-	Time          *time.Time
-	Passed        bool
-	Remark        bool
-	Until         *civil.Day
-	Limit         string
-	Ended         bool // superseded or withdrawn
-	Imported      bool
-	Session       string
-	RecordedLater bool
+	Entry       string
+	What        string // kind/code
+	Title       string // of the item or sheet that it answers
+	SubjectKind string
+	Subject     string
+	SubjectName string
+	Site        string
+	Day         civil.Day
+	Time        *time.Time
+	Passed      bool
+	Remark      bool
+	Until       *civil.Day
+	Limit       string
+	Ended       bool // superseded or withdrawn
+	Imported    bool
+	Session     string
 }
 
 // ExcusalLine is one excusal or pause (Item empty) in a history.

@@ -350,13 +350,13 @@ func (s *Store) Dump(ctx context.Context) (map[string][]string, error) {
 	return out, err
 }
 
-func (t *Tx) dump(name string) ([]string, error) {
+func (t *Tx) dump(name string) (lines []string, err error) {
 	rows, err := t.db.Table(name).Rows()
 	if err != nil {
 		return nil, err
 	}
-	lines, err := rowsAsText(rows)
-	return lines, errors.Join(err, rows.Close())
+	defer func() { err = errors.Join(err, rows.Close()) }()
+	return rowsAsText(rows)
 }
 
 // rowsAsText writes each row as name="value" for every column, and sorts the rows.

@@ -60,7 +60,7 @@ func readBig(name string) error {
 			return fmt.Errorf("row %d is %q, %q", row.Line, row.Text("code"), row.Text("name"))
 		}
 		if _, ok, f := row.Day("joined"); !ok || f != nil {
-			return fmt.Errorf("row %d: %v", row.Line, f)
+			return fmt.Errorf("row %d: %w", row.Line, f)
 		}
 	}
 	if err := r.Close(); err != nil {
