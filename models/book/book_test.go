@@ -446,3 +446,5 @@ func (d *desk) rawSQL(statement string) {
 	d.ok(err)
 	d.ok(db.Close())
 }
+
+func bookQuery() book.StandingQuery { return book.StandingQuery{Site: site} }

@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"strings"
 
+	"lodebook/models/program"
 	"lodebook/models/store"
 )
 
@@ -97,7 +98,14 @@ func (b *Book) ErasePerson(ctx context.Context, actor Actor, person string) (Rec
 	if actor.Person == person {
 		return Receipt{}, &Denied{Action: Erase, Role: actor.Role, Why: "nobody erases themselves; ask another account"}
 	}
-	receipt, err := b.write(ctx, actor, func(s *session) error { return s.erase(person) })
+	receipt, err := b.write(ctx, actor, func(s *session) error {
+		for _, site := range s.m.siteCodes() {
+			if len(s.m.stintsAt(site, string(program.AsksPerson), person)) > 0 && !actor.SeesSite(site) {
+				return &Denied{Action: Erase, Role: actor.Role, Why: "this person was on staff at site " + site + " too; somebody who belongs there has to erase them"}
+			}
+		}
+		return s.erase(person)
+	})
 	if err != nil {
 		return Receipt{}, err
 	}

@@ -46,13 +46,22 @@ func (b *Book) Entries(ctx context.Context, actor Actor, q EntryQuery) ([]EntryL
 			if err != nil {
 				return err
 			}
-			if e.Site == "" || actor.SeesSite(e.Site) {
+			if actor.seesEntry(e) {
 				out = append(out, line)
 			}
 		}
 		return nil
 	})
 	return out, err
+}
+
+// seesEntry tells whether the entry is of a site that the actor belongs to. Those of the whole book
+// (accounts, erasures) are for who belongs to all of it, and for their own writer.
+func (a Actor) seesEntry(e store.Entry) bool {
+	if e.Site == "" {
+		return len(a.Sites) == 0 || a.Account != "" && e.Actor == a.Account
+	}
+	return a.SeesSite(e.Site)
 }
 
 func (b *Book) withEntries(ctx context.Context, fn func(tx *store.Tx, m *model) error) error {
@@ -88,6 +97,9 @@ func (b *Book) Entry(ctx context.Context, actor Actor, id string) (EntryView, er
 // maySeeEntry lets everybody see what they wrote themselves, and what is about them.
 func (m *model) maySeeEntry(tx *store.Tx, actor Actor, e store.Entry) error {
 	denied := actor.may(SeeBook, e.Site)
+	if denied == nil && !actor.seesEntry(e) {
+		denied = &Denied{Action: SeeBook, Role: actor.Role, Why: "this entry is about the whole book"}
+	}
 	if denied == nil || actor.Account != "" && e.Actor == actor.Account && actor.may(SeeOwn, e.Site) == nil {
 		return nil
 	}

@@ -82,9 +82,11 @@ func (m *model) narrow(actor Actor, own bool, q StandingQuery) (*standing.Subjec
 // siteOn is a site on one day as known at one moment, ready to answer.
 type siteOn struct {
 	SiteView
-	m  *model
-	on civil.Day
-	k  int64
+	m     *model
+	on    civil.Day
+	k     int64
+	named map[standing.Subject][2]string // names and notes, each looked up once
+	crews map[string]int                 // people in each crew; nil until asked
 }
 
 // view makes the site ready for a day (nil: today).
@@ -94,7 +96,7 @@ func (m *model) view(code string, on *civil.Day, k int64, now time.Time) (*siteO
 		return nil, &NotFound{"site", code}
 	}
 	zone := m.zone(code)
-	v := &siteOn{m: m, k: k, on: civil.DayOf(now, zone)}
+	v := &siteOn{m: m, k: k, on: civil.DayOf(now, zone), named: map[standing.Subject][2]string{}}
 	v.Today = v.on
 	if on != nil {
 		v.on = *on
@@ -119,7 +121,8 @@ func (v *siteOn) rows(q standing.Query) ([]Row, error) {
 	}
 	rows := make([]Row, 0, len(list))
 	for _, s := range list {
-		r := Row{Standing: s, Site: v.Code, SubjectName: v.subjectName(s.Subject), SubjectNote: v.subjectNote(s.Subject), Asked: s.Word != standing.DataFault}
+		r := Row{Standing: s, Site: v.Code, Asked: s.Word != standing.DataFault}
+		r.SubjectName, r.SubjectNote = v.nameAndNote(s.Subject)
 		if item, ok := program.Item(s.Item); ok {
 			r.Title, r.Group, r.Basis, r.Records, r.Guards = item.Title, item.Group, item.Basis, item.Records, item.Guards
 			r.Cadence, r.Owner = CadenceWords(item.Cadence), ownerOf(item)
@@ -139,6 +142,16 @@ func ownerOf(i *program.Item) string {
 		return string(Facilities)
 	}
 	return string(SafetyOfficer)
+}
+
+// nameAndNote looks a subject's name and note up once.
+func (v *siteOn) nameAndNote(s standing.Subject) (name, note string) {
+	both, ok := v.named[s]
+	if !ok {
+		both = [2]string{v.subjectName(s), v.subjectNote(s)}
+		v.named[s] = both
+	}
+	return both[0], both[1]
 }
 
 // subjectName is the subject's name, or its code where it has none.
@@ -203,15 +216,20 @@ func (v *siteOn) subjectNote(s standing.Subject) string {
 			parts = append(parts, "Zone "+p.Zone)
 		}
 	case program.AsksCrew:
-		n := 0
-		for _, x := range v.m.engine.Subjects(v.Code, program.AsksPerson, v.on, v.k) {
-			if v.m.engine.Profile(v.Code, x, v.on, v.k).Crew == s.Code {
-				n++
-			}
-		}
-		parts = append(parts, plural(n, "person", "people"))
+		parts = append(parts, plural(v.crewSize(s.Code), "person", "people"))
 	}
 	return strings.Join(parts, ", ")
+}
+
+// crewSize is the number of people on staff in a crew.
+func (v *siteOn) crewSize(crew string) int {
+	if v.crews == nil {
+		v.crews = map[string]int{}
+		for _, x := range v.m.engine.Subjects(v.Code, program.AsksPerson, v.on, v.k) {
+			v.crews[v.m.engine.Profile(v.Code, x, v.on, v.k).Crew]++
+		}
+	}
+	return v.crews[crew]
 }
 
 func (v *siteOn) kindName(kind string) string {
