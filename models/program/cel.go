@@ -130,8 +130,11 @@ func (s *scope) compile(src string) (*Selector, []flaw) {
 	}
 	sel := NewSelector(strings.TrimSpace(src), sortedKeys(in.reads), matcher(prog))
 	sel.undeclared = in.undeclared
-	if kinds := pinned(tree.Expr(), in, "kind"); len(kinds) > 0 {
-		sel.kinds = kinds
+	sel.pins = map[string][]string{}
+	for _, field := range []string{"kind", "code"} {
+		if only := pinned(tree.Expr(), in, field); len(only) > 0 {
+			sel.pins[field] = only
+		}
 	}
 	return sel, nil
 }

@@ -201,7 +201,7 @@ func (e *Editor) appendFlow(of *node, pieces []Piece) error {
 	}
 	if len(of.items) == 0 && line == of.line {
 		r := []rune(e.lines[line-1].text)
-		e.lines[line-1].text = strings.TrimRight(string(r[:of.col-1])+string(r[col:]), " ")
+		e.lines[line-1].text = strings.TrimRight(string(r[:of.col-1]), " ") + string(r[col:])
 		e.insertLines(line, 2, blocks(pieces))
 		return nil
 	}
@@ -252,7 +252,11 @@ func (e *Editor) section(root *node, key, body string) {
 			behind--
 		}
 	}
-	e.insertLines(behind, 0, key+":\n"+indented(body))
+	text := key + ":\n" + indented(body)
+	if behind > 0 && behind < len(e.lines) && strings.TrimSpace(e.lines[behind-1].text) == "" {
+		text += "\n" // sections of this file stand apart
+	}
+	e.insertLines(behind, 0, text)
 }
 
 func indented(body string) string {

@@ -246,7 +246,7 @@ func (r *reader) answerable(o object, it Item) {
 	if it.Asks == "" {
 		return
 	}
-	kinds := it.When.kindsAsked()
+	kinds := it.When.Kinds()
 	if n := o.get("after"); n != nil && it.Asks == AsksFixture && kinds != nil {
 		for i, ref := range n.items {
 			e, ok := r.p.Event(ref.text)

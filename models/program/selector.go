@@ -23,19 +23,26 @@ type Subject struct {
 // Selector is a compiled boolean CEL expression over one subject.
 type Selector struct {
 	source string
-	reads  []string // the fields read, as in "level" or "facts.swing"
-	kinds  []string // the fixture kinds that it can match; nil: any
+	reads  []string            // the fields read, as in "level" or "facts.swing"
+	pins   map[string][]string // kind and code -> the only ones that it can match
 	match  func(Subject) (bool, error)
 
 	undeclared []string // fixture kinds that it names and that are not declared
 }
 
-// kindsAsked are the fixture kinds that the expression can match; nil is any.
-func (s *Selector) kindsAsked() []string {
+// Kinds are the only fixture kinds that the expression can match; nil where it does not say. A nil
+// selector matches all.
+func (s *Selector) Kinds() []string { return s.pinned("kind") }
+
+// Codes are the only codes of subjects that the expression can match; nil where it does not say. A
+// nil selector matches all.
+func (s *Selector) Codes() []string { return s.pinned("code") }
+
+func (s *Selector) pinned(field string) []string {
 	if s == nil {
 		return nil
 	}
-	return s.kinds
+	return s.pins[field]
 }
 
 // MissingFact is the error of a selector that needs a fact which is not on record.

@@ -173,7 +173,7 @@ func TestReads(t *testing.T) {
 	}
 }
 
-func TestKindsAsked(t *testing.T) {
+func TestKinds(t *testing.T) {
 	p := declared(t)
 	for expr, want := range map[string][]string{
 		"subject.kind == 'vent'":                                  {"vent"},
@@ -197,7 +197,7 @@ func TestKindsAsked(t *testing.T) {
 			t.Errorf("%s: %v", expr, err)
 			continue
 		}
-		same(t, expr, sel.kindsAsked(), want)
+		same(t, expr, sel.Kinds(), want)
 	}
 }
 
