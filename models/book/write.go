@@ -38,7 +38,7 @@ type session struct {
 }
 
 // write opens a transaction, brings the model up to date inside it, and lets fn add entries. When
-// fn fails nothing stays. After the commit the model takes the new rows in.
+// fn fails nothing stays. The model takes the new rows in with the next read.
 func (b *Book) write(ctx context.Context, actor Actor, fn func(s *session) error) (Receipt, error) {
 	b.writing.Lock()
 	defer b.writing.Unlock()
@@ -57,7 +57,7 @@ func (b *Book) write(ctx context.Context, actor Actor, fn func(s *session) error
 	if err != nil {
 		return Receipt{}, err
 	}
-	return s.receipt, b.sync(ctx)
+	return s.receipt, nil
 }
 
 func (b *Book) lockedCatchUp(tx *store.Tx) error {
