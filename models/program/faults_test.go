@@ -128,6 +128,9 @@ site: {code: A, code: B, time_zone: Etc/UTC}
 		`line 2, column 1: lodebook: found "lodebook"; the key stands on line 1 already; keep one of the two`,
 		`line 3, column 17: site.code: found "code"; the key stands on line 3 already; keep one of the two`,
 	}},
+	{"dash with nothing behind it", head + "crews:\n- {code: a}\n-\nlevels: []\n", []string{
+		"line 6, column 1: found a mapping; the dash before it has nothing behind it; write an entry behind the dash, or take it away",
+	}},
 	{"colon without quotes", `lodebook: 1
 site: {code: A name: B, time_zone: Etc/UTC}
 `, []string{

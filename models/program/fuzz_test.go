@@ -44,3 +44,31 @@ func exercise(p *Program) {
 		}
 	}
 }
+
+// FuzzEditor adds to any text: it never panics, and where it says that it added something to a
+// list, the list has it.
+func FuzzEditor(f *testing.F) {
+	f.Add(example(f), "zones")
+	for _, src := range []string{"zones:\n- code: A\n", "zones: [{code: A}]", "zones: []", "zones:\n", "zones: ~ # x\r\n", "a: |\n  x\nzones:\n  - code: >\n      A\n# y\n...\n"} {
+		f.Add([]byte(src), "zones")
+	}
+	f.Fuzz(func(t *testing.T, src []byte, name string) {
+		e, err := NewEditor(src)
+		if err != nil {
+			return
+		}
+		_ = e.AddFacts("vent", NewFact{"a", "text"})
+		_ = e.AddFacts("", NewFact{"a", "text"})
+		_, _ = SetInForceFrom(src, 0)
+		if name != "zones" || e.Append(name, newZone) != nil {
+			return
+		}
+		root, err := e.root()
+		if err != nil {
+			return // Adopt reads the result and gives it up
+		}
+		if of, ok := root.entry(name); !ok || len(of.value.items) == 0 {
+			t.Fatalf("nothing was added to\n%s", e.Bytes())
+		}
+	})
+}

@@ -182,7 +182,14 @@ func (g *grower) node(n ast.Node) *node {
 	case *ast.SequenceNode:
 		seq := at(n.Start, &node{kind: list})
 		for _, v := range n.Values {
-			seq.items = append(seq.items, g.node(v))
+			item := g.node(v)
+			// Behind a dash with nothing behind it, at the margin, the parser reads on into the
+			// keys that follow the list.
+			if !n.IsFlowStyle && item.kind == mapping && item.col <= seq.col {
+				g.faults = append(g.faults, Fault{Line: item.line, Column: item.col, Found: item.describe(), Problem: "the dash before it has nothing behind it", Accepted: "write an entry behind the dash, or take it away"})
+				item.kind = refused
+			}
+			seq.items = append(seq.items, item)
 		}
 		return seq
 	case *ast.LiteralNode:
