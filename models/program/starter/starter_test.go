@@ -98,7 +98,7 @@ func TestNewRefuses(t *testing.T) {
 	}
 }
 
-// The starter has what the issue lists, each item says where it comes from, and nothing in it is
+// Each item says where it comes from, and nothing in the starter is
 // without use.
 func TestGroups(t *testing.T) {
 	l := lib(t)
@@ -142,7 +142,7 @@ func TestConditional(t *testing.T) {
 	}
 }
 
-// The cautions that a sheet must show (design, section 5).
+// The cautions that a sheet must show.
 func TestCautions(t *testing.T) {
 	l := lib(t)
 	for sheet, words := range map[string]string{
