@@ -150,7 +150,7 @@ func (b *Book) Checklist(ctx context.Context, actor Actor, site string, on *civi
 			byItem[r.Item] = append(byItem[r.Item], r)
 		}
 		for _, item := range v.Program.Items {
-			s := ItemSummary{Item: item, CadenceWords: CadenceWords(item.Cadence), Counts: map[standing.Word]int{}}
+			s := ItemSummary{Item: item, CadenceWords: item.Cadence.Words(), Counts: map[standing.Word]int{}}
 			for _, r := range byItem[item.Code] {
 				s.Counts[r.Word]++
 				s.Subjects++

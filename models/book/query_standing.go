@@ -125,7 +125,7 @@ func (v *siteOn) rows(q standing.Query) ([]Row, error) {
 		r.SubjectName, r.SubjectNote = v.nameAndNote(s.Subject)
 		if item, ok := program.Item(s.Item); ok {
 			r.Title, r.Group, r.Basis, r.Records, r.Guards = item.Title, item.Group, item.Basis, item.Records, item.Guards
-			r.Cadence, r.Owner = CadenceWords(item.Cadence), ownerOf(item)
+			r.Cadence, r.Owner = item.Cadence.Words(), ownerOf(item)
 		}
 		rows = append(rows, r)
 	}

@@ -100,7 +100,7 @@ func (c *check) sheetBody(f SheetForm) (*recordBody, Verdict, error) {
 		v.Result, v.Remark, v.OnFail = Fail, false, sheet.OnFail
 	}
 	body.Result, body.Remark, body.Reasons = v.Result, v.Remark, v.Reasons
-	body.Version, body.Values = version.row.Number, sheetValues(sheet, f.Values)
+	body.Version, body.Values = version.row.Number, sheetValues(sheet, judged.Values)
 	return body, v, nil
 }
 
