@@ -111,3 +111,11 @@ func (v *visit) kept(address, text, entry string) error {
 	v.setNotice(n)
 	return v.seeOther(address)
 }
+
+// shortISO is a day for a date box; empty for none.
+func shortISO(d *civil.Day) string {
+	if d == nil {
+		return ""
+	}
+	return d.String()
+}

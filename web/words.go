@@ -2,6 +2,7 @@ package web
 
 import (
 	"fmt"
+	"strconv"
 	"strings"
 	"time"
 	"unicode/utf8"
@@ -140,3 +141,6 @@ func faultLines(faults program.Faults) []string {
 	}
 	return out
 }
+
+// trimNumber writes a number without zeros at its end.
+func trimNumber(n float64) string { return strconv.FormatFloat(n, 'f', -1, 64) }

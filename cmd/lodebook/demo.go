@@ -154,13 +154,13 @@ func demoOffice(a *app, b *book.Book, s scenario.Site) error {
 		by[book.Role(acc.Role)] = actor
 	}
 	for _, x := range s.Sheets {
-		form := book.SheetForm{Record: x.Record, Fixture: x.Fixture, On: x.On, Values: x.Values, Note: x.Note}
+		form := book.SheetForm{Record: x.Record, Fixture: x.Fixture, On: x.On.String(), Values: x.Values, Note: x.Note}
 		if _, _, err := b.FillSheet(a.ctx, by[book.Facilities], s.Code, form, book.Correction{}); err != nil {
 			return fmt.Errorf("the demo's sheet for %s on %s: %w", x.Fixture, x.On, err)
 		}
 	}
 	for _, p := range s.Plans {
-		form := book.PlanForm{Record: p.Record, Crew: p.Crew, Day: p.Day, At: p.At, Note: p.Note}
+		form := book.PlanForm{Record: p.Record, Crew: p.Crew, Day: p.Day.String(), At: p.At, Note: p.Note}
 		if _, err := b.PlanDrill(a.ctx, by[book.SafetyOfficer], s.Code, form, book.Correction{}); err != nil {
 			return fmt.Errorf("the demo's plan for %s: %w", p.Day, err)
 		}

@@ -120,3 +120,27 @@ func (c *check) pauseBody(f PauseForm) (*pauseBody, []Fault) {
 	}
 	return body, faults
 }
+
+// EndPause gives an open pause its last day.
+func (b *Book) EndPause(ctx context.Context, actor Actor, id string, last civil.Day) (Receipt, error) {
+	return b.write(ctx, actor, func(s *session) error {
+		old, ok, err := s.tx.EntryByID(id)
+		if err != nil {
+			return err
+		}
+		if !ok || old.Kind != kindPause {
+			return &NotFound{"pause", id}
+		}
+		if err := actor.may(Excuse, old.Site); err != nil {
+			return err
+		}
+		opened, err := s.open(old)
+		if err != nil {
+			return err
+		}
+		was := opened.(*pauseBody)
+		now := &pauseBody{Subject: was.Subject, From: was.From, To: &last, Because: veiled(was.Because.Value, was.Because.person)}
+		Correction{Reason: "other", ReasonText: "It ended."}.fill(&now.common)
+		return s.add(draft{site: old.Site, supersedes: id, body: now})
+	})
+}

@@ -371,6 +371,9 @@ func (m *model) lineOf(name string, k store.SubjectKey, seq int64) (store.Line, 
 
 // answers tells whether some item of some version asks for the record.
 func (s *siteModel) answers(what string) bool {
+	if strings.HasPrefix(what, "appointment/") {
+		return true // it fills a post, which items ask by who holds it
+	}
 	return s.declares(func(p *program.Program) bool {
 		return slices.ContainsFunc(p.Items, func(i program.Item) bool { return slices.Contains(i.Records, what) })
 	})

@@ -1,0 +1,298 @@
+package web
+
+import (
+	"strings"
+
+	"lodebook/models/book"
+	"lodebook/models/program"
+)
+
+// factFields are the declared facts of people or of a fixture kind as fields of a form.
+func factFields(f *Form, facts []program.Fact) []field {
+	var out []field
+	for _, x := range facts {
+		name, label := "fact-"+x.Code, orCode(x.Label, strings.ReplaceAll(x.Code, "_", " "))
+		label = upperFirst(label)
+		switch x.Type {
+		case program.FactYesNo:
+			out = append(out, f.Choice(name, label, []option{{"", "Not on record", false, false}, {"yes", "Yes", false, false}, {"no", "No", false, false}}))
+		case program.FactChoice:
+			options := []option{{Value: "", Words: "Not on record"}}
+			for _, c := range x.Choices {
+				options = append(options, option{Value: c, Words: c})
+			}
+			out = append(out, f.Choice(name, label, options))
+		case program.FactNumber:
+			out = append(out, f.Number(name, label, x.Unit))
+		case program.FactDay:
+			out = append(out, f.Date(name, label))
+		default:
+			out = append(out, f.Text(name, label))
+		}
+	}
+	return out
+}
+
+func factValues(f *Form, facts []program.Fact) map[string]string {
+	out := map[string]string{}
+	for _, x := range facts {
+		out[x.Code] = f.Get("fact-" + x.Code)
+	}
+	return out
+}
+
+// renameFacts puts the faults of facts at their fields.
+func renameFacts(f *Form, facts []program.Fact) {
+	for _, x := range facts {
+		f.Rename(x.Code, "fact-"+x.Code)
+	}
+}
+
+func codesAsOptions[T any](none string, list []T, code, name func(T) string) []option {
+	out := []option{{Value: "", Words: none}}
+	for _, x := range list {
+		out = append(out, option{Value: code(x), Words: orCode(name(x), code(x))})
+	}
+	return out
+}
+
+func keepPersonForm(v *visit, f *Form) *formLeaf {
+	p := v.site.Program
+	leaf := &formLeaf{page: page{Title: "Person", Section: secPeople}, Head: "Add a person", Action: v.url("keep-person"), Form: f, Button: "Keep"}
+	leaf.Say = "Who they are, when they joined, and what level and crew they shall have. What stays empty is not said."
+	if f.Get("known") != "" {
+		leaf.Head = "Change " + f.Get("name")
+		leaf.Say = "Only what differs is written. A changed level, crew or other fact holds from the day below; the days before it stay as they were."
+		leaf.Hidden = []hidden{{"known", "1"}}
+	}
+	leaf.Fields = []field{
+		f.Text("code", "Code").Need().Help("Short and never used again for somebody else"),
+		f.Text("name", "Name").Need(),
+		f.Choice("level", "Assigned level", codesAsOptions("Not on record", p.Levels, func(l program.Level) string { return l.Code }, func(l program.Level) string { return l.Name })),
+		f.Choice("crew", "Crew", codesAsOptions("Not on record", p.Crews, func(c program.Crew) string { return c.Code }, func(c program.Crew) string { return c.Name })),
+		f.Date("joined", "Joined"),
+		f.Date("left", "Left, last day included"),
+		f.Date("from", "Changed facts hold from"),
+		f.Text("email", "E-mail"),
+		f.Text("badge", "Badge"),
+	}
+	leaf.Fields = append(leaf.Fields, factFields(f, p.PersonFacts)...)
+	return leaf
+}
+
+func keepPersonPage(v *visit) error {
+	f := v.asked()
+	if code := f.Get("code"); code != "" {
+		x, err := v.b.Person(v.ctx(), v.actor, v.site.Code, code, nil)
+		if err != nil {
+			return err
+		}
+		f.Set("known", "1").Set("name", x.Name).Set("level", x.Level).Set("crew", x.Crew).Set("email", x.Email).Set("badge", x.Badge).Set("from", v.today().String())
+		for _, s := range x.Stints {
+			f.Set("joined", shortISO(s.First)).Set("left", shortISO(s.Last))
+		}
+		v.presentFacts(f, x)
+	}
+	return v.showForm(keepPersonForm(v, f))
+}
+
+// presentFacts fills in the declared facts as they stand today.
+func (v *visit) presentFacts(f *Form, x book.SubjectView) {
+	for i := len(x.Facts) - 1; i >= 0; i-- {
+		fact := x.Facts[i]
+		if fact.Ended || fact.From > v.today() || fact.Value == "not on record" {
+			continue
+		}
+		value := fact.Value
+		for _, d := range append(v.site.Program.FactsOf(program.AsksFixture), v.site.Program.PersonFacts...) {
+			if d.Code == fact.Code && d.Type == program.FactNumber {
+				value, _, _ = strings.Cut(value, " ")
+			}
+		}
+		f.Set("fact-"+fact.Code, value)
+	}
+}
+
+func keepPerson(v *visit) error {
+	f, err := v.form()
+	if err != nil {
+		return err
+	}
+	facts := v.site.Program.PersonFacts
+	r, err := v.b.KeepPerson(v.ctx(), v.actor, v.site.Code, book.PersonForm{
+		Code: f.Get("code"), Name: f.Get("name"), Email: f.Get("email"), Badge: f.Get("badge"), Level: f.Get("level"), Crew: f.Get("crew"),
+		Joined: f.Get("joined"), Left: f.Get("left"), From: f.Get("from"), Facts: factValues(f, facts),
+	}, book.Correction{})
+	if f.Take(err) {
+		renameFacts(f, facts)
+		return v.showForm(keepPersonForm(v, f))
+	}
+	if err != nil {
+		return err
+	}
+	if r.ID() == "" {
+		return v.kept(v.url("people", f.Get("code")), "Nothing was new, so nothing was written.", "")
+	}
+	return v.kept(v.url("people", f.Get("code")), "Kept: "+f.Get("name")+".", r.ID())
+}
+
+func (v *visit) itemsFor(key string) []option {
+	kind, _, _ := strings.Cut(key, ":")
+	out := []option{{Value: "", Words: "Choose"}}
+	for _, i := range v.site.Program.Items {
+		if kind == "" || string(i.Asks) == kind {
+			out = append(out, option{Value: i.Code, Words: i.Title})
+		}
+	}
+	return out
+}
+
+func excuseForm(v *visit, f *Form) *formLeaf {
+	f.Default("from", v.today().String())
+	p := &formLeaf{page: page{Title: "Excuse", Section: secGaps}, Head: "Excuse " + v.subjectName(f.Get("subject")), Action: v.url("excuse"), Form: f, Button: "Keep this excusal"}
+	p.Say = "A dated exception for one thing that is asked, with a reason and an end. It stands in your name."
+	p.Fields = []field{
+		f.Text("subject", "For whom or what").Need(),
+		f.Choice("item", "What is excused", v.itemsFor(f.Get("subject"))).Need(),
+		f.Date("from", "First day").Need(),
+		f.Date("to", "Last day").Need(),
+		f.Long("reason", "Why").Need().Help("Nothing medical belongs here"),
+		f.YesNo("opens", "Does it also open the zones that this guards?", "").Help("Only where the officer is sure; a failed record is never opened by it"),
+	}
+	return p
+}
+
+func excusePage(v *visit) error { return v.showForm(excuseForm(v, v.asked())) }
+
+func excuse(v *visit) error {
+	f, err := v.form()
+	if err != nil {
+		return err
+	}
+	r, err := v.b.Excuse(v.ctx(), v.actor, v.site.Code, book.ExcusalForm{Item: f.Get("item"), Subject: f.Get("subject"), From: f.Get("from"), To: f.Get("to"), Reason: f.Get("reason"), Opens: f.Get("opens")}, book.Correction{})
+	if f.Take(err) {
+		return v.showForm(excuseForm(v, f))
+	}
+	if err != nil {
+		return err
+	}
+	return v.kept(v.backTo(f.Get("subject")), "Kept: the excusal.", r.ID())
+}
+
+func pauseForm(v *visit, f *Form) *formLeaf {
+	f.Default("from", v.today().String())
+	p := &formLeaf{page: page{Title: "Pause", Section: secPeople}, Head: "Pause " + v.subjectName(f.Get("subject")), Action: v.url("pause"), Form: f, Button: "Keep this pause"}
+	p.Say = "A person who is away, or a thing that is out of service. Nothing is asked meanwhile, and no zone is open."
+	p.Fields = []field{
+		f.Text("subject", "Who or what").Need(),
+		f.Date("from", "First day").Need(),
+		f.Date("to", "Last day").Help("Empty until it is known"),
+		f.Text("reason", "Why").Help("A word will do; nothing medical belongs here"),
+	}
+	return p
+}
+
+func pausePage(v *visit) error { return v.showForm(pauseForm(v, v.asked())) }
+
+func pause(v *visit) error {
+	f, err := v.form()
+	if err != nil {
+		return err
+	}
+	r, err := v.b.Pause(v.ctx(), v.actor, v.site.Code, book.PauseForm{Subject: f.Get("subject"), From: f.Get("from"), To: f.Get("to"), Reason: f.Get("reason")}, book.Correction{})
+	if f.Take(err) {
+		return v.showForm(pauseForm(v, f))
+	}
+	if err != nil {
+		return err
+	}
+	return v.kept(v.backTo(f.Get("subject")), "Kept: the pause.", r.ID())
+}
+
+func endPause(v *visit) error {
+	f, err := v.form()
+	if err != nil {
+		return err
+	}
+	r, err := v.b.EndPause(v.ctx(), v.actor, f.Get("entry"), v.today())
+	if err != nil {
+		return err
+	}
+	return v.kept(v.url("book", r.ID()), "The pause ends today.", "")
+}
+
+func confirmExcusal(v *visit) error {
+	f, err := v.form()
+	if err != nil {
+		return err
+	}
+	r, err := v.b.ConfirmExcusal(v.ctx(), v.actor, f.Get("entry"))
+	if err != nil {
+		return err
+	}
+	return v.kept(v.url("book", r.ID()), "You stand behind the excusal now.", "")
+}
+
+func eventForm(v *visit, f *Form) *formLeaf {
+	f.Default("on", v.today().String())
+	var events []option
+	for _, e := range v.site.Program.Events {
+		events = append(events, option{Value: e.Code, Words: orCode(e.Name, e.Code)})
+	}
+	p := &formLeaf{page: page{Title: "Report an event", Section: secRounds}, Head: "Report an event", Action: v.url("event"), Form: f, Button: "Keep this event"}
+	p.Say = "Something happened that asks for an answer: work on the roof, an alarm, a repair. What the checklist asks after it is due from that day."
+	p.Fields = []field{
+		f.Choice("event", "What happened", choose(events)).Need(),
+		f.Text("subject", "To whom or what").Need().Help("The code of the thing, as in V1 or fixture:V1"),
+		f.Date("on", "Day").Need().UpTo(v.today().String()),
+		f.Text("note", "Note").Help("Nothing medical belongs here"),
+	}
+	return p
+}
+
+func eventPage(v *visit) error { return v.showForm(eventForm(v, v.asked())) }
+
+func reportEvent(v *visit) error {
+	f, err := v.form()
+	if err != nil {
+		return err
+	}
+	r, err := v.b.ReportEvent(v.ctx(), v.actor, v.site.Code, book.EventForm{Event: f.Get("event"), Subject: f.Get("subject"), On: f.Get("on"), Note: f.Get("note")}, book.Correction{})
+	if f.Take(err) {
+		return v.showForm(eventForm(v, f))
+	}
+	if err != nil {
+		return err
+	}
+	return v.kept(v.backTo(f.Get("subject")), "Kept: the event.", r.ID())
+}
+
+func eraseForm(v *visit, f *Form) *formLeaf {
+	p := &formLeaf{page: page{Title: "Erase a person", Section: secPeople}, Head: "Erase " + v.subjectName("person:"+f.Get("person")), Action: v.url("erase"), Form: f, Button: "Erase for good", Risk: true, Hidden: []hidden{{"person", f.Get("person")}}}
+	p.Say = "The name, address, badge and every text about this person become unreadable for good, in every entry. What was done and when stays, under the code alone, and every hash still verifies."
+	p.Cautions = []string{"It cannot be taken back. Copies of the book that were made before still hold the name: destroy them too."}
+	p.Fields = []field{f.Text("again", "Write the code again: "+f.Get("person")).Need()}
+	return p
+}
+
+func erasePage(v *visit) error { return v.showForm(eraseForm(v, v.asked())) }
+
+func erase(v *visit) error {
+	f, err := v.form()
+	if err != nil {
+		return err
+	}
+	if f.Get("again") != f.Get("person") {
+		f.Loose("again", "does not match the code "+f.Get("person"))
+		return v.showForm(eraseForm(v, f))
+	}
+	_, err = v.b.ErasePerson(v.ctx(), v.actor, f.Get("person"))
+	if f.Take(err) {
+		f.Rename("person", "again")
+		return v.showForm(eraseForm(v, f))
+	}
+	if err != nil {
+		return err
+	}
+	return v.kept(v.url("people", f.Get("person")), "Erased.", "")
+}
