@@ -179,7 +179,7 @@ func drillForm(v *visit, f *Form) (*formLeaf, error) {
 		f.Long("note", "What was learned"),
 	}
 	if len(mine) > 0 {
-		p.Fields = append(p.Fields, f.Ticks("people", "Who took part", mine), f.Ticks("people", "Guests from elsewhere", guests))
+		p.Fields = append(p.Fields, f.Ticks("people", "Who took part", mine), f.Ticks("people", "Guests from elsewhere", guests).Fold())
 	} else {
 		p.Fields = append(p.Fields, f.Ticks("people", "Who took part", guests))
 	}

@@ -119,6 +119,7 @@ type field struct {
 	Fill                   string // autocomplete
 	Options                []option
 	People                 []tick
+	Folded                 bool // a list that few need, folded while nothing in it is ticked
 }
 
 // option is one choice.
@@ -211,6 +212,12 @@ func (x field) UpTo(day string) field { x.Max = day; return x }
 
 // Auto is what a browser may fill in by itself.
 func (x field) Auto(what string) field { x.Fill = what; return x }
+
+// Fold folds a list away while nothing in it is ticked.
+func (x field) Fold() field {
+	x.Folded = !slices.ContainsFunc(x.People, func(t tick) bool { return t.Ticked })
+	return x
+}
 
 // Describes is the identifiers of what explains the field to a screen reader.
 func (x field) Describes() string {

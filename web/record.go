@@ -242,7 +242,7 @@ func sessionForm(v *visit, f *Form) (*formLeaf, error) {
 		f.Date("until", "Good until, if a certificate says so"),
 		f.Text("note", "Note"),
 		f.Ticks("people", "Who took part and passed", people),
-		f.Ticks("failed", "Who took part and did not pass", people),
+		f.Ticks("failed", "Who took part and did not pass", people).Fold(),
 	}
 	p.After = "Each person gets a record of their own; all of them are written together or not at all."
 	return p, nil

@@ -24,6 +24,7 @@ type rowLine struct {
 	Why              []string
 	Do               []act
 	Gap, Guards      bool
+	Urgent           bool // a gap or something closing
 	Item, SubjectKey string
 }
 
@@ -31,7 +32,7 @@ type rowLine struct {
 func (v *visit) rowLine(r book.Row) rowLine {
 	l := rowLine{
 		Disc: disc(r.Word, r.Left), Word: r.Word, What: r.Title, Cadence: r.Cadence, Who: r.SubjectName, Note: r.SubjectNote,
-		WhoURL: v.subjectURL(r.Subject), When: v.whenWords(r), Why: r.Why, Do: v.rowActs(r), Gap: r.Word.IsGap(),
+		WhoURL: v.subjectURL(r.Subject), When: v.whenWords(r), Why: r.Why, Do: v.rowActs(r), Gap: r.Word.IsGap(), Urgent: r.Word.IsGap() || r.Word == standing.Closing,
 		Guards: len(r.Guards) > 0, Item: r.Item, SubjectKey: subjectKey(r.Subject),
 	}
 	if l.What == "" {
@@ -79,10 +80,15 @@ func (v *visit) whenWords(r book.Row) string {
 		return ""
 	case r.InGrace:
 		return "was due " + shortDay(*r.Due, v.today()) + ", in grace"
+	case *r.Due-v.day() > soon:
+		return shortDay(*r.Due, v.today())
 	default:
 		return shortDay(*r.Due, v.today()) + ", " + until(*r.Due, v.day())
 	}
 }
+
+// soon is how many days ahead a list counts the days.
+const soon = 60
 
 // rowActs are the forms that answer a standing, for who may fill them in.
 func (v *visit) rowActs(r book.Row) []act {

@@ -72,7 +72,7 @@ func todayPage(v *visit) error {
 	p.When = p.AsOf
 	rows := v.forRole(st.Rows)
 	bad, low, told := sorted(rows)
-	p.Out, p.Low, p.Told = v.grouped(bad), v.grouped(low), v.grouped(told)
+	p.Out, p.Low, p.Told = v.grouped(bad, false), v.grouped(low, true), v.grouped(told, true)
 	if len(p.Low) > lowShown {
 		p.LowMore = len(p.Low) - lowShown
 		p.Low = p.Low[:lowShown]
@@ -167,8 +167,9 @@ func sorted(rows []book.Row) (bad, low, told []book.Row) {
 	return bad, low, told
 }
 
-// grouped gathers people in the same standing of one item into a line; things stand alone.
-func (v *visit) grouped(rows []book.Row) []todayLine {
+// grouped gathers people in the same standing of one item into a line. Things stand alone, but for
+// those of a kind that are due alike, where all is set.
+func (v *visit) grouped(rows []book.Row, all bool) []todayLine {
 	type key struct {
 		item string
 		word standing.Word
@@ -177,7 +178,11 @@ func (v *visit) grouped(rows []book.Row) []todayLine {
 	var order []key
 	for _, r := range rows {
 		k := key{r.Item, r.Word}
-		if r.Subject.Asks != program.AsksPerson {
+		switch {
+		case r.Subject.Asks == program.AsksPerson:
+		case all && r.Due != nil:
+			k.item += " " + r.Due.String()
+		default:
 			k.item += " " + r.Subject.Code
 		}
 		if byItem[k] == nil {
@@ -219,11 +224,17 @@ func (v *visit) todayLine(rows []book.Row) todayLine {
 
 // manyActs records many people in one form.
 func (v *visit) manyActs(rows []book.Row) []act {
-	if !v.acts(book.RecordDone) || !rows[0].Asked || len(rows[0].Records) == 0 {
+	if v.elsewhen() || !rows[0].Asked || len(rows[0].Records) == 0 {
 		return nil
 	}
 	what := rows[0].Records[0]
 	kind, _, _ := strings.Cut(what, "/")
+	if rows[0].Subject.Asks == program.AsksFixture && v.may(book.FillSheet) {
+		return []act{{"To the round", v.url("rounds")}}
+	}
+	if !v.may(book.RecordDone) {
+		return nil
+	}
 	switch kind {
 	case "training", "review", "acknowledgement":
 		return []act{{"Record", with(v.url("session"), "record", what)}}
@@ -311,9 +322,6 @@ func dueInWeek(out []weekDay, first civil.Day, rows []book.Row) {
 		if n[s] == 0 {
 			order = append(order, s)
 			title[s] = r.Title
-			if r.Subject.Asks != program.AsksPerson {
-				title[s] += ", " + r.SubjectName
-			}
 		}
 		n[s]++
 	}
@@ -323,15 +331,28 @@ func dueInWeek(out []weekDay, first civil.Day, rows []book.Row) {
 			more[s.day]++
 			continue
 		}
-		line := title[s]
+		line := shortened(title[s], weekChars)
 		if n[s] > 1 {
-			line = fmt.Sprintf("%s (%d)", strings.Split(title[s], ", ")[0], n[s])
+			line = fmt.Sprintf("%s (%d)", line, n[s])
 		}
 		out[s.day].Lines = append(out[s.day].Lines, line)
 	}
 	for i, k := range more {
 		out[i].Lines = append(out[i].Lines, "and "+number(k)+" more")
 	}
+}
+
+const weekChars = 32
+
+// shortened cuts a text at a blank before it grows too long for a narrow column.
+func shortened(s string, most int) string {
+	if len(s) <= most {
+		return s
+	}
+	if at := strings.LastIndexByte(s[:most], ' '); at > 0 {
+		return s[:at] + " …"
+	}
+	return s
 }
 
 // firstSteps leads an empty site to its first morning.

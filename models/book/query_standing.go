@@ -211,6 +211,9 @@ func (v *siteOn) subjectNote(s standing.Subject) string {
 		}
 	case program.AsksFixture:
 		f, _ := v.m.fixture(v.Code, s.Code)
+		if f.Name != "" {
+			parts = append(parts, s.Code)
+		}
 		parts = append(parts, v.kindName(f.Kind))
 		if p := v.m.engine.Profile(v.Code, s, v.on, v.k); p.Zone != "" {
 			parts = append(parts, "Zone "+p.Zone)
