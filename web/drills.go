@@ -1,6 +1,7 @@
 package web
 
 import (
+	"slices"
 	"strings"
 
 	"lodebook/models/book"
@@ -23,6 +24,7 @@ type drillsLeaf struct {
 	PeopleMore int
 	Plans      []planLine
 	Held       []recordLine
+	Older      []recordLine
 	MayPlan    bool
 	MayRecord  bool
 	PlanURL    string
@@ -32,7 +34,10 @@ type drillsLeaf struct {
 
 var drillsSheet = leafOf[drillsLeaf]("drills")
 
-const drillPeople = 30
+const (
+	drillPeople = 30
+	heldShown   = 12
+)
 
 // drillsPage says which crew has rehearsed what.
 func drillsPage(v *visit) error {
@@ -42,6 +47,15 @@ func drillsPage(v *visit) error {
 	}
 	p := &drillsLeaf{page: page{Title: "Drills", Section: secDrills, AsOf: v.asOf()}, MayPlan: v.acts(book.PlanDrills), MayRecord: v.acts(book.RecordDone), PlanURL: v.url("plan"), DrillURL: v.url("drill")}
 	p.When = p.AsOf
+	slices.SortStableFunc(x.Rows, func(a, b book.Row) int {
+		switch {
+		case book.Worse(a.Word, b.Word):
+			return -1
+		case book.Worse(b.Word, a.Word):
+			return 1
+		}
+		return 0
+	})
 	for _, r := range x.Rows {
 		switch {
 		case r.Subject.Asks == program.AsksCrew:
@@ -57,11 +71,12 @@ func drillsPage(v *visit) error {
 			p.Plans = append(p.Plans, v.planLine(pl))
 		}
 	}
-	for _, r := range v.recordLines(x.Held) {
-		p.Held = append(p.Held, r)
-	}
+	p.Held = v.recordLines(x.Held)
 	for i := range p.Held {
 		p.Held[i].What += ", " + x.Held[i].SubjectName
+	}
+	if len(p.Held) > heldShown {
+		p.Held, p.Older = p.Held[:heldShown], p.Held[heldShown:]
 	}
 	p.Say = drillsSay(x)
 	return drillsSheet.show(v, 200, p)

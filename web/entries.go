@@ -216,7 +216,7 @@ func correctForm(v *visit, id string, x book.Correctable, f *Form) *formLeaf {
 	switch x.Kind {
 	case "record":
 		p.Fields = []field{f.Date("on", "Day").Need().UpTo(v.today().String())}
-		if x.Record != nil && x.Record.Time != "" {
+		if x.Timed {
 			p.Fields = []field{f.Text("on", "When").Need()}
 		}
 		p.Fields = append(p.Fields,

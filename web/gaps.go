@@ -64,7 +64,11 @@ func gapsPage(v *visit) error {
 			names[name] = &gapGroup{Name: name}
 			order = append(order, name)
 		}
-		names[name].Lines = append(names[name].Lines, v.gapLine(r, flags))
+		l := v.gapLine(r, flags)
+		if by != "owner" {
+			l.What = "" // the heading says it
+		}
+		names[name].Lines = append(names[name].Lines, l)
 	}
 	slices.Sort(order)
 	for _, n := range order {

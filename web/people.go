@@ -203,7 +203,7 @@ type personLeaf struct {
 	Facts          []factLine
 	Excusals       []excusalLine
 	Events         []recordLine
-	Records        []recordLine
+	Records, Older []recordLine
 	Do             []act
 	MayEnd, Mine   bool
 	ConfirmURL     string
@@ -325,7 +325,13 @@ func (v *visit) personPast(p *personLeaf, x book.SubjectView) {
 		p.Events = append(p.Events, recordLine{Day: shortDay(e.Day, v.today()), What: e.Name, URL: v.url("book", e.Entry), Over: e.Ended})
 	}
 	p.Records = v.recordLines(x.Records)
+	if len(p.Records) > historyShown {
+		p.Records, p.Older = p.Records[:historyShown], p.Records[historyShown:]
+	}
 }
+
+// historyShown is how many records a history shows before it folds.
+const historyShown = 25
 
 func fromWords(f book.FactLine, v *visit) string {
 	if f.From.Format("2006") < "1000" {

@@ -2,6 +2,7 @@ package web
 
 import (
 	"html/template"
+	"slices"
 	"strings"
 
 	"lodebook/models/book"
@@ -129,7 +130,10 @@ func roundSheetPage(v *visit) error {
 	for _, s := range x.Due {
 		ps := paperStop{Name: s.Fixture.Name, Code: s.Fixture.Code}
 		for _, r := range s.Rows {
-			ps.Sheets = append(ps.Sheets, v.paperSheet(r))
+			sheet := v.paperSheet(r)
+			if !slices.ContainsFunc(ps.Sheets, func(o paperSheet) bool { return o.Title == sheet.Title }) {
+				ps.Sheets = append(ps.Sheets, sheet)
+			}
 		}
 		if n := len(p.Zones); n == 0 || p.Zones[n-1].Zone != s.Fixture.Zone {
 			p.Zones = append(p.Zones, paperZone{Zone: s.Fixture.Zone, Devices: s.Devices})
@@ -147,7 +151,7 @@ func (v *visit) paperSheet(r book.Row) paperSheet {
 		if !ok {
 			continue
 		}
-		out.Cautions = sh.Cautions
+		out.Title, out.Cautions = sh.Title, sh.Cautions
 		for _, f := range sh.Fields {
 			box := strings.Repeat("_", 12)
 			switch f.Type {
@@ -258,7 +262,7 @@ func sheetField(f *Form, x program.Field) field {
 	case program.FieldChoice:
 		var options []option
 		for _, c := range x.Choices {
-			options = append(options, option{Value: c, Words: upperFirst(c), Bad: contains(x.FailOn, c)})
+			options = append(options, option{Value: c, Words: upperFirst(c), Bad: slices.Contains(x.FailOn, c)})
 		}
 		out = f.Picks(name, x.Label, options).Big()
 	case program.FieldNumber:
@@ -272,15 +276,6 @@ func sheetField(f *Form, x program.Field) field {
 		out = out.Need()
 	}
 	return out.Help(limitWords(x))
-}
-
-func contains(list []string, s string) bool {
-	for _, x := range list {
-		if x == s {
-			return true
-		}
-	}
-	return false
 }
 
 func sheetPage(v *visit) error {
