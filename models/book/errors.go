@@ -51,7 +51,7 @@ func (e *Denied) Error() string {
 	if e.Why != "" {
 		return e.Why
 	}
-	return fmt.Sprintf("a %s may not %s", e.Role, e.Action.Words())
+	return fmt.Sprintf("%s may not %s", e.Role.somebody(), e.Action.Words())
 }
 
 // NotFound says that nothing of that name is on record.

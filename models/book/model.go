@@ -30,7 +30,7 @@ type model struct {
 	plans    []store.PlanRow
 	accounts map[string][]store.AccountRow
 	batches  []store.BatchRow
-	sessions map[string]int // records by session: whether a plan is done
+	sessions map[string]map[int64]bool // records that stand, by session: whether a plan is done
 }
 
 type siteCode struct{ site, code string }
@@ -41,7 +41,7 @@ func newModel() *model {
 		fixtures: map[siteCode][]store.FixtureRow{}, stints: map[store.SubjectKey][]store.StintRow{},
 		facts: map[store.SubjectKey][]store.FactRow{}, records: map[store.SubjectKey][]store.RecordRow{},
 		events: map[store.SubjectKey][]store.EventRow{}, excusals: map[store.SubjectKey][]store.ExcusalRow{},
-		accounts: map[string][]store.AccountRow{}, sessions: map[string]int{},
+		accounts: map[string][]store.AccountRow{}, sessions: map[string]map[int64]bool{},
 	}
 }
 
@@ -112,9 +112,7 @@ func (m *model) takeHappenings(d store.Delta) {
 			Line: known(r.Line), Order: r.Order, Site: r.Site, Subject: subjectOf(r.Subject.Kind, r.Subject.Code), What: r.What,
 			Day: r.Day, Time: r.Time, Passed: r.Passed, Until: r.Until, Limit: strings.Fields(r.Limit),
 		})
-		if r.Session != "" && r.Ended == 0 {
-			m.sessions[r.Session]++
-		}
+		m.takeSession(r)
 	}
 	for _, r := range d.Events {
 		m.events[r.Subject] = upsert(m.events[r.Subject], r, func(r store.EventRow) int64 { return r.Seq }, always)
@@ -123,6 +121,21 @@ func (m *model) takeHappenings(d store.Delta) {
 	for _, r := range d.Excusals {
 		m.excusals[r.Subject] = upsert(m.excusals[r.Subject], r, func(r store.ExcusalRow) int64 { return r.Seq }, always)
 		m.engine.PutExcusal(r.Site, standing.Excusal{Line: known(r.Line), Subject: subjectOf(r.Subject.Kind, r.Subject.Code), Item: r.Item, From: r.From, To: r.To, Opens: r.Opens})
+	}
+}
+
+// takeSession counts the record to its session while it stands.
+func (m *model) takeSession(r store.RecordRow) {
+	if r.Session == "" {
+		return
+	}
+	if m.sessions[r.Session] == nil {
+		m.sessions[r.Session] = map[int64]bool{}
+	}
+	if r.Ended == 0 {
+		m.sessions[r.Session][r.Seq] = true
+	} else {
+		delete(m.sessions[r.Session], r.Seq)
 	}
 }
 

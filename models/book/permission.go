@@ -32,6 +32,18 @@ func (r Role) Words() string {
 	return string(r)
 }
 
+// somebody is the role as the subject of a sentence.
+func (r Role) somebody() string {
+	switch r {
+	case Facilities:
+		return "facilities staff"
+	case Administrator, Operator:
+		return "an " + string(r)
+	default:
+		return "a " + r.Words()
+	}
+}
+
 // Action is something that a role may be allowed to do.
 type Action string
 

@@ -1,6 +1,7 @@
 package book
 
 import (
+	"cmp"
 	"context"
 	"fmt"
 	"slices"
@@ -196,12 +197,33 @@ func (m *model) actorName(id string, bd body) string {
 	return "account " + id
 }
 
-func (m *model) subjectWords(site string, s subjectBody) string {
+// inWords is the site by its newest program, for naming what an entry is about.
+func (m *model) inWords(site string) *siteOn {
 	v := &siteOn{SiteView: SiteView{Code: site, Program: &program.Program{}}, m: m}
 	if sm := m.site(site); sm != nil {
 		v.Program, v.Name = sm.newest().program, sm.newest().program.Site.Name
 	}
-	return v.subjectName(subjectOf(s.Kind, s.Code))
+	return v
+}
+
+func (m *model) subjectWords(site string, s subjectBody) string {
+	return m.inWords(site).subjectName(subjectOf(s.Kind, s.Code))
+}
+
+// whatWords names the kind/code of a record.
+func (m *model) whatWords(site, what string) string { return m.inWords(site).whatTitle(what) }
+
+func (m *model) eventWords(site, code string) string {
+	ev, _ := m.site(site).event(code)
+	return cmp.Or(ev.Name, upperFirst(strings.ReplaceAll(code, "-", " ")))
+}
+
+// onWords is the day of what happened, and the time by the site's clocks where one is known.
+func (m *model) onWords(site, on string) string {
+	if at := parseMoment(on, m.zone(site)).time; at != nil {
+		return at.In(m.zone(site)).Format("2006-01-02, 15:04")
+	}
+	return on
 }
 
 // summary says in one line what the entry says.
@@ -212,19 +234,19 @@ func (m *model) summary(e store.Entry, bd body) string {
 		if b.Result == Fail {
 			result = "failed"
 		}
-		return fmt.Sprintf("%s %s, %s, %s", b.Record, result, m.subjectWords(e.Site, b.Subject), b.On)
+		return fmt.Sprintf("%s, %s, %s, %s", m.whatWords(e.Site, b.Record), result, m.subjectWords(e.Site, b.Subject), m.onWords(e.Site, b.On))
 	case *personBody:
 		return "Person " + m.subjectWords(e.Site, subjectBody{"person", b.Code}) + saidOf(b.Stint, b.Facts)
 	case *fixtureBody:
 		return "Fixture " + m.subjectWords(e.Site, subjectBody{"fixture", b.Code}) + saidOf(b.Stint, b.Facts)
 	case *eventBody:
-		return fmt.Sprintf("%s, %s, %s", b.Event, m.subjectWords(e.Site, b.Subject), b.On)
+		return fmt.Sprintf("%s, %s, %s", m.eventWords(e.Site, b.Event), m.subjectWords(e.Site, b.Subject), m.onWords(e.Site, b.On))
 	case *excusalBody:
 		return fmt.Sprintf("%s excused for %s, %s to %s", b.Item, m.subjectWords(e.Site, b.Subject), b.From, b.To)
 	case *pauseBody:
 		return fmt.Sprintf("Pause of %s, %s to %s", m.subjectWords(e.Site, b.Subject), b.From, dayOr(b.To, "no end yet"))
 	case *planBody:
-		return fmt.Sprintf("Planned: %s for %s", b.Record, b.Day)
+		return fmt.Sprintf("Planned: %s for %s", m.whatWords(e.Site, b.Record), b.Day)
 	case *programBody:
 		return fmt.Sprintf("Program, version %d, in force from %s", b.Number, b.InForceFrom)
 	case *batchBody:

@@ -68,9 +68,9 @@ func (m *model) fields(e store.Entry, bd body) []Field {
 		l.add("Facts hold from", dayOr(b.From, ""))
 		l.facts(b.Facts, same)
 	case *eventBody:
-		l.add("Event", b.Event)
+		l.add("Event", m.eventWords(e.Site, b.Event))
 		l.add("Subject", m.subjectWords(e.Site, b.Subject))
-		l.add("Happened", b.On)
+		l.add("Happened", m.onWords(e.Site, b.On))
 		l.veil("Note", b.Note)
 	case *excusalBody:
 		m.excusalFields(l, e.Site, b)
@@ -80,9 +80,11 @@ func (m *model) fields(e store.Entry, bd body) []Field {
 		l.add("To", dayOr(b.To, "no end yet"))
 		l.veil("Why", b.Because)
 	case *planBody:
-		l.add("What", b.Record)
-		l.add("Crew", b.Crew)
-		l.add("Day", b.Day.String()+" "+b.At)
+		l.add("What", m.whatWords(e.Site, b.Record))
+		if b.Crew != "" {
+			l.add("Crew", m.subjectWords(e.Site, subjectBody{string(program.AsksCrew), b.Crew}))
+		}
+		l.add("Day", strings.TrimSpace(b.Day.String()+" "+b.At))
 		l.veil("Note", b.Note)
 	case *programBody:
 		l.add("Version", summaryNumber(b.Number))
@@ -112,12 +114,12 @@ func (m *model) fields(e store.Entry, bd body) []Field {
 func summaryNumber(n int) string { return strconv.Itoa(n) }
 
 func (m *model) recordFields(l *fieldList, site string, b *recordBody) {
-	l.add("What", b.Record)
+	l.add("What", m.whatWords(site, b.Record))
 	l.add("Subject", m.subjectWords(site, b.Subject))
-	l.add("Done", b.On)
-	result := b.Result
+	l.add("Done", m.onWords(site, b.On))
+	result := map[string]string{Pass: "passed", Fail: "failed"}[b.Result]
 	if b.Remark {
-		result = "pass with a remark"
+		result = "passed, with a remark"
 	}
 	l.add("Result", result)
 	l.add("Because", strings.Join(b.Reasons, " "))

@@ -187,6 +187,7 @@ func (v *siteOn) subjectView(s standing.Subject) (SubjectView, []looseText, erro
 		p, _ := v.m.person(s.Code)
 		out.Email, out.Badge, out.Erased = p.Email, p.Badge, p.Erased
 		_, out.HeldWhy = v.m.engine.Held(v.Code, s.Code, v.on, v.k)
+		out.HeldUntil = v.heldUntil(s, out.Held, rows)
 	}
 	for _, st := range v.m.stintsAt(v.Code, string(s.Asks), s.Code) {
 		out.Stints = append(out.Stints, StintLine{st.First, st.Last, st.ID})
@@ -269,15 +270,22 @@ func (v *siteOn) recordLine(r store.RecordRow) RecordLine {
 	}
 }
 
-// whatTitle names a kind/code: by its sheet, else by the only item that asks for it, else in words.
+// whatTitle names a kind/code: by its sheet, document or post, else in words.
 func (v *siteOn) whatTitle(what string) string {
 	if sh, ok := v.Program.SheetFor(what); ok && sh.Title != "" {
 		return sh.Title
 	}
 	kind, code, _ := strings.Cut(what, "/")
 	words := strings.ReplaceAll(code, "-", " ")
-	if kind == "check" || kind == "inspection" {
+	switch kind {
+	case "check", "inspection":
 		return upperFirst(words)
+	case "acknowledgement":
+		if d, ok := v.Program.Document(code); ok {
+			return "Read: " + cmp.Or(d.Title, code)
+		}
+	case "appointment":
+		return "Appointed: " + cmp.Or(named(v.Program.Post(code)), code)
 	}
 	return upperFirst(words) + " " + kind
 }

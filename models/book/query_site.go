@@ -231,7 +231,7 @@ func (v *siteOn) plans() []PlanLine {
 		}
 		out = append(out, PlanLine{
 			Entry: p.ID, What: p.What, Title: v.whatTitle(p.What), Crew: p.Crew, CrewName: cmp.Or(named(v.Program.Crew(p.Crew)), p.Crew),
-			Day: p.Day, At: p.At, Done: v.m.sessions[p.ID] > 0,
+			Day: p.Day, At: p.At, Done: len(v.m.sessions[p.ID]) > 0,
 		})
 	}
 	slices.SortStableFunc(out, func(a, b PlanLine) int { return cmp.Compare(a.Day, b.Day) })

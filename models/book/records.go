@@ -6,6 +6,8 @@ import (
 	"slices"
 	"strings"
 
+	"github.com/google/uuid"
+
 	"lodebook/models/civil"
 	"lodebook/models/program"
 )
@@ -33,9 +35,34 @@ func (b *Book) Record(ctx context.Context, actor Actor, site string, f RecordFor
 		if err := s.mayRecord(site, body); err != nil {
 			return err
 		}
+		if err := s.inherit(body, fix.Supersedes); err != nil {
+			return err
+		}
 		fix.fill(&body.common)
 		return s.add(draft{id: f.ID, site: site, supersedes: fix.Supersedes, body: body})
 	})
+}
+
+// inherit keeps what a form does not show of the record that it corrects: which session it belongs
+// to, and who took part in a crew's drill.
+func (s *session) inherit(body *recordBody, corrected string) error {
+	if corrected == "" {
+		return nil
+	}
+	old, ok, err := s.tx.EntryByID(corrected)
+	if err != nil || !ok || old.Kind != kindRecord {
+		return err // that it is not there is said where the correction is checked
+	}
+	was, err := s.open(old)
+	if err != nil {
+		return err
+	}
+	r := was.(*recordBody)
+	body.Session = r.Session
+	if body.Subject == r.Subject {
+		body.Takers = r.Takers
+	}
+	return nil
 }
 
 // recordBody reads the form.
@@ -146,6 +173,7 @@ func (m *model) mayFill(actor Actor, site, sheet string, on civil.Day) error {
 
 // SessionForm is one training, screening or review that many people took part in.
 type SessionForm struct {
+	ID     string // a fresh UUID of the form, so that it is kept once; empty: a new one
 	Record string
 	On     string
 	Until  string
@@ -164,7 +192,7 @@ func (b *Book) RecordSession(ctx context.Context, actor Actor, site string, f Se
 		return Receipt{}, invalid("people", "", "nobody is chosen", "tick everybody who took part")
 	}
 	return b.write(ctx, actor, func(s *session) error {
-		id, err := b.newID(s.now)
+		id, err := s.sessionID(f.ID)
 		if err != nil {
 			return err
 		}
@@ -172,25 +200,46 @@ func (b *Book) RecordSession(ctx context.Context, actor Actor, site string, f Se
 	})
 }
 
+// sessionID is the identifier given, which must be a UUID, or a fresh one.
+func (s *session) sessionID(given string) (string, error) {
+	if given == "" {
+		return s.b.newID(s.now)
+	}
+	if uuid.Validate(given) != nil {
+		return "", invalid("id", given, "is no UUID", "open the form again")
+	}
+	return given, nil
+}
+
 // addRecords writes a record for each person of a session, and for its crew where it is a drill.
+// The records' identifiers follow from that of the form, where it has one.
 func (s *session) addRecords(site, session string, f SessionForm, crew *recordBody) error {
 	var drafts []draft
 	var all []Fault
+	seen := map[string]bool{}
 	if crew != nil {
-		drafts = append(drafts, draft{site: site, body: crew})
+		drafts = append(drafts, draft{id: partID(f.ID, crew.Subject), site: site, body: crew})
 	}
 	for _, who := range []struct {
 		codes  []string
 		result string
 	}{{f.People, Pass}, {f.Failed, Fail}} {
 		for _, code := range who.codes {
+			if seen[code] {
+				return invalid("people", code, "is named twice", "name everybody once, as passed or as not passed")
+			}
+			seen[code] = true
 			body, faults := s.check(site).recordBody(RecordForm{Record: f.Record, Subject: "person:" + code, On: f.On, Until: f.Until, By: f.By, Note: f.Note, Result: who.result})
-			all = append(all, faults...)
+			for _, x := range faults {
+				if !slices.Contains(all, x) { // what is wrong for all is said once
+					all = append(all, x)
+				}
+			}
 			body.Session = session
 			if err := s.mayRecord(site, body); err != nil {
 				return err
 			}
-			drafts = append(drafts, draft{site: site, body: body})
+			drafts = append(drafts, draft{id: partID(f.ID, body.Subject), site: site, body: body})
 		}
 	}
 	if len(all) > 0 {
@@ -201,6 +250,7 @@ func (s *session) addRecords(site, session string, f SessionForm, crew *recordBo
 
 // DrillForm is a drill that was held: with a crew, and with who took part.
 type DrillForm struct {
+	ID     string // a fresh UUID of the form, so that it is kept once; empty: a new one
 	Plan   string // identifier of the plan that it answers, or empty
 	Record string // drill/code
 	Crew   string
@@ -223,7 +273,7 @@ func (b *Book) RecordDrill(ctx context.Context, actor Actor, site string, f Dril
 		id := f.Plan
 		if id == "" {
 			var err error
-			if id, err = b.newID(s.now); err != nil {
+			if id, err = s.sessionID(f.ID); err != nil {
 				return err
 			}
 		}
@@ -236,7 +286,7 @@ func (b *Book) RecordDrill(ctx context.Context, actor Actor, site string, f Dril
 			body.Session, body.Takers = id, f.People
 			crew = body
 		}
-		people := SessionForm{Record: f.Record, On: f.On, By: f.By, Note: f.Note, People: f.People}
+		people := SessionForm{ID: f.ID, Record: f.Record, On: f.On, By: f.By, Note: f.Note, People: f.People}
 		if f.Result == Fail {
 			people.People, people.Failed = nil, f.People
 		}
@@ -245,7 +295,7 @@ func (b *Book) RecordDrill(ctx context.Context, actor Actor, site string, f Dril
 }
 
 // PlanForm is a drill or session to come.
-type PlanForm struct{ Record, Crew, Day, At, Note string }
+type PlanForm struct{ ID, Record, Crew, Day, At, Note string }
 
 // PlanDrill puts a plan on record.
 func (b *Book) PlanDrill(ctx context.Context, actor Actor, site string, f PlanForm, fix Correction) (Receipt, error) {
@@ -259,7 +309,7 @@ func (b *Book) PlanDrill(ctx context.Context, actor Actor, site string, f PlanFo
 	return b.write(ctx, actor, func(s *session) error {
 		body := &planBody{Record: f.Record, Crew: f.Crew, Day: day, At: f.At, Note: veiled(strings.TrimSpace(f.Note), "")}
 		fix.fill(&body.common)
-		return s.add(draft{site: site, supersedes: fix.Supersedes, body: body})
+		return s.add(draft{id: f.ID, site: site, supersedes: fix.Supersedes, body: body})
 	})
 }
 

@@ -3,6 +3,7 @@ package book
 import (
 	"context"
 	"strings"
+	"time"
 
 	"lodebook/models/store"
 )
@@ -11,7 +12,7 @@ import (
 type Correctable struct {
 	Kind, Summary string
 	Values        map[string]string
-	Record        *struct{ Time string }
+	Timed         bool // it happened at a time of day and not just on a day
 	Sheet         bool // a filled-in sheet: Values hold its fields as v-code, and its fixture
 	NeedReason    bool
 }
@@ -39,8 +40,8 @@ func (b *Book) Correctable(ctx context.Context, actor Actor, id string) (Correct
 			return err
 		}
 		out.Values = formValues(bd)
-		if r, ok := bd.(*recordBody); ok && strings.Contains(r.On, "T") {
-			out.Record = &struct{ Time string }{r.On}
+		if at := parseMoment(out.Values["on"], m.zone(e.Site)).time; at != nil {
+			out.Timed, out.Values["on"] = true, clockWords(*at, m.zone(e.Site))
 		}
 		if r, ok := bd.(*recordBody); ok && len(r.Values) > 0 {
 			out.Sheet = true
@@ -52,6 +53,15 @@ func (b *Book) Correctable(ctx context.Context, actor Actor, id string) (Correct
 		return nil
 	})
 	return out, err
+}
+
+// clockWords is an instant as it is typed into a form: by the site's clocks, to the minute, and in
+// full where that would lose something.
+func clockWords(t time.Time, zone *time.Location) string {
+	if t.Second() == 0 && t.Nanosecond() == 0 {
+		return t.In(zone).Format("2006-01-02 15:04")
+	}
+	return t.Format(time.RFC3339)
 }
 
 // formValues gives a body's values by the names that its form has.
@@ -66,6 +76,8 @@ func formValues(bd body) map[string]string {
 		return map[string]string{"item": b.Item, "subject": key(b.Subject), "from": b.From.String(), "to": b.To.String(), "because": b.Because.Value, "opens": map[bool]string{true: "yes", false: "no"}[b.Opens]}
 	case *pauseBody:
 		return map[string]string{"subject": key(b.Subject), "from": b.From.String(), "to": dayOr(b.To, ""), "because": b.Because.Value}
+	case *planBody:
+		return map[string]string{"record": b.Record, "crew": b.Crew, "day": b.Day.String(), "at": b.At, "note": b.Note.Value}
 	default:
 		return map[string]string{}
 	}

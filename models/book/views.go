@@ -175,25 +175,27 @@ type StintLine struct {
 
 // SubjectView is one subject with all that stands on record about it.
 type SubjectView struct {
-	Site     SiteView
-	On       civil.Day
-	Subject  standing.Subject
-	Name     string
-	Kind     string // fixture
-	Zone     string
-	Level    string
-	Held     string
-	HeldWhy  []string
-	Crew     string
-	Email    string
-	Badge    string
-	Erased   bool
-	Stints   []StintLine
-	Rows     []Row
-	Facts    []FactLine
-	Records  []RecordLine // newest first
-	Events   []EventLine
-	Excusals []ExcusalLine
+	Site    SiteView
+	On      civil.Day
+	Subject standing.Subject
+	Name    string
+	Kind    string // fixture
+	Zone    string
+	Level   string
+	Held    string
+	HeldWhy []string
+	// HeldUntil is the last day of the held level if nothing more goes on record; nil: none in sight.
+	HeldUntil *civil.Day
+	Crew      string
+	Email     string
+	Badge     string
+	Erased    bool
+	Stints    []StintLine
+	Rows      []Row
+	Facts     []FactLine
+	Records   []RecordLine // newest first
+	Events    []EventLine
+	Excusals  []ExcusalLine
 }
 
 // FixtureSummary is one line of a list of fixtures.
