@@ -5,8 +5,6 @@ import (
 	"slices"
 	"strings"
 
-	"github.com/google/uuid"
-
 	"lodebook/models/program"
 	"lodebook/models/store"
 	"lodebook/models/table"
@@ -171,19 +169,19 @@ func fixtureRow(in *importing, row table.Row) (rowDraft, []table.Fault) {
 
 func recordRow(in *importing, row table.Row) (rowDraft, []table.Fault) {
 	c := &cells{in: in, row: row}
-	id := row.Text("id")
+	id := strings.ToLower(row.Text("id"))
 	f := RecordForm{Record: c.text("record"), Subject: row.Text("subject"), On: c.moment("on"), Result: strings.ToLower(row.Text("result")), Until: c.day("until"), Limit: strings.Join(strings.Fields(c.text("limit")), " "), By: c.text("by"), Note: c.text("note")}
 	body, faults := in.c.recordBody(f)
 	c.add(faults)
 	c.note("result", body.Result)
 	c.note("subject", body.Subject.Kind+":"+body.Subject.Code)
-	if id != "" && uuid.Validate(id) != nil {
+	if id != "" && checkID(id) != nil {
 		c.faults = append(c.faults, *row.Fault("id", "is no identifier", "a UUID, or nothing"))
 	}
 	if len(c.faults) == 0 && !in.m.site(in.o.Site).answers(body.Record) {
 		in.idle[body.Record] = true
 	}
-	d := rowDraft{id: strings.ToLower(id), key: body.Subject.key(in.o.Site), run: body.Subject.Kind + ":" + body.Subject.Code + " " + body.Record, body: body}
+	d := rowDraft{id: id, key: body.Subject.key(in.o.Site), run: body.Subject.Kind + ":" + body.Subject.Code + " " + body.Record, body: body}
 	return c.finish(d, false)
 }
 

@@ -270,9 +270,11 @@ func (v *siteOn) recordLine(r store.RecordRow) RecordLine {
 	}
 }
 
-// whatTitle names a kind/code: by its sheet, document or post, else in words.
-func (v *siteOn) whatTitle(what string) string {
-	if sh, ok := v.Program.SheetFor(what); ok && sh.Title != "" {
+func (v *siteOn) whatTitle(what string) string { return WhatTitle(v.Program, what) }
+
+// WhatTitle names the kind/code of a record: by its sheet, document or post, else in words.
+func WhatTitle(p *program.Program, what string) string {
+	if sh, ok := p.SheetFor(what); ok && sh.Title != "" {
 		return sh.Title
 	}
 	kind, code, _ := strings.Cut(what, "/")
@@ -281,11 +283,11 @@ func (v *siteOn) whatTitle(what string) string {
 	case "check", "inspection":
 		return upperFirst(words)
 	case "acknowledgement":
-		if d, ok := v.Program.Document(code); ok {
+		if d, ok := p.Document(code); ok {
 			return "Read: " + cmp.Or(d.Title, code)
 		}
 	case "appointment":
-		return "Appointed: " + cmp.Or(named(v.Program.Post(code)), code)
+		return "Appointed: " + cmp.Or(named(p.Post(code)), code)
 	}
 	return upperFirst(words) + " " + kind
 }

@@ -6,8 +6,6 @@ import (
 	"slices"
 	"strings"
 
-	"github.com/google/uuid"
-
 	"lodebook/models/civil"
 	"lodebook/models/program"
 )
@@ -205,10 +203,7 @@ func (s *session) sessionID(given string) (string, error) {
 	if given == "" {
 		return s.b.newID(s.now)
 	}
-	if uuid.Validate(given) != nil {
-		return "", invalid("id", given, "is no UUID", "open the form again")
-	}
-	return given, nil
+	return given, checkID(given)
 }
 
 // addRecords writes a record for each person of a session, and for its crew where it is a drill.

@@ -147,3 +147,15 @@ func TestSubjectsAreFoundByWords(t *testing.T) {
 		t.Errorf("found %q, %v, want the first two and that there are more", got, more)
 	}
 }
+
+// TestIdentifiersAreUUIDs: what a form sends as its identifier ends up in addresses and in entries.
+func TestIdentifiersAreUUIDs(t *testing.T) {
+	d := newDesk(t)
+	d.person("P1", "Runa Sandoy", "L2")
+	for _, id := range []string{"x", "{019cad8f-ac00-7a5b-9c5d-5e5f60616263}", "019CAD8F-AC00-7A5B-9C5D-5E5F60616263"} {
+		_, err := d.Record(t.Context(), d.officer, site, book.RecordForm{ID: id, Record: "training/level-2", Subject: "P1", On: "2026-02-20"}, book.Correction{})
+		if !errors.As(err, new(*book.Invalid)) {
+			t.Errorf("identifier %q: %v, want a fault", id, err)
+		}
+	}
+}

@@ -6,6 +6,8 @@ import (
 	"fmt"
 	"time"
 
+	"github.com/google/uuid"
+
 	"lodebook/models/civil"
 	"lodebook/models/standing"
 	"lodebook/models/store"
@@ -115,6 +117,8 @@ func (s *session) prepare(d *draft) (bool, error) {
 			return false, err
 		}
 		d.id = id
+	} else if err := checkID(d.id); err != nil {
+		return false, err
 	} else if found, err := s.recorded(*d); found || err != nil {
 		return false, err
 	}
@@ -129,6 +133,14 @@ func (s *session) prepare(d *draft) (bool, error) {
 		return false, &Invalid{faults}
 	}
 	return true, nil
+}
+
+// checkID checks an identifier that came from outside.
+func checkID(id string) error {
+	if u, err := uuid.Parse(id); err != nil || u.String() != id {
+		return invalid("id", id, "is no UUID", "one in its usual form; open the form again for a fresh one")
+	}
+	return nil
 }
 
 // sign notes the system user behind an operator's entry.
