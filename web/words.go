@@ -47,6 +47,11 @@ func upperFirst(s string) string {
 	return strings.ToUpper(string(r)) + s[size:]
 }
 
+// spaced writes a code as words.
+func spaced(code string) string {
+	return strings.NewReplacer("-", " ", "_", " ").Replace(code)
+}
+
 // and joins "a", "a and b", "a, b and c".
 func and(parts []string) string {
 	if len(parts) < 2 {
