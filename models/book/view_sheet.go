@@ -13,6 +13,7 @@ import (
 // it was last looked at on this sheet.
 type SheetHead struct {
 	Name    string
+	Zone    string
 	Devices bool
 	Last    *civil.Day
 }
@@ -36,7 +37,8 @@ func (b *Book) SheetHead(ctx context.Context, actor Actor, site, fixture, record
 		}
 		s := standing.Subject{Asks: program.AsksFixture, Code: fixture}
 		out.Name = v.subjectName(s)
-		if z, ok := v.Program.Zone(m.engine.Profile(site, s, v.on, v.k).Zone); ok {
+		out.Zone = m.engine.Profile(site, s, v.on, v.k).Zone
+		if z, ok := v.Program.Zone(out.Zone); ok {
 			out.Devices = z.Devices
 		}
 		for _, r := range m.records[store.SubjectKey{Site: site, Kind: string(program.AsksFixture), Code: fixture}] {
