@@ -252,7 +252,7 @@ func (s *stage) sessionForTwelve(path string) {
 	ctx := s.browser(path, "safety officer")
 	s.open(ctx, s.at("session")+"?record=training/level-1")
 	ask(ctx, s, chromedp.Evaluate[int64](`[...document.querySelectorAll("input[name=people]")].slice(0, 12).map(x => x.click()).length`))
-	s.press(ctx, "form.sheet button.ink", "Kept: training/level-1 for twelve people.")
+	s.press(ctx, "form.sheet button.ink", "for twelve people.")
 	s.open(ctx, s.at("book")+"?kind=record")
 	if n := ask(ctx, s, chromedp.Evaluate[int64](`[...document.querySelectorAll("td a")].filter(x => x.textContent.startsWith("Level 1 training, passed")).length`)); n < 12 {
 		s.Errorf("%d entries of the session, want 12", n)
