@@ -177,3 +177,26 @@ func TestNoInlineScriptOrStyle(t *testing.T) {
 		}
 	}
 }
+
+func TestSheetIsCorrectedOnItsOwnForm(t *testing.T) {
+	h := furnished(t)
+	j := h.as(book.Facilities)
+	r, _, err := h.b.FillSheet(t.Context(), h.actor(book.Facilities), fell, book.SheetForm{Record: "inspection/vent-yearly", Fixture: "V1", On: "2026-11-30", Values: map[string]string{"outlet_clear": "yes", "clear_of_path_m": "2.1"}}, book.Correction{})
+	h.ok(err)
+	to := h.get(j, "/s/"+fell+"/correct/"+r.ID())
+	if to.Code != http.StatusSeeOther {
+		t.Fatalf("%d: %s", to.Code, to.text("main"))
+	}
+	form := h.page(j, to.Header().Get("Location"))
+	if v := form.value("v-clear_of_path_m"); v != "2.1" {
+		t.Fatalf("the form opens with %q", v)
+	}
+	values := []string{"id", form.value("id"), "record", "inspection/vent-yearly", "fixture", "V1", "supersedes", r.ID(), "on", "2026-11-30", "v-outlet_clear", "yes", "v-clear_of_path_m", "5.10"}
+	seen := h.post(j, "/s/"+fell+"/sheet", values...)
+	h.sent(j, "/s/"+fell+"/sheet", append(values, "keep", "1", "seen", seen.value("seen"))...)
+	old, err := h.b.Entry(t.Context(), h.officer(), r.ID())
+	h.ok(err)
+	if old.New == nil || !strings.Contains(old.New.Canonical, `"5.10"`) || !strings.Contains(old.Canonical, `"2.1"`) {
+		t.Errorf("the sheet was not superseded: %+v", old.EntryLine)
+	}
+}
