@@ -14,7 +14,8 @@ import (
 type fixtureLine struct {
 	Disc                  template.HTML
 	Name, URL, Code, Zone string
-	Standing, Next        string
+	Word                  standing.Word
+	More, Next            string
 }
 
 type fixtureGroup struct {
@@ -28,6 +29,7 @@ type fixturesLeaf struct {
 	Groups   []fixtureGroup
 	Former   []fixtureLine
 	Finder   finder
+	Pager    pager
 	MayKeep  bool
 	MayEvent bool
 	KeepURL  string
@@ -49,12 +51,9 @@ func fixturesPage(v *visit) error {
 		return strings.Join([]string{x.Name, x.Code, x.KindName, x.Zone, word(x.Worst)}, " ")
 	})
 	p.Finder = f
-	bad := 0
+	list, p.Pager = paged(v, list)
 	for _, x := range list {
 		l := v.fixtureLine(x)
-		if x.Gaps > 0 && x.Here {
-			bad++
-		}
 		switch {
 		case !x.Here:
 			p.Former = append(p.Former, l)
@@ -65,27 +64,42 @@ func fixturesPage(v *visit) error {
 			g.Lines = append(g.Lines, l)
 		}
 	}
-	p.Say = upperFirst(count(sv.Fixtures, "fixture is", "fixtures are")) + " in use. " + upperFirst(count(bad, "has a gap.", "have a gap."))
-	if sv.Fixtures == 0 {
-		p.Say = "No fixtures are on record yet. Add one, or import a table of fixtures."
-	}
+	p.Say = fixturesSay(sv.Fixtures, all)
 	return fixturesSheet.show(v, 200, p)
 }
 
+func fixturesSay(inUse int, all []book.FixtureSummary) string {
+	gaps, low := 0, 0
+	for _, x := range all {
+		switch {
+		case !x.Here:
+		case x.Gaps > 0:
+			gaps++
+		case x.Closing > 0:
+			low++
+		}
+	}
+	switch {
+	case len(all) == 0:
+		return "No fixtures are on record yet. Add one, or import a table of fixtures."
+	case gaps+low == 0:
+		return upperFirst(count(inUse, "fixture is", "fixtures are")) + " in use, and nothing on them has run out or is running low."
+	default:
+		return upperFirst(count(inUse, "fixture is", "fixtures are")) + " in use: " + count(gaps, "has", "have") + " a gap, " + number(low) + " more have something running low."
+	}
+}
+
 func (v *visit) fixtureLine(x book.FixtureSummary) fixtureLine {
-	left := 0.5
-	if x.Worst == standing.Met {
-		left = 1
+	l := fixtureLine{Name: x.Name, URL: v.url("fixtures", x.Code), Code: x.Code, Word: x.Worst}
+	if x.Zone != "" {
+		l.Zone = "Zone " + x.Zone
 	}
-	l := fixtureLine{Disc: disc(x.Worst, left), Name: x.Name, URL: v.url("fixtures", x.Code), Code: x.Code, Zone: x.Zone, Standing: word(x.Worst)}
-	if x.Gaps > 0 {
-		l.Standing = count(x.Gaps, "gap", "gaps")
-	}
+	l.Disc, l.More = disc(x.Worst, roughly(x.Worst)), moreGaps(x.Gaps)
 	if x.NextDue != nil {
 		l.Next = shortDay(*x.NextDue, v.today())
 	}
 	if !x.Here {
-		l.Next, l.Standing = "until "+shortDayOr(x.Until, v.today(), ""), ""
+		l.Next = "until " + shortDayOr(x.Until, v.today(), "")
 	}
 	return l
 }
@@ -108,7 +122,7 @@ func (v *visit) showSubject(s standing.Subject) error {
 	if err != nil {
 		return err
 	}
-	p := &personLeaf{page: page{Title: x.Name, Section: secRounds, AsOf: v.asOf()}, Name: x.Name, Code: s.Code}
+	p := &personLeaf{page: page{Title: x.Name, Section: secRounds, AsOf: v.asOf()}, Name: x.Name}
 	p.When = p.AsOf
 	p.Bad, p.Low, p.Good = v.parted(x.Rows)
 	p.Who = v.whoWords(x)
@@ -127,27 +141,26 @@ func (p *fixtureLeaf) head() *page { return &p.page }
 
 var fixtureSheet = leafOf[fixtureLeaf]("fixture")
 
+// subjectSay says what the subject is and where, and what falls short.
 func (v *visit) subjectSay(x book.SubjectView, p *personLeaf) string {
-	name := string(x.Subject.Asks)
-	if x.Kind != "" {
-		name = x.Kind
-		if k, ok := v.site.Program.FixtureKind(x.Kind); ok {
-			name = orCode(k.Name, x.Kind)
-		}
+	what := string(x.Subject.Asks)
+	if k, ok := v.site.Program.FixtureKind(x.Kind); ok {
+		what = strings.ToLower(orCode(k.Name, x.Kind))
 	}
-	where := ""
+	s := x.Name + " is " + withArticle(what)
+	if x.Subject.Asks != program.AsksFixture {
+		return s + "; " + v.oweWords(p) + "."
+	}
 	if x.Zone != "" {
-		where = " in Zone " + x.Zone
+		s += " in Zone " + x.Zone
 	}
-	s := upperFirst(name) + where + ". "
-	switch {
-	case len(p.Bad)+len(p.Low)+len(p.Good) == 0:
-		return s + "Nothing is asked of it on this day."
-	case len(p.Bad) == 0:
-		return s + "Nothing has run out; " + count(len(p.Low), "thing is", "things are") + " due soon."
-	default:
-		return s + upperFirst(count(len(p.Bad), "thing has", "things have")) + " run out, failed or cannot be told."
+	if last, gone := v.gone(x); gone {
+		return s + ", in use until " + shortDay(last, v.today()) + "; nothing is asked of it any more."
 	}
+	if pause := v.pausedOn(x); pause != nil {
+		return s + ", out of service from " + shortDay(pause.From, v.today()) + " to " + shortDayOr(pause.To, v.today(), "no end yet") + "; nothing is asked meanwhile."
+	}
+	return s + "; " + v.oweWords(p) + "."
 }
 
 func (v *visit) subjectActs(s standing.Subject) []act {
@@ -169,30 +182,54 @@ func keepFixtureForm(v *visit, f *Form) *formLeaf {
 	p := v.site.Program
 	leaf := &formLeaf{page: page{Title: "Fixture", Section: secRounds}, Head: "Add a fixture", Action: v.url("keep-fixture"), Form: f, Button: "Keep"}
 	leaf.Say = "A thing that gets inspected. What stays empty is not said."
-	if f.Get("known") != "" {
-		leaf.Head, leaf.Hidden = "Change "+f.Get("name"), []hidden{{"known", "1"}}
-		leaf.Say = "Only what differs is written. A changed fact holds from the day below."
-	}
+	k, ok := p.FixtureKind(f.Get("kind"))
+	zones := codesAsOptions("Not on record", p.Zones, func(z program.Zone) string { return z.Code }, zoneName)
 	leaf.Fields = []field{
-		f.Text("code", "Code").Need().Help("As it stands on its label"),
-		f.Choice("kind", "Kind", choose(codesAsOptions("", p.FixtureKinds, func(k program.FixtureKind) string { return k.Code }, func(k program.FixtureKind) string { return k.Name })[1:])).Need(),
 		f.Text("name", "Name"),
-		f.Choice("zone", "Zone", codesAsOptions("Not on record", p.Zones, func(z program.Zone) string { return z.Code }, func(z program.Zone) string { return z.Name })).Help("For a door: the zone that it leads into"),
+		f.Choice("zone", "Zone", f.said("zone", zones)).Help("For a door: the zone that it leads into"),
 		f.Date("since", "In use since"),
-		f.Date("until", "In use until, last day included"),
-		f.Date("from", "Changed facts hold from"),
+		f.Date("until", "In use until").Help("The last day, included; empty while it is in use"),
 	}
-	if k, ok := p.FixtureKind(f.Get("kind")); ok {
-		leaf.Fields = append(leaf.Fields, factFields(f, k.Facts)...)
+	if f.Get("known") != "" {
+		leaf.Head = "Change " + orCode(f.Get("name"), f.Get("code"))
+		leaf.Say = "Only what differs is written. A changed fact holds from the day below; the days before it stay as they were."
+		leaf.Hidden = []hidden{{"known", "1"}, {"code", f.Get("code")}}
+		leaf.Fields = append(leaf.Fields, f.Date("from", "Changed facts hold from"))
 	} else {
-		leaf.After = "Its kind's own facts can be put on record after it was added, with Change."
+		leaf.Fields = append([]field{f.Text("code", "Code").Need().Help("As it stands on its label")}, leaf.Fields...)
 	}
+	if !ok || f.Fault("kind") != "" {
+		kinds := codesAsOptions("Choose", p.FixtureKinds, func(k program.FixtureKind) string { return k.Code }, func(k program.FixtureKind) string { return k.Name })
+		leaf.Fields = append([]field{f.Choice("kind", "Kind", kinds).Need()}, leaf.Fields...)
+		return leaf
+	}
+	leaf.Hidden = append(leaf.Hidden, hidden{"kind", k.Code})
+	if f.Get("known") == "" {
+		leaf.Head += ": " + strings.ToLower(orCode(k.Name, k.Code))
+	}
+	leaf.Fields = append(leaf.Fields, factFields(f, k.Facts)...)
 	return leaf
+}
+
+// chooseKind asks what kind of thing is added, since each kind has facts of its own.
+func (v *visit) chooseKind() error {
+	p := &chooseLeaf{page: page{Title: "Fixture", Section: secRounds}, Head: "Add a fixture", Say: "What kind of thing is it?"}
+	for _, k := range v.site.Program.FixtureKinds {
+		p.Lines = append(p.Lines, chooseLine{orCode(k.Name, k.Code), "", with(v.url("keep-fixture"), "kind", k.Code)})
+	}
+	if len(p.Lines) == 0 {
+		p.Say = "The program names no kind of fixture yet. Adopt a group of the starter that brings one, or write one into its text."
+	}
+	return chooseSheet.show(v, 200, p)
 }
 
 func keepFixturePage(v *visit) error {
 	f := v.asked()
-	if code := f.Get("code"); code != "" {
+	code := f.Get("code")
+	if code == "" && f.Get("kind") == "" {
+		return v.chooseKind()
+	}
+	if code != "" {
 		x, err := v.b.Subject(v.ctx(), v.actor, v.site.Code, standing.Subject{Asks: program.AsksFixture, Code: code}, nil)
 		if err != nil {
 			return err

@@ -15,13 +15,13 @@ func factFields(f *Form, facts []program.Fact) []field {
 		label = upperFirst(label)
 		switch x.Type {
 		case program.FactYesNo:
-			out = append(out, f.Choice(name, label, []option{{"", "Not on record", false, false}, {"yes", "Yes", false, false}, {"no", "No", false, false}}))
+			out = append(out, f.Choice(name, label, f.said(name, []option{{Value: "", Words: "Not on record"}, {Value: "yes", Words: "Yes"}, {Value: "no", Words: "No"}})))
 		case program.FactChoice:
 			options := []option{{Value: "", Words: "Not on record"}}
 			for _, c := range x.Choices {
 				options = append(options, option{Value: c, Words: c})
 			}
-			out = append(out, f.Choice(name, label, options))
+			out = append(out, f.Choice(name, label, f.said(name, options)))
 		case program.FactNumber:
 			out = append(out, f.Number(name, label, x.Unit))
 		case program.FactDay:
@@ -31,6 +31,15 @@ func factFields(f *Form, facts []program.Fact) []field {
 		}
 	}
 	return out
+}
+
+// said leaves the empty choice out where something is on record: what is empty is not said, and would
+// take nothing off.
+func (f *Form) said(name string, options []option) []option {
+	if f.Get("known") != "" && f.Get(name) != "" {
+		return options[1:]
+	}
+	return options
 }
 
 func factValues(f *Form, facts []program.Fact) map[string]string {
@@ -60,21 +69,24 @@ func keepPersonForm(v *visit, f *Form) *formLeaf {
 	p := v.site.Program
 	leaf := &formLeaf{page: page{Title: "Person", Section: secPeople}, Head: "Add a person", Action: v.url("keep-person"), Form: f, Button: "Keep"}
 	leaf.Say = "Who they are, when they joined, and what level and crew they shall have. What stays empty is not said."
+	levels := codesAsOptions("Not on record", p.Levels, func(l program.Level) string { return l.Code }, func(l program.Level) string { return l.Name })
+	crews := codesAsOptions("Not on record", p.Crews, func(c program.Crew) string { return c.Code }, func(c program.Crew) string { return c.Name })
+	leaf.Fields = []field{
+		f.Text("name", "Name").Need(),
+		f.Choice("level", "Assigned level", f.said("level", levels)),
+		f.Choice("crew", "Crew", f.said("crew", crews)),
+		f.Date("joined", "Joined"),
+		f.Date("left", "Left").Help("The last day, included; empty while they are on staff"),
+		f.Text("email", "E-mail"),
+		f.Text("badge", "Badge"),
+	}
 	if f.Get("known") != "" {
 		leaf.Head = "Change " + f.Get("name")
 		leaf.Say = "Only what differs is written. A changed level, crew or other fact holds from the day below; the days before it stay as they were."
-		leaf.Hidden = []hidden{{"known", "1"}}
-	}
-	leaf.Fields = []field{
-		f.Text("code", "Code").Need().Help("Short and never used again for somebody else"),
-		f.Text("name", "Name").Need(),
-		f.Choice("level", "Assigned level", codesAsOptions("Not on record", p.Levels, func(l program.Level) string { return l.Code }, func(l program.Level) string { return l.Name })),
-		f.Choice("crew", "Crew", codesAsOptions("Not on record", p.Crews, func(c program.Crew) string { return c.Code }, func(c program.Crew) string { return c.Name })),
-		f.Date("joined", "Joined"),
-		f.Date("left", "Left, last day included"),
-		f.Date("from", "Changed facts hold from"),
-		f.Text("email", "E-mail"),
-		f.Text("badge", "Badge"),
+		leaf.Hidden = []hidden{{"known", "1"}, {"code", f.Get("code")}}
+		leaf.Fields = append([]field{f.Date("from", "Changed facts hold from")}, leaf.Fields...)
+	} else {
+		leaf.Fields = append([]field{f.Text("code", "Code").Need().Help("Short and never used again for somebody else")}, leaf.Fields...)
 	}
 	leaf.Fields = append(leaf.Fields, factFields(f, p.PersonFacts)...)
 	return leaf

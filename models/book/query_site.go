@@ -12,12 +12,13 @@ import (
 	"lodebook/models/store"
 )
 
-// Fixtures lists every fixture that the site ever had, those of the day first.
+// Fixtures lists every fixture that the site ever had, those of the day first, by kind, zone and code.
 func (b *Book) Fixtures(ctx context.Context, actor Actor, site string, on *civil.Day) (SiteView, []FixtureSummary, error) {
 	var out []FixtureSummary
 	var sv SiteView
+	var rank map[string]int
 	err := b.at(ctx, actor, site, on, func(v *siteOn) error {
-		sv = v.SiteView
+		sv, rank = v.SiteView, v.zoneRank()
 		rows, err := v.rows(standing.Query{On: v.on, KnownAt: v.k})
 		if err != nil {
 			return err
@@ -29,7 +30,7 @@ func (b *Book) Fixtures(ctx context.Context, actor Actor, site string, on *civil
 		return nil
 	})
 	slices.SortFunc(out, func(a, b FixtureSummary) int {
-		return cmp.Or(boolOrder(b.Here, a.Here), strings.Compare(a.KindName, b.KindName), strings.Compare(a.Code, b.Code))
+		return cmp.Or(boolOrder(b.Here, a.Here), strings.Compare(a.KindName, b.KindName), cmp.Compare(rank[a.Zone], rank[b.Zone]), strings.Compare(a.Code, b.Code))
 	})
 	return sv, out, err
 }
