@@ -41,9 +41,13 @@ func mustLoad(name string) *time.Location {
 
 // world makes all that is on record from draws.
 type world struct {
-	pick   func(n int) int    // from 0, below n
-	spread int                // on so many days it all happens
-	cast   []standing.Subject // to these it all happens
+	pick   func(n int) int       // from 0, below n
+	spread int                   // on so many days it all happens
+	cast   []standing.Subject    // to these it all happens
+	rules  []program.CadenceRule // of the items
+	fails  int                   // so many records of a hundred fail
+	timed  int                   // so many records and events of a hundred have a time
+	levels bool                  // the items are about held levels
 	n      naive
 	seq    int64
 }
@@ -64,13 +68,29 @@ func (w *world) line() standing.Line {
 	return standing.Line{Seq: w.seq, ID: fmt.Sprintf("e%d", w.seq)}
 }
 
+// duration is of the order of the days that the world has.
 func (w *world) duration() civil.Duration {
-	return oneOf(w, civil.Duration{Days: 1}, civil.Duration{Days: 3}, civil.Duration{Weeks: 1}, civil.Duration{Days: 20},
-		civil.Duration{Months: 1}, civil.Duration{Months: 1, Days: 5}, civil.Duration{Months: 3}, civil.Duration{Years: 1})
+	few := []civil.Duration{{Days: 1}, {Days: 2}, {Days: 3}}
+	some := []civil.Duration{{Days: 3}, {Days: 5}, {Weeks: 1}, {Weeks: 1, Days: 3}}
+	many := []civil.Duration{{Weeks: 1}, {Days: 20}, {Months: 1}, {Months: 1, Days: 5}, {Months: 3}, {Years: 1}}
+	switch {
+	case w.spread <= 6:
+		return oneOf(w, few...)
+	case w.spread <= 20:
+		return oneOf(w, some...)
+	}
+	return oneOf(w, many...)
 }
 
+// short is shorter than duration, and often nothing.
 func (w *world) short() civil.Duration {
-	return oneOf(w, civil.Duration{}, civil.Duration{}, civil.Duration{Days: 1}, civil.Duration{Days: 4}, civil.Duration{Weeks: 2}, civil.Duration{Months: 1})
+	switch {
+	case w.chance(40):
+		return civil.Duration{}
+	case w.spread > 40 && w.chance(20):
+		return civil.Duration{Months: 1}
+	}
+	return civil.Duration{Days: w.pick(2 + w.spread/8)}
 }
 
 // need makes a selector that misses the value where it is not on record.
@@ -94,6 +114,7 @@ var (
 	swingsIn = need("subject.facts.swing == 'in'", "facts.swing", func(s program.Subject) any { return s.Facts["swing"] }, "in")
 	early    = has("has(subject.crew) && subject.crew == 'early'", []string{"crew"}, func(s program.Subject) bool { return s.Crew == "early" })
 	heldAny  = has("has(subject.held)", []string{"held"}, func(s program.Subject) bool { return s.Held != "" })
+	heldNone = has("!has(subject.held)", []string{"held"}, func(s program.Subject) bool { return s.Held == "" })
 	heldL1   = need("subject.held == 'L1'", "held", func(s program.Subject) any { return s.Held }, "L1")
 	officer  = has("'MRSO' in subject.posts", []string{"posts"}, func(s program.Subject) bool { return slices.Contains(s.Posts, "MRSO") })
 	filled   = has("size(subject.holders) > 0", []string{"holders"}, func(s program.Subject) bool { return len(s.Holders) > 0 })
@@ -105,7 +126,7 @@ var (
 func (w *world) selector(asks program.Asks, mayReadHeld bool) *program.Selector {
 	switch {
 	case asks == program.AsksPerson && mayReadHeld && w.chance(30):
-		return oneOf(w, heldAny, heldL1, anyFact)
+		return oneOf(w, heldAny, heldAny, heldNone, heldNone, heldL1, anyFact)
 	case asks == program.AsksPerson:
 		return oneOf(w, isL2, swingsIn, early, officer, notAnn)
 	case asks == program.AsksFixture:
@@ -118,26 +139,32 @@ func (w *world) selector(asks program.Asks, mayReadHeld bool) *program.Selector 
 
 func (w *world) item(code string) program.Item {
 	it := program.Item{
-		Code: code, Title: "Item " + code,
-		Asks:    w.subject().Asks,
+		Code: code, Title: "Item " + code, Asks: w.subject().Asks, Local: w.chance(20),
 		Records: oneOf(w, []string{"training/a"}, []string{"training/b"}, []string{"training/a", "training/b"}),
-		Local:   w.chance(20), First: w.short(), Grace: w.short(), Notice: program.Notice{Days: w.pick(20)},
+		First:   w.short(), Grace: w.short(), Notice: program.Notice{Days: w.pick(2 + w.spread/10)},
 	}
-	it.Cadence.Rule = oneOf(w, program.Every, program.Within, program.Once, program.Each, program.After, program.Holds)
+	it.Cadence.Rule = oneOf(w, w.rules...)
 	if w.chance(20) {
 		it.Notice = program.Notice{Given: ptr(w.short())}
 	}
 	if w.chance(15) {
 		it.Since = ptr(w.day())
 	}
-	if it.Asks == program.AsksPerson && w.chance(50) {
+	// Only items that neither guard nor confer may read held.
+	plain := w.chance(50)
+	if w.levels {
+		plain = code > "C"
+	}
+	if !plain && it.Asks == program.AsksPerson {
 		it.Confers = oneOf(w, "L1", "L2")
 	}
-	if w.chance(30) {
+	if !plain && w.chance(50) {
 		it.Guards = []string{"IV"}
 	}
-	plain := it.Confers == "" && it.Guards == nil
-	if w.chance(60) {
+	switch {
+	case w.levels && plain:
+		it.When = oneOf(w, heldAny, heldAny, heldNone, heldNone, heldL1, anyFact)
+	case w.chance(60):
 		it.When = w.selector(it.Asks, plain)
 	}
 	w.cadence(&it, plain)
@@ -149,14 +176,14 @@ func (w *world) cadence(it *program.Item, plain bool) {
 	switch c.Rule {
 	case program.Every:
 		c.Every, c.MonthEnd = w.duration(), w.chance(30)
-		if w.chance(50) {
-			c.Early = ptr(civil.Duration{Days: w.pick(12)})
+		if w.chance(60) {
+			c.Early = ptr(civil.Duration{Days: w.pick(max(1, c.Every.NominalDays()))})
 		}
 	case program.Within:
 		c.Within, c.Count = w.duration(), 1+w.pick(3)
 	case program.Each:
-		c.Each = oneOf(w, civil.ByDay, civil.ByDay, civil.ByWeek, civil.ByMonth, civil.ByQuarter, civil.ByYear)
-		c.Operating = w.chance(50)
+		c.Each = oneOf(w, civil.ByDay, civil.ByDay, civil.ByWeek, civil.ByWeek, civil.ByMonth, civil.ByQuarter, civil.ByYear)
+		c.Operating = w.chance(60)
 	case program.After:
 		c.Within = w.short()
 		c.After = oneOf(w, []string{"quench"}, []string{"storm"}, []string{"quench", "storm"})
@@ -208,11 +235,12 @@ func (w *world) site() string {
 	return "other"
 }
 
+// instant is now and then a time near the day's edges or at noon.
 func (w *world) instant(d civil.Day) *time.Time {
-	if w.chance(50) {
+	if !w.chance(w.timed) {
 		return nil
 	}
-	return ptr(d.Midnight(time.UTC).Add(time.Duration(w.pick(96)) * 15 * time.Minute))
+	return ptr(d.Midnight(time.UTC).Add(time.Duration(oneOf(w, 0, 5, 11, 12, 12, 13, 23)) * time.Hour))
 }
 
 func (w *world) stint(sub standing.Subject) {
@@ -248,7 +276,7 @@ func (w *world) fact() {
 }
 
 func (w *world) record() {
-	r := standing.Record{Line: w.line(), Site: w.site(), Subject: w.subject(), Day: w.day(), Passed: w.chance(80)}
+	r := standing.Record{Line: w.line(), Site: w.site(), Subject: w.subject(), Day: w.day(), Passed: !w.chance(w.fails)}
 	r.What = oneOf(w, "training/a", "training/a", "training/a", "training/b", "training/c")
 	if r.Subject.Asks == program.AsksPerson && w.chance(25) {
 		r.What = "appointment/" + oneOf(w, testPosts...)
@@ -272,7 +300,7 @@ func (w *world) excusal() {
 	x.From, x.To = from, &to
 	if w.chance(60) {
 		x.Item = oneOf(w, "A", "B", "C", "D", "E")
-	} else if x.Opens = false; w.chance(20) {
+	} else if w.chance(20) {
 		x.To = nil
 	}
 	w.n.excusals = append(w.n.excusals, at[standing.Excusal]{w.site(), x})
@@ -280,17 +308,24 @@ func (w *world) excusal() {
 
 // make draws a world. Later ends are drawn last, so that they are later than the lines.
 func (w *world) make() {
-	w.spread = oneOf(w, 4, 15, 50, 300)
+	w.spread = oneOf(w, 5, 15, 15, 60, 300)
+	w.fails, w.timed, w.levels = oneOf(w, 0, 10, 40), oneOf(w, 0, 50, 100), w.chance(30)
 	all := slices.Concat(testSubjects, testSubjects, declaredSubjects)
-	w.cast = nil
-	for range 1 + w.pick(5) {
-		w.cast = append(w.cast, oneOf(w, all...))
+	w.cast = []standing.Subject{testSubjects[0]}
+	for range w.pick(4) {
+		if !w.levels {
+			w.cast = append(w.cast, oneOf(w, all...))
+		}
 	}
-	w.n = naive{site: "S", first: base - 500, last: base + 1300}
-	kinds := []func(){w.fact, w.fact, w.record, w.record, w.record, w.event, w.excusal, func() { w.stint(oneOf(w, testSubjects...)) }}
-	for i := range 1 + w.pick(4) {
+	w.rules = nil
+	for range 1 + w.pick(2) {
+		w.rules = append(w.rules, oneOf(w, program.Every, program.Within, program.Once, program.Each, program.After, program.Holds))
+	}
+	w.n = naive{site: "S", first: base - 700, last: base + 1200}
+	kinds := []func(){w.fact, w.record, w.record, w.record, w.event, w.excusal, func() { w.stint(oneOf(w, testSubjects...)) }}
+	for i := range 1 + w.pick(3) {
 		w.n.versions = append(w.n.versions, w.version(i+1))
-		for range w.pick(20) {
+		for range w.pick(30) {
 			kinds[w.pick(len(kinds))]()
 		}
 	}
@@ -298,6 +333,9 @@ func (w *world) make() {
 		if w.chance(85) {
 			w.stint(sub)
 		}
+	}
+	if w.levels {
+		w.n.facts = append(w.n.facts, at[standing.Fact]{"S", standing.Fact{Line: w.line(), Subject: testSubjects[0], Code: "level", From: base, Value: "L2"}})
 	}
 	w.endSome()
 }
@@ -380,13 +418,13 @@ func (w *world) check(t fataler) {
 	t.Helper()
 	w.make()
 	e := w.puts()
-	for range 3 {
+	for range 5 {
 		w.n.k = standing.Always
 		if w.chance(40) {
 			w.n.k = int64(w.pick(int(w.seq) + 1))
 		}
 		w.n.profiles, w.n.helds = map[string]program.Subject{}, map[string]string{}
-		on := w.day() + oneOf(w, civil.Day(0), 0, civil.Day(w.pick(30)), civil.Day(w.pick(200)))
+		on := w.day() + oneOf(w, civil.Day(0), 0, civil.Day(w.pick(w.spread)), civil.Day(w.pick(200)))
 		got, err := e.Evaluate("S", standing.Query{On: on, KnownAt: w.n.k, Why: w.chance(20)})
 		if err != nil {
 			t.Fatalf("%v", err)
@@ -466,8 +504,10 @@ func TestEngineAgainstTheNaiveStatement(t *testing.T) {
 // Worlds drawn evenly reach what small ones do not.
 func TestEngineAgainstTheNaiveStatementEvenly(t *testing.T) {
 	rapid.Check(t, func(t *rapid.T) {
-		rng := rand.New(rand.NewPCG(rapid.Uint64().Draw(t, "seed"), 1))
-		w := &world{pick: rng.IntN}
-		w.check(t)
+		seed := rapid.Uint64().Draw(t, "seed")
+		for i := range uint64(5) {
+			w := &world{pick: rand.New(rand.NewPCG(seed, i)).IntN}
+			w.check(t)
+		}
 	})
 }
