@@ -9,6 +9,13 @@ import (
 // chooseLine is one subject to choose.
 type chooseLine struct{ Name, Note, URL string }
 
+// chooseGroup is the subjects of one kind; More: there are others, to be found by name.
+type chooseGroup struct {
+	Head  string
+	Lines []chooseLine
+	More  bool
+}
+
 // chooseLeaf asks whom or what a form is about, before the form is opened.
 type chooseLeaf struct {
 	page
@@ -16,13 +23,21 @@ type chooseLeaf struct {
 	Path      string
 	Find      string
 	Keep      []hidden // what else the address says
-	Lines     []chooseLine
-	More      bool
+	Groups    []chooseGroup
 }
 
 var chooseSheet = leafOf[chooseLeaf]("choose")
 
-const chooseMost = 60
+// How many subjects a choice shows: of one kind alone, and of each of several.
+const (
+	chooseMost = 90
+	chooseEach = 24
+)
+
+var kindHeads = map[program.Asks]string{
+	program.AsksPerson: "People", program.AsksFixture: "Fixtures", program.AsksZone: "Zones", program.AsksCrew: "Crews",
+	program.AsksPost: "Posts", program.AsksDocument: "Documents", program.AsksSite: "The site",
+}
 
 // chooseSubject lists the subjects of some kinds; each leads to the form with the subject in its
 // field, and the rest of the address kept.
@@ -33,21 +48,26 @@ func (v *visit) chooseSubject(p *chooseLeaf, field string, kinds ...program.Asks
 		p.Keep = append(p.Keep, hidden{k, v.query(k)})
 		pairs = append(pairs, k, v.query(k))
 	}
-	list, more, err := v.b.Subjects(v.ctx(), v.actor, v.site.Code, kinds, p.Find, chooseMost)
-	if err != nil {
-		return err
+	most := chooseEach
+	if len(kinds) == 1 {
+		most = chooseMost
 	}
-	p.More = more
-	for _, s := range list {
-		note := s.Note
-		if note == "" && s.Name != s.Subject.Code {
-			note = s.Subject.Code
+	for _, asks := range kinds {
+		list, more, err := v.b.Subjects(v.ctx(), v.actor, v.site.Code, []program.Asks{asks}, p.Find, most)
+		if err != nil {
+			return err
 		}
-		value := subjectKey(s.Subject)
-		if field != "subject" {
-			value = s.Subject.Code
+		g := chooseGroup{Head: kindHeads[asks], More: more}
+		for _, s := range list {
+			value := subjectKey(s.Subject)
+			if field != "subject" {
+				value = s.Subject.Code
+			}
+			g.Lines = append(g.Lines, chooseLine{s.Name, s.Note, with(p.Path, append(slices.Clone(pairs), field, value)...)})
 		}
-		p.Lines = append(p.Lines, chooseLine{s.Name, note, with(p.Path, append(slices.Clone(pairs), field, value)...)})
+		if len(g.Lines) > 0 {
+			p.Groups = append(p.Groups, g)
+		}
 	}
 	return chooseSheet.show(v, 200, p)
 }

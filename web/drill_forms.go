@@ -84,7 +84,7 @@ func drillForm(v *visit, f *Form) (*formLeaf, error) {
 	p.Hidden = []hidden{id, {"plan", f.Get("plan")}}
 	p.Fields = []field{
 		f.Choice("record", "What was rehearsed", choose(v.whats("", "drill"))).Need(),
-		f.Choice("crew", "With which crew", v.crewChoices("No crew: people from several")),
+		f.Choice("crew", "Crew", v.crewChoices("None: people of several")),
 		f.Date("on", "Day").Need().UpTo(v.today().String()).Help("Of a night, the day on which it began"),
 		f.Text("by", "Led by"),
 		f.Picks("result", "How it went", []option{{Value: book.Pass, Words: "As it should"}, {Value: book.Fail, Words: "It failed", Bad: true}}).Need(),

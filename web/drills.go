@@ -12,7 +12,7 @@ import (
 
 type planLine struct {
 	Title, Crew, When, Off string
-	Late                   bool
+	Late, Ahead            bool
 	URL, RecordURL         string
 }
 
@@ -82,7 +82,7 @@ func drillsPage(v *visit) error {
 			p.PeopleMore++
 		}
 	}
-	p.Say = v.drillsSay(x, p.Plans)
+	p.Say = drillsSay(x, p.Plans, planned)
 	if p.Held, p.Older, err = v.heldLines(x.Held); err != nil {
 		return err
 	}
@@ -131,7 +131,7 @@ func (v *visit) drillCell(r book.Row, planned map[string]string) drillCell {
 }
 
 func (v *visit) planLine(pl book.PlanLine) planLine {
-	l := planLine{Title: pl.Title, Crew: pl.CrewName, When: shortDay(pl.Day, v.today()), Off: until(pl.Day, v.today()), Late: pl.Day < v.today(), URL: v.url("book", pl.Entry)}
+	l := planLine{Title: pl.Title, Crew: pl.CrewName, When: shortDay(pl.Day, v.today()), Off: until(pl.Day, v.today()), Late: pl.Day < v.today(), Ahead: pl.Day > v.today(), URL: v.url("book", pl.Entry)}
 	if pl.At != "" {
 		l.When += ", " + pl.At
 	}
@@ -175,7 +175,7 @@ func takerWords(names []string) string {
 }
 
 // drillsSay names what was never rehearsed first.
-func (v *visit) drillsSay(x book.DrillView, plans []planLine) string {
+func drillsSay(x book.DrillView, plans []planLine, planned map[string]string) string {
 	if len(x.Codes) == 0 {
 		return "The checklist asks for no drill yet. Adopt the group of drills on the Checklist page."
 	}
@@ -189,7 +189,11 @@ func (v *visit) drillsSay(x book.DrillView, plans []planLine) string {
 			if never[r.SubjectName] == nil {
 				crews = append(crews, r.SubjectName)
 			}
-			never[r.SubjectName] = append(never[r.SubjectName], withArticle(strings.ToLower(x.Titles[first(r.Records)])))
+			drill := withArticle(strings.ToLower(x.Titles[first(r.Records)]))
+			if day := planned[first(r.Records)+" "+r.Subject.Code]; day != "" {
+				drill += " (planned for " + day + ")"
+			}
+			never[r.SubjectName] = append(never[r.SubjectName], drill)
 		case r.Word.IsGap():
 			lapsed++
 		}

@@ -147,7 +147,7 @@ func (v *visit) subjectSay(x book.SubjectView, p *personLeaf) string {
 	if k, ok := v.site.Program.FixtureKind(x.Kind); ok {
 		what = strings.ToLower(orCode(k.Name, x.Kind))
 	}
-	s := x.Name + " is " + withArticle(what)
+	s := upperFirst(withArticle(what))
 	if x.Subject.Asks != program.AsksFixture {
 		return s + "; " + v.oweWords(p) + "."
 	}
@@ -214,11 +214,13 @@ func keepFixtureForm(v *visit, f *Form) *formLeaf {
 // chooseKind asks what kind of thing is added, since each kind has facts of its own.
 func (v *visit) chooseKind() error {
 	p := &chooseLeaf{page: page{Title: "Fixture", Section: secRounds}, Head: "Add a fixture", Say: "What kind of thing is it?"}
+	var g chooseGroup
 	for _, k := range v.site.Program.FixtureKinds {
-		p.Lines = append(p.Lines, chooseLine{orCode(k.Name, k.Code), "", with(v.url("keep-fixture"), "kind", k.Code)})
+		g.Lines = append(g.Lines, chooseLine{orCode(k.Name, k.Code), "", with(v.url("keep-fixture"), "kind", k.Code)})
 	}
-	if len(p.Lines) == 0 {
+	if p.Groups = []chooseGroup{g}; len(g.Lines) == 0 {
 		p.Say = "The program names no kind of fixture yet. Adopt a group of the starter that brings one, or write one into its text."
+		p.Groups = nil
 	}
 	return chooseSheet.show(v, 200, p)
 }

@@ -97,6 +97,9 @@ func personPage(v *visit) error {
 	p.Say = v.personSay(x, p)
 	p.Who = v.whoWords(x)
 	v.personPast(p, x)
+	for i := range p.Good {
+		p.Good[i].Do = nil // what is in order asks for nothing
+	}
 	if v.acts(book.RecordDone) {
 		p.Do = v.personActs(x)
 	}
@@ -290,13 +293,17 @@ func (v *visit) personPast(p *personLeaf, x book.SubjectView) {
 		p.Events = append(p.Events, recordLine{Day: shortDay(e.Day, v.today()), What: e.Name, URL: v.url("book", e.Entry), Over: e.Ended})
 	}
 	p.Records = v.recordLines(x.Records)
-	if len(p.Records) > historyShown {
+	if len(p.Records) > historyShown+historyLeast {
 		p.Records, p.Older = p.Records[:historyShown], p.Records[historyShown:]
 	}
 }
 
-// historyShown is how many records a history shows before it folds.
-const historyShown = 25
+// historyShown is how many records a history shows where it folds; fewer than historyLeast more do
+// not make it fold.
+const (
+	historyShown = 20
+	historyLeast = 6
+)
 
 func fromWords(f book.FactLine, v *visit) string {
 	if f.From.Format("2006") < "1000" {
