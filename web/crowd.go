@@ -88,6 +88,9 @@ func newCrowdLine(a book.Attendee) crowdLine {
 			note = append(note, s)
 		}
 	}
+	if a.Away {
+		note = append(note, "away")
+	}
 	l := crowdLine{Code: a.Code, Name: a.Name, Note: strings.Join(note, ", "), Crew: a.Crew}
 	l.Text = strings.ToLower(a.Name + " " + a.Code + " " + l.Note)
 	if a.Word.IsGap() || a.Word == standing.Closing {

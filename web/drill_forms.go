@@ -96,7 +96,7 @@ func drillForm(v *visit, f *Form) (*formLeaf, error) {
 	return p, nil
 }
 
-// retick takes the ticks off the people of one crew and puts them on those of another.
+// retick takes the ticks off the people of one crew and puts them on those of another who are not away.
 func (f *Form) retick(people []book.Attendee, from, to string) {
 	if from == to {
 		return
@@ -105,7 +105,7 @@ func (f *Form) retick(people []book.Attendee, from, to string) {
 	for _, a := range people {
 		at := slices.Index(ticked, a.Code)
 		switch {
-		case a.Crew == to && to != "" && at < 0:
+		case a.Crew == to && to != "" && at < 0 && !a.Away:
 			ticked = append(ticked, a.Code)
 		case a.Crew == from && from != "" && at >= 0:
 			ticked = slices.Delete(ticked, at, at+1)

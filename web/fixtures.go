@@ -124,7 +124,7 @@ func (v *visit) showSubject(s standing.Subject) error {
 	}
 	p := &personLeaf{page: page{Title: x.Name, Section: secRounds, AsOf: v.asOf()}, Name: x.Name}
 	p.When = p.AsOf
-	p.Bad, p.Low, p.Good = v.parted(x.Rows)
+	v.part(p, x.Rows)
 	p.Who = v.whoWords(x)
 	v.personPast(p, x)
 	p.Say = v.subjectSay(x, p)

@@ -64,7 +64,8 @@ type personLeaf struct {
 	page
 	Name, Say      string
 	Who            []faultLine // labelled values
-	Bad, Low, Good []rowLine
+	Bad, Told      []rowLine   // gaps; what cannot be told
+	Low, Good      []rowLine   // closing or awaited; the rest
 	HeldWhy        []string
 	Facts          []factGroup
 	Excusals       []excusalLine
@@ -93,7 +94,7 @@ func personPage(v *visit) error {
 	p := &personLeaf{page: page{Title: x.Name, Section: section, AsOf: v.asOf()}, Name: x.Name, HeldWhy: x.HeldWhy}
 	p.When = p.AsOf
 	p.Mine = x.Subject.Code == v.actor.Person
-	p.Bad, p.Low, p.Good = v.parted(x.Rows)
+	v.part(p, x.Rows)
 	p.Say = v.personSay(x, p)
 	p.Who = v.whoWords(x)
 	v.personPast(p, x)
@@ -120,20 +121,21 @@ func presentNow(x book.SubjectView) bool {
 	return false
 }
 
-// parted lists what has run out, what is running low or awaited, and the rest.
-func (v *visit) parted(rows []book.Row) (bad, low, good []rowLine) {
+// part lists what has run out, what cannot be told, what is running low or awaited, and the rest.
+func (v *visit) part(p *personLeaf, rows []book.Row) {
 	for _, r := range rows {
 		l := v.rowLine(r)
 		switch {
-		case r.Word.IsGap() || r.Word == standing.DataFault:
-			bad = append(bad, l)
+		case r.Word.IsGap():
+			p.Bad = append(p.Bad, l)
+		case r.Word == standing.DataFault:
+			p.Told = append(p.Told, l)
 		case r.Word == standing.Closing || r.Word == standing.Awaited:
-			low = append(low, l)
+			p.Low = append(p.Low, l)
 		default:
-			good = append(good, l)
+			p.Good = append(p.Good, l)
 		}
 	}
-	return bad, low, good
 }
 
 // personSay answers the question of the page: what they hold, until when, and what falls short.
@@ -190,23 +192,18 @@ func (v *visit) levelWords(x book.SubjectView) string {
 
 // oweWords counts what has run out and what is due soon.
 func (v *visit) oweWords(p *personLeaf) string {
-	told, low := 0, 0
-	for _, l := range p.Bad {
-		if l.Word == standing.DataFault {
-			told++
-		}
-	}
+	low := 0
 	for _, l := range p.Low {
 		if l.Word == standing.Closing {
 			low++
 		}
 	}
 	var parts []string
-	if n := len(p.Bad) - told; n > 0 {
+	if n := len(p.Bad); n > 0 {
 		parts = append(parts, count(n, "thing has run out or failed", "things have run out or failed"))
 	}
-	if told > 0 {
-		parts = append(parts, count(told, "thing cannot be told", "things cannot be told"))
+	if n := len(p.Told); n > 0 {
+		parts = append(parts, count(n, "thing cannot be told for want of a fact", "things cannot be told for want of a fact"))
 	}
 	if len(parts) == 0 {
 		parts = append(parts, "nothing has run out")
@@ -214,7 +211,7 @@ func (v *visit) oweWords(p *personLeaf) string {
 	if low > 0 {
 		parts = append(parts, count(low, "is due soon", "are due soon"))
 	}
-	if len(p.Bad)+len(p.Low)+len(p.Good) == 0 {
+	if len(p.Bad)+len(p.Told)+len(p.Low)+len(p.Good) == 0 {
 		return "nothing is asked on this day"
 	}
 	return and(parts)

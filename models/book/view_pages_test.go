@@ -120,6 +120,16 @@ func TestAttendeesSayWhereEachStands(t *testing.T) {
 	if words["P1"] != standing.Met || !words["P2"].IsGap() || len(list) != 2 {
 		t.Errorf("attendees stand at %v, want P1 met and P2 a gap", words)
 	}
+	_, err = d.Pause(t.Context(), d.officer, site, book.PauseForm{Subject: "person:P2", From: "2026-03-01", To: "2026-03-02"}, book.Correction{})
+	d.ok(err)
+	for day, away := range map[int]bool{2: true, 3: false} {
+		d.now = time.Date(2026, 3, day, 8, 0, 0, 0, time.UTC)
+		list, err = d.Attendees(t.Context(), d.officer, site, "training/level-2")
+		d.ok(err)
+		if list[0].Away || list[1].Away != away {
+			t.Errorf("on %d March: away %v and %v, want only Teis Joensen: %v", day, list[0].Away, list[1].Away, away)
+		}
+	}
 }
 
 func TestSubjectsAreFoundByWords(t *testing.T) {

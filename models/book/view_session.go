@@ -11,6 +11,7 @@ import (
 	"lodebook/models/civil"
 	"lodebook/models/program"
 	"lodebook/models/standing"
+	"lodebook/models/store"
 )
 
 // Attendee is somebody on staff today who may have taken part in what is about to be recorded.
@@ -18,6 +19,7 @@ type Attendee struct {
 	Code, Name, Crew, CrewName, Level string
 	Word                              standing.Word // the worst of what the record answers for them; empty: nothing is asked
 	Due                               *civil.Day
+	Away                              bool // a pause of theirs covers the day
 }
 
 // Attendees lists everybody on staff today by name, with where each stands with what the record
@@ -32,6 +34,7 @@ func (b *Book) Attendees(ctx context.Context, actor Actor, site, record string) 
 		for _, s := range v.m.engine.Subjects(v.Code, program.AsksPerson, v.on, v.k) {
 			p := v.m.engine.Profile(v.Code, s, v.on, v.k)
 			a := Attendee{Code: s.Code, Name: v.subjectName(s), Crew: p.Crew, CrewName: cmp.Or(named(v.Program.Crew(p.Crew)), p.Crew), Level: p.Level}
+			a.Away = v.paused(s)
 			if st, ok := worst[s]; ok {
 				a.Word, a.Due = st.Word, st.Due
 			}
@@ -43,6 +46,13 @@ func (b *Book) Attendees(ctx context.Context, actor Actor, site, record string) 
 		return cmp.Or(strings.Compare(strings.ToLower(a.Name), strings.ToLower(b.Name)), strings.Compare(a.Code, b.Code))
 	})
 	return out, err
+}
+
+// paused tells whether a pause of the subject covers the day.
+func (v *siteOn) paused(s standing.Subject) bool {
+	return slices.ContainsFunc(v.m.excusals[subjectBody{string(s.Asks), s.Code}.key(v.Code)], func(x store.ExcusalRow) bool {
+		return x.Item == "" && x.Ended == 0 && x.From <= v.on && (x.To == nil || *x.To >= v.on)
+	})
 }
 
 // answeredBy gives each person's worst standing of those that the record answers.
