@@ -3,6 +3,7 @@ package web
 import (
 	"slices"
 
+	"lodebook/models/book"
 	"lodebook/models/program"
 )
 
@@ -23,6 +24,7 @@ type chooseLeaf struct {
 	Path      string
 	Find      string
 	Keep      []hidden // what else the address says
+	only      []string // kinds of fixture, where not all are to be chosen from
 	Groups    []chooseGroup
 }
 
@@ -53,7 +55,7 @@ func (v *visit) chooseSubject(p *chooseLeaf, field string, kinds ...program.Asks
 		most = chooseMost
 	}
 	for _, asks := range kinds {
-		list, more, err := v.b.Subjects(v.ctx(), v.actor, v.site.Code, []program.Asks{asks}, p.Find, most)
+		list, more, err := v.b.Subjects(v.ctx(), v.actor, v.site.Code, book.SubjectQuery{Asks: asks, FixtureKinds: p.only, Words: p.Find, Most: most})
 		if err != nil {
 			return err
 		}

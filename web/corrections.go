@@ -49,7 +49,11 @@ func (v *visit) late(stale *book.Stale) (*bothSides, book.EntryView, error) {
 		}
 	}
 	b := &bothSides{Old: *v.side(old), Now: *v.side(now)}
-	b.Words = now.Actor + " was faster, on " + moment(now.At, v.site.Location, v.today()) + ". Nothing of yours was kept yet."
+	who := now.Actor + " was faster"
+	if now.ActorID == v.actor.Account {
+		who = "This account did that already"
+	}
+	b.Words = who + ", on " + moment(now.At, v.site.Location, v.today()) + ". Nothing was kept this time."
 	return b, now, nil
 }
 

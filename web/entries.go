@@ -101,6 +101,17 @@ func (v *visit) entryLines(list []book.EntryLine) []entryLine {
 	return out
 }
 
+// entryURL leads to an entry of a kind, or is empty where the visitor may not open it. Own tells that
+// it is about the visitor.
+func (v *visit) entryURL(kind, id string, own bool) string {
+	open := v.may(book.SeeBook) || kind == "record" && own
+	open = open || v.may(book.SeeSite) && (kind == "record" || kind == "event" || kind == "fixture")
+	if !open {
+		return ""
+	}
+	return v.url("book", id)
+}
+
 func kindWords(kind string) string {
 	for _, k := range book.Kinds {
 		if k.Kind == kind {

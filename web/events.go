@@ -32,19 +32,28 @@ func (v *visit) eventWords(e program.Event) string {
 	return upperFirst(spaced(e.Code))
 }
 
-// befalls are the kinds of subject to which a declared event can happen: the one asked for, or any.
-func (v *visit) befalls(event string) []program.Asks {
-	var out []program.Asks
+// befalls are the kinds of subject, and among fixtures the kinds of fixture (none: all), to which a
+// declared event can happen: the one asked for, or any.
+func (v *visit) befalls(event string) (asks []program.Asks, fixtures []string) {
+	all := false
 	for _, e := range v.site.Program.Events {
-		asks := program.Asks(e.Of)
-		if !slices.Contains(program.AllAsks, asks) {
-			asks = program.AsksFixture // a kind of fixture
+		if event != "" && e.Code != event {
+			continue
 		}
-		if (event == "" || e.Code == event) && !slices.Contains(out, asks) {
-			out = append(out, asks)
+		of := program.Asks(e.Of)
+		if !slices.Contains(program.AllAsks, of) {
+			of, fixtures = program.AsksFixture, append(fixtures, e.Of)
+		} else if of == program.AsksFixture {
+			all = true
+		}
+		if !slices.Contains(asks, of) {
+			asks = append(asks, of)
 		}
 	}
-	return out
+	if all {
+		fixtures = nil
+	}
+	return asks, fixtures
 }
 
 func eventForm(v *visit, f *Form) (*formLeaf, error) {
@@ -64,7 +73,9 @@ func eventForm(v *visit, f *Form) (*formLeaf, error) {
 
 func eventPage(v *visit) error {
 	if v.unchosen("subject") {
-		return v.chooseSubject(&chooseLeaf{page: page{Title: "Report an event", Section: secRounds}, Head: "Report an event", Say: "To what, or to whom, did it happen?"}, "subject", v.befalls(v.query("event"))...)
+		asks, fixtures := v.befalls(v.query("event"))
+		p := &chooseLeaf{page: page{Title: "Report an event", Section: secRounds}, Head: "Report an event", Say: "To what, or to whom, did it happen?", only: fixtures}
+		return v.chooseSubject(p, "subject", asks...)
 	}
 	return v.showEvent(v.asked())
 }

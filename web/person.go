@@ -242,18 +242,18 @@ func (v *visit) whoWords(x book.SubjectView) []faultLine {
 }
 
 // factGroups gathers the facts by what they say, the newest first.
-func (v *visit) factGroups(facts []book.FactLine) []factGroup {
+func (v *visit) factGroups(asks program.Asks, facts []book.FactLine) []factGroup {
 	var out []factGroup
 	for _, f := range facts {
 		if f.Ended {
 			continue
 		}
-		line := factLine{v.factWords(f), fromWords(f, v), v.url("book", f.Entry)}
+		line := factLine{v.factWords(f), fromWords(f, v), v.entryURL(string(asks), f.Entry, false)}
 		if n := len(out); n == 0 || out[n-1].Label != f.Label {
 			out = append(out, factGroup{Label: f.Label})
 		}
 		g := &out[len(out)-1]
-		if g.Now.URL == "" && f.From <= v.day() {
+		if g.Now.From == "" && f.From <= v.day() {
 			g.Now = line
 		} else {
 			g.Others = append(g.Others, line)
@@ -261,7 +261,7 @@ func (v *visit) factGroups(facts []book.FactLine) []factGroup {
 	}
 	for i := range out {
 		out[i].Label = upperFirst(spaced(out[i].Label))
-		if out[i].Now.URL == "" {
+		if out[i].Now.From == "" {
 			out[i].Now.Value = "not yet"
 		}
 	}
@@ -282,12 +282,12 @@ func (v *visit) factWords(f book.FactLine) string {
 
 // personPast fills in what is behind the standings.
 func (v *visit) personPast(p *personLeaf, x book.SubjectView) {
-	p.Facts = v.factGroups(x.Facts)
+	p.Facts = v.factGroups(x.Subject.Asks, x.Facts)
 	for _, e := range x.Excusals {
 		p.Excusals = append(p.Excusals, v.excusalLine(e))
 	}
 	for _, e := range x.Events {
-		p.Events = append(p.Events, recordLine{Day: shortDay(e.Day, v.today()), What: e.Name, URL: v.url("book", e.Entry), Over: e.Ended})
+		p.Events = append(p.Events, recordLine{Day: shortDay(e.Day, v.today()), What: e.Name, URL: v.entryURL("event", e.Entry, false), Over: e.Ended})
 	}
 	p.Records = v.recordLines(x.Records)
 	if len(p.Records) > historyShown+historyLeast {
@@ -310,7 +310,7 @@ func fromWords(f book.FactLine, v *visit) string {
 }
 
 func (v *visit) excusalLine(e book.ExcusalLine) excusalLine {
-	l := excusalLine{What: orCode(e.Title, e.Item), Because: e.Because, URL: v.url("book", e.Entry), Waiting: e.Waiting, Over: e.Ended, Pause: e.Item == "", Entry: e.Entry}
+	l := excusalLine{What: orCode(e.Title, e.Item), Because: e.Because, URL: v.entryURL("excusal", e.Entry, false), Waiting: e.Waiting, Over: e.Ended, Pause: e.Item == "", Entry: e.Entry}
 	if l.Pause {
 		l.What = "Everything paused"
 	}

@@ -125,7 +125,7 @@ func roundSay(x book.Round) string {
 	zones := map[string]bool{}
 	for _, s := range x.Due {
 		zones[s.Fixture.Zone] = true
-		if s.Fixture.Gaps > 0 {
+		if slices.ContainsFunc(s.Rows, func(r book.Row) bool { return r.Word.IsGap() }) {
 			out++
 		}
 	}

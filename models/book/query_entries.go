@@ -271,7 +271,7 @@ func saidOf(s *stintBody, facts map[string]factValue) string {
 		parts = append(parts, "from "+dayOr(s.First, "the beginning")+" to "+dayOr(s.Last, "no end yet"))
 	}
 	for _, k := range sortedKeys(facts) {
-		parts = append(parts, k+" "+facts[k].show())
+		parts = append(parts, strings.ReplaceAll(k, "_", " ")+" "+facts[k].show())
 	}
 	if len(parts) == 0 {
 		return ""

@@ -137,9 +137,8 @@ func TestSubjectsAreFoundByWords(t *testing.T) {
 	d.person("P1", "Runa Sandoy", "L2")
 	d.person("P2", "Teis Joensen", "L2")
 	d.vent("V1")
-	kinds := []program.Asks{program.AsksPerson, program.AsksFixture, program.AsksCrew}
-	find := func(words string, most int) (string, bool) {
-		list, more, err := d.Subjects(t.Context(), d.officer, site, kinds, words, most)
+	find := func(q book.SubjectQuery) (string, bool) {
+		list, more, err := d.Subjects(t.Context(), d.officer, site, q)
 		d.ok(err)
 		var codes []string
 		for _, s := range list {
@@ -147,14 +146,22 @@ func TestSubjectsAreFoundByWords(t *testing.T) {
 		}
 		return strings.Join(codes, " "), more
 	}
-	if got, more := find("runa sand", 9); got != "P1" || more {
-		t.Errorf("found %q, %v", got, more)
-	}
-	if got, more := find("north", 9); got != "V1" || more {
-		t.Errorf("found %q, %v", got, more)
-	}
-	if got, more := find("", 2); got != "P1 P2" || !more {
-		t.Errorf("found %q, %v, want the first two and that there are more", got, more)
+	for _, c := range []struct {
+		q    book.SubjectQuery
+		want string
+		more bool
+	}{
+		{book.SubjectQuery{Asks: program.AsksPerson, Words: "runa sand", Most: 9}, "P1", false},
+		{book.SubjectQuery{Asks: program.AsksPerson, Words: "early", Most: 9}, "P1 P2", false},
+		{book.SubjectQuery{Asks: program.AsksPerson, Most: 1}, "P1", true},
+		{book.SubjectQuery{Asks: program.AsksFixture, Words: "north", Most: 9}, "V1", false},
+		{book.SubjectQuery{Asks: program.AsksFixture, FixtureKinds: []string{"vent"}, Most: 9}, "V1", false},
+		{book.SubjectQuery{Asks: program.AsksFixture, FixtureKinds: []string{"detector"}, Most: 9}, "", false},
+		{book.SubjectQuery{Asks: program.AsksCrew, Most: 9}, "early night", false},
+	} {
+		if got, more := find(c.q); got != c.want || more != c.more {
+			t.Errorf("%+v found %q, %v, want %q, %v", c.q, got, more, c.want, c.more)
+		}
 	}
 }
 
