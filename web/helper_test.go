@@ -313,7 +313,7 @@ func (a *answer) value(name string) string {
 		for _, n := range a.all(tag + "[name=" + name + "]") {
 			switch {
 			case tag == "textarea":
-				return strings.TrimPrefix(textOf(n), "\n")
+				return strings.TrimSuffix(strings.TrimPrefix(textOf(n), "\n"), " ")
 			case tag == "input":
 				return attribute(n, "value")
 			}
@@ -329,3 +329,19 @@ func (a *answer) value(name string) string {
 	a.t.Errorf("there is no field %s", name)
 	return ""
 }
+
+// checked are the values of the boxes of a name that are ticked.
+func checked(a *answer, name string) []string {
+	var out []string
+	for _, n := range a.all("[name=" + name + "]") {
+		for _, at := range n.Attr {
+			if at.Key == "checked" {
+				out = append(out, attribute(n, "value"))
+			}
+		}
+	}
+	return out
+}
+
+// isHidden tells that an element is not shown.
+func isHidden(a html.Attribute) bool { return a.Key == "hidden" }

@@ -13,7 +13,7 @@ import (
 	"lodebook/models/standing"
 )
 
-// TestSessionIsKeptOnce sends one form twice and changed: design, "Writing twice is writing once".
+// TestSessionIsKeptOnce sends one form twice, and changed: writing twice is writing once.
 func TestSessionIsKeptOnce(t *testing.T) {
 	d := newDesk(t)
 	d.person("P1", "Runa Sandoy", "L2")
