@@ -11,15 +11,16 @@ func (ob *obligation) after() finding {
 		}
 	}
 	latest := ob.events[len(ob.events)-1]
-	return finding{word: Met, record: ob.answer(latest), event: &latest, open: true, lasts: civil.LastDay}
+	return finding{word: Met, record: ob.answer(latest), event: &latest, open: true, lasts: civil.LastDay, stays: civil.LastDay}
 }
 
 // unanswered words the standing after an event: closing at once, a gap once the window is over.
 func (ob *obligation) unanswered(ev happening) finding {
 	due := ev.on.Add(ob.item.Cadence.Within)
 	f := finding{word: Closing, due: ob.day(due), from: ev.on, event: &ev}
-	if last := due.Add(ob.item.Grace); ob.on > last {
-		f.word, f.since = ob.gap(), last+1
+	f.stays = due.Add(ob.item.Grace)
+	if ob.on > f.stays {
+		f.word, f.since, f.stays = ob.gap(), f.stays+1, civil.LastDay
 	}
 	return f
 }

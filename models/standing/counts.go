@@ -49,9 +49,9 @@ func (e *Engine) Counts(site string, on civil.Day) (SiteCount, error) {
 // AllCounts counts the standings of every site that has a version, in order of code, over all cores.
 func (e *Engine) AllCounts(on civil.Day) []SiteCount {
 	var out []SiteCount
-	for code, s := range e.sites {
+	for _, s := range e.sites {
 		if len(s.editions) > 0 {
-			c, _ := e.Counts(code, on) // the site is there
+			c, _ := e.Counts(s.code, on) // the site is there
 			out = append(out, c)
 		}
 	}
@@ -77,7 +77,3 @@ type Span struct {
 	Due         *civil.Day
 	Record      string // identifier of the entry that decided, or empty
 }
-
-// Fork gives an engine with the same content. From then on e is only read, by any number of readers
-// at once, while the fork may be written.
-func (e *Engine) Fork() *Engine { return e }

@@ -21,10 +21,7 @@ func compareDeeds(a, b deed) int {
 	if a.on != b.on {
 		return cmp.Compare(a.on, b.on)
 	}
-	if c := compareTimes(a.time, b.time); c != 0 {
-		return c
-	}
-	return cmp.Or(cmp.Compare(a.order, b.order), cmp.Compare(a.Seq, b.Seq))
+	return cmp.Or(cmp.Compare(a.at, b.at), cmp.Compare(a.seq, b.seq)) // what has no time comes first
 }
 
 // compareTimes puts no time before any.
@@ -45,13 +42,13 @@ func compareTimes(a, b *time.Time) int {
 func (v *view) gather(item *program.Item, l *local, ed *edition, on civil.Day) []deed {
 	out := v.deeds[:0]
 	for _, what := range item.Records {
-		list := l.past.records[what]
+		list := v.past(l).records(what)
 		for i := range list {
 			r := &list[i]
-			if !r.KnownAt(v.k) || item.Local && r.site != v.site {
+			if !r.knownAt(v.k) || item.Local && int32(r.site) != v.site.no {
 				continue
 			}
-			day := dayIn(r.day, r.time, ed.loc)
+			day := r.in(ed.loc)
 			if day <= on {
 				out = append(out, deed{day, r})
 			} else if day > on+2 {
@@ -76,7 +73,7 @@ type happening struct {
 func (v *view) happenings(item *program.Item, l *local, ed *edition, on civil.Day) []happening {
 	var out []happening
 	for _, code := range item.Cadence.After {
-		list := l.past.events[code]
+		list := v.past(l).eventsOf(code)
 		for i := range list {
 			ev := &list[i]
 			if day := dayIn(ev.Day, ev.Time, ed.loc); ev.KnownAt(v.k) && day <= on {
@@ -96,8 +93,16 @@ func (d deed) answers(ev happening, guards bool) bool {
 	switch {
 	case d.on != ev.on:
 		return d.on > ev.on
-	case d.time != nil && ev.Time != nil:
-		return d.time.After(*ev.Time)
+	case d.at != untimed && ev.Time != nil:
+		return d.at > ev.Time.UnixMicro()
 	}
 	return !guards
+}
+
+// dayIn is the day in the zone of something that has a day and perhaps a time.
+func dayIn(day civil.Day, at *time.Time, loc *time.Location) civil.Day {
+	if at == nil {
+		return day
+	}
+	return civil.DayOf(*at, loc)
 }

@@ -19,12 +19,14 @@ func (ob *obligation) first() finding {
 // then a gap. Whether it is open stands for every and once with an accepted record.
 func (ob *obligation) byDue(due civil.Day) finding {
 	f := finding{word: Met, due: ob.day(due), open: true, lasts: due.Add(ob.item.Grace)}
+	notice := ob.item.Notice.Before(due)
 	switch {
-	case ob.on < ob.item.Notice.Before(due):
+	case ob.on < notice:
+		f.stays = notice - 1
 	case ob.on <= f.lasts:
-		f.word = Closing
+		f.word, f.stays = Closing, f.lasts
 	default:
-		f.word, f.open, f.since = ob.gap(), false, f.lasts+1
+		f.word, f.open, f.since, f.stays = ob.gap(), false, f.lasts+1, civil.LastDay
 	}
 	return f
 }

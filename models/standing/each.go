@@ -30,11 +30,12 @@ func (ob *obligation) each() finding {
 	s := ob.schedule()
 	p, ok := s.current(ob.on)
 	if !ok {
-		return finding{word: Awaited} // the site never opens, so nothing will ever be asked
+		return finding{word: Awaited, stays: ob.on} // the site never opens, so nothing will ever be asked
 	}
 	d, any := ob.accepted()
 	if any && d.on >= p.First { // (i)
 		f := finding{word: Met, record: d.record, period: p, from: d.on, open: true, lasts: s.next(p.Period).first - 1}
+		f.stays = f.lasts
 		if n, ok := s.asking(p.Next(s.unit), s.from); ok {
 			f.due = ob.day(n.last)
 		}
@@ -42,18 +43,20 @@ func (ob *obligation) each() finding {
 	}
 	missed := func(a asked) bool { return !any || d.on < a.First }
 	if q, ok := s.latest(p, ob.on, ob.item.Grace); ok && missed(q) { // (ii)
-		return finding{word: ob.gap(), due: ob.day(q.last), period: q, since: q.last.Add(ob.item.Grace) + 1}
+		return finding{word: ob.gap(), due: ob.day(q.last), period: q, since: q.last.Add(ob.item.Grace) + 1, stays: civil.LastDay}
 	}
 	if r, ok := s.latest(p, ob.on, civil.Duration{}); ok && missed(r) { // (iii)
-		return finding{word: Closing, due: ob.day(r.last), period: r, from: ob.spanBegan()}
+		return finding{word: Closing, due: ob.day(r.last), period: r, from: ob.spanBegan(), stays: ob.on}
 	}
 	n, ok := s.asking(civil.PeriodOf(s.unit, ob.on), max(s.from, ob.on)) // (iv)
 	if !ok {
-		return finding{word: Awaited}
+		return finding{word: Awaited, stays: civil.LastDay}
 	}
 	f := finding{word: Awaited, due: ob.day(n.last), period: n, from: ob.spanBegan()}
-	if ob.on >= ob.item.Notice.Before(n.last) {
-		f.word = Closing
+	if notice := ob.item.Notice.Before(n.last); ob.on < notice {
+		f.stays = notice - 1
+	} else {
+		f.word, f.stays = Closing, n.last
 	}
 	return f
 }

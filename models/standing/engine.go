@@ -2,106 +2,185 @@ package standing
 
 import (
 	"cmp"
+	"maps"
 	"slices"
 	"sort"
 	"strings"
-	"time"
 
-	"lodebook/models/civil"
 	"lodebook/models/program"
 )
 
-// Engine holds what is on record and judges it. Its Put methods are for one writer at a time and
-// not beside a reader; any number of readers may run together. The caller guards this with a lock.
+// Engine holds what is on record and judges it. Its Put methods and Turn are for one writer at a time
+// and not beside a reader; any number of readers may run together. Who wants to write while others
+// read forks first: see Fork.
 //
 // A line that is put again (the same Seq for the same subject, and Code for a fact) replaces itself:
 // that is how its Ended arrives later. Nothing else of a line may change between two puts.
+//
+// Everything inside belongs to the engine that made it and may be shared by its forks; a write copies
+// what another engine may be reading. Lists only ever grow behind the end that a reader knows.
 type Engine struct {
-	sites  map[string]*site
-	people map[string]*past
+	own    *owner
+	sites  []*site // by number
+	number map[string]int32
+	names  names // numbers of people
+	people pages // what happened to people, by number
 }
+
+// owner marks what an engine may change in place.
+type owner struct{ _ byte }
 
 // site is what is on record at one site. A site is known once it has a version.
 type site struct {
+	own      *owner
+	no       int32
 	code     string
 	editions []*edition // by Seq
-	subjects map[Subject]*local
-	ofKind   map[program.Asks][]*local
+	locals   []*local   // by number
+	number   map[Subject]int32
+	numbers  *owner // whose number is
+	ofKind   map[program.Asks][]int32
 	// appointed lists, for each post, everybody who was ever appointed to it at this site.
-	appointed map[string][]*local
+	appointed map[string][]int32
+	*compiled
 }
 
 // local is what is on record about a subject at one site.
 type local struct {
+	own      *owner
+	no       int32
+	person   int32 // number of the person, -1 for all others
 	subject  Subject
-	past     *past
-	stints   []Stint              // by Seq
-	facts    map[string][]Fact    // by code; then by day and Seq
-	excusals map[string][]Excusal // by item; then by Seq
+	past     *past       // of all others
+	stints   []Stint     // by Seq
+	facts    []facts     // in no order
+	excusals []exception // in no order
+	rows     []int32     // the number, from 1, of its row in each sheet of the board; 0: none
+}
+
+// facts are the dated values of one code, by day and Seq.
+type facts struct {
+	code string
+	list []Fact
+}
+
+// exception is all excusals of one item, by Seq.
+type exception struct {
+	item string
+	list []Excusal
 }
 
 // past is what happened to a subject. A person's is shared by all sites.
 type past struct {
-	records map[string][]record // by kind/code; then by compareRecords
-	events  map[string][]Event  // by code; then by Seq
-	pauses  []Excusal           // by Seq
+	own    *owner
+	homes  []home     // of a person: where they are known
+	deeds  []deedsOf  // in no order
+	events []happened // in no order
+	pauses []Excusal  // by Seq
 }
 
-// record is a Record as it is kept: what the rules read and no more, since there are many.
-type record struct {
-	Line
-	order  int64
-	site   *site
-	time   *time.Time
-	until  *civil.Day
-	day    civil.Day
-	passed bool
+type home struct{ site, local int32 }
+
+// deedsOf are the records of one kind and code, by compareRecords.
+type deedsOf struct {
+	what string
+	list []record
+}
+
+// happened are the events of one code, by Seq.
+type happened struct {
+	code string
+	list []Event
 }
 
 // New is an engine with nothing on record.
-func New() *Engine {
-	return &Engine{sites: map[string]*site{}, people: map[string]*past{}}
+func New() *Engine { return &Engine{own: &owner{}, number: map[string]int32{}} }
+
+// Fork gives an engine with the same content. From then on e is only read, by any number of readers
+// at once, while the fork may be written. A fork that is thrown away leaves no trace, but only one
+// fork of an engine may ever be written on: the last.
+func (e *Engine) Fork() *Engine {
+	f := *e
+	f.own = &owner{}
+	f.sites = slices.Clone(e.sites)
+	f.names = e.names.fork()
+	f.people = e.people.fork()
+	return &f
 }
 
 // PutVersion puts a recorded version of the site's program.
 func (e *Engine) PutVersion(site string, v Version) {
-	s := e.site(site)
+	s := e.owned(site)
 	s.editions = upsert(s.editions, newEdition(site, v), func(a, b **edition) int { return cmp.Compare((*a).Seq, (*b).Seq) })
+	s.compiled = &compiled{}
 }
 
 // PutStint puts a span of presence of a person or a fixture, which makes it known at the site.
 func (e *Engine) PutStint(site string, s Stint) {
 	l := e.local(site, s.Subject)
 	l.stints = upsert(l.stints, s, func(a, b *Stint) int { return cmp.Compare(a.Seq, b.Seq) })
+	e.changed(e.owned(site), l, change{stint: true})
 }
 
 // PutFact puts a dated value that is on record at the site.
 func (e *Engine) PutFact(site string, f Fact) {
 	l := e.local(site, f.Subject)
-	l.facts[f.Code] = upsert(l.facts[f.Code], f, func(a, b *Fact) int {
+	f.ID = "" // nothing tells of a fact by its entry
+	i := slices.IndexFunc(l.facts, func(of facts) bool { return of.code == f.Code })
+	if i < 0 {
+		i = len(l.facts)
+		l.facts = append(l.facts, facts{code: f.Code})
+	}
+	l.facts[i].list = upsert(l.facts[i].list, f, func(a, b *Fact) int {
 		return cmp.Or(cmp.Compare(a.From, b.From), cmp.Compare(a.Seq, b.Seq))
 	})
+	e.changed(e.owned(site), l, change{fact: f.Code})
 }
 
 // PutRecord puts something done. A person's record counts at every site, except for local items; a
-// record of any other subject belongs to the site where it was recorded.
+// record of any other subject belongs to the site where it was recorded. Of two records of one
+// moment the one of the later entry is the later.
 func (e *Engine) PutRecord(r Record) {
-	s, p := e.site(r.Site), e.past(r.Site, r.Subject)
-	kept := record{r.Line, r.Order, s, r.Time, r.Until, r.Day, r.Passed}
-	p.records[r.What] = upsert(p.records[r.What], kept, compareRecords)
+	at := e.siteNumber(r.Site)
+	p, l := e.past(r.Site, r.Subject)
+	i := p.find(r.What)
+	if i < 0 {
+		i = len(p.deeds)
+		p.deeds = append(p.deeds, deedsOf{what: r.What})
+	}
+	kept := newRecord(&r, at)
+	fresh := len(p.deeds[i].list)
+	p.deeds[i].list = upsert(p.deeds[i].list, kept, compareRecords)
+	c := change{what: p.deeds[i].what, record: kept, isLast: false}
+	if n := len(p.deeds[i].list); n > fresh && p.deeds[i].list[n-1] == kept {
+		c.isLast = true
+	}
 	if post, ok := strings.CutPrefix(r.What, appointment); ok && r.Subject.Asks == program.AsksPerson {
-		l := e.local(r.Site, r.Subject)
-		if !slices.Contains(s.appointed[post], l) {
-			s.appointed[post] = append(s.appointed[post], l)
-		}
+		e.appoint(r.Site, post, e.local(r.Site, r.Subject).no)
+	}
+	e.happenedTo(r.Site, p, l, c)
+}
+
+// appoint notes that a person was appointed to a post of the site.
+func (e *Engine) appoint(site, post string, person int32) {
+	s := e.owned(site)
+	if list := s.appointed[post]; !slices.Contains(list, person) {
+		s.appointed = maps.Clone(s.appointed)
+		s.appointed[post] = append(list[:len(list):len(list)], person)
 	}
 }
 
 // PutEvent puts something that happened. Events of persons count at every site whose items name the
 // code, others at their site.
 func (e *Engine) PutEvent(site string, ev Event) {
-	p := e.past(site, ev.Subject)
-	p.events[ev.Code] = upsert(p.events[ev.Code], ev, func(a, b *Event) int { return cmp.Compare(a.Seq, b.Seq) })
+	p, l := e.past(site, ev.Subject)
+	i := slices.IndexFunc(p.events, func(h happened) bool { return h.code == ev.Code })
+	if i < 0 {
+		i = len(p.events)
+		p.events = append(p.events, happened{code: ev.Code})
+	}
+	p.events[i].list = upsert(p.events[i].list, ev, func(a, b *Event) int { return cmp.Compare(a.Seq, b.Seq) })
+	e.happenedTo(site, p, l, change{event: ev.Code})
 }
 
 // PutExcusal puts an excusal, which counts at its site, or a pause (an empty Item); a person's
@@ -109,58 +188,191 @@ func (e *Engine) PutEvent(site string, ev Event) {
 func (e *Engine) PutExcusal(site string, x Excusal) {
 	bySeq := func(a, b *Excusal) int { return cmp.Compare(a.Seq, b.Seq) }
 	if x.Item == "" {
-		p := e.past(site, x.Subject)
+		p, l := e.past(site, x.Subject)
 		p.pauses = upsert(p.pauses, x, bySeq)
+		e.happenedTo(site, p, l, change{pause: true})
 		return
 	}
 	l := e.local(site, x.Subject)
-	l.excusals[x.Item] = upsert(l.excusals[x.Item], x, bySeq)
+	i := slices.IndexFunc(l.excusals, func(of exception) bool { return of.item == x.Item })
+	if i < 0 {
+		i = len(l.excusals)
+		l.excusals = append(l.excusals, exception{item: x.Item})
+	}
+	l.excusals[i].list = upsert(l.excusals[i].list, x, bySeq)
+	e.changed(e.owned(site), l, change{item: x.Item})
 }
 
+// site gives what is on record at a site, or nil.
 func (e *Engine) site(code string) *site {
-	s := e.sites[code]
-	if s == nil {
-		s = &site{code: code, subjects: map[Subject]*local{}, ofKind: map[program.Asks][]*local{}, appointed: map[string][]*local{}}
-		e.sites[code] = s
+	if no, ok := e.number[code]; ok {
+		return e.sites[no]
+	}
+	return nil
+}
+
+// siteNumber numbers a site, a new one with the next number.
+func (e *Engine) siteNumber(code string) int32 {
+	no, ok := e.number[code]
+	if !ok {
+		no = int32(len(e.sites))
+		e.number = maps.Clone(e.number)
+		e.number[code] = no
+		e.sites = append(e.sites, &site{
+			own: e.own, no: no, code: code, number: map[Subject]int32{}, numbers: e.own,
+			ofKind: map[program.Asks][]int32{}, appointed: map[string][]int32{}, compiled: &compiled{},
+		})
+	}
+	return no
+}
+
+// owned gives the site to write on.
+func (e *Engine) owned(code string) *site { return e.ownedSite(e.siteNumber(code)) }
+
+func (e *Engine) ownedSite(no int32) *site {
+	s := e.sites[no]
+	if s.own != e.own {
+		c := *s
+		c.own = e.own
+		c.locals = slices.Clone(s.locals)
+		c.compiled = s.compiled.fork()
+		s = &c
+		e.sites[no] = s
 	}
 	return s
 }
 
-func (e *Engine) local(site string, sub Subject) *local {
-	s := e.site(site)
-	l := s.subjects[sub]
-	if l == nil {
-		l = &local{subject: sub, past: newPast(), facts: map[string][]Fact{}, excusals: map[string][]Excusal{}}
-		if sub.Asks == program.AsksPerson {
-			l.past = e.person(sub.Code)
-		}
-		s.subjects[sub] = l
-		s.ofKind[sub.Asks] = append(s.ofKind[sub.Asks], l)
+// local gives the subject at the site to write on, a new one where it was not known.
+func (e *Engine) local(code string, sub Subject) *local {
+	s := e.owned(code)
+	no, ok := s.number[sub]
+	if !ok {
+		return e.newLocal(s, sub)
+	}
+	return e.ownedLocal(s, no)
+}
+
+func (e *Engine) ownedLocal(s *site, no int32) *local {
+	l := s.locals[no]
+	if l.own != e.own {
+		c := *l
+		c.own = e.own
+		c.facts, c.excusals, c.rows = slices.Clone(l.facts), slices.Clone(l.excusals), slices.Clone(l.rows)
+		l = &c
+		s.locals[no] = l
 	}
 	return l
 }
 
-func (e *Engine) past(site string, sub Subject) *past {
+func (e *Engine) newLocal(s *site, sub Subject) *local {
+	l := &local{own: e.own, no: int32(len(s.locals)), person: -1, subject: sub}
 	if sub.Asks == program.AsksPerson {
-		return e.person(sub.Code)
+		l.person = e.person(sub.Code)
+		p := e.ownedPast(l.person)
+		p.homes = append(p.homes, home{s.no, l.no})
+	} else {
+		l.past = &past{own: e.own}
 	}
-	return e.local(site, sub).past
+	if s.numbers != e.own {
+		s.number, s.numbers = maps.Clone(s.number), e.own
+	}
+	s.number[sub] = l.no
+	s.locals = append(s.locals, l)
+	s.ofKind = maps.Clone(s.ofKind)
+	list := s.ofKind[sub.Asks]
+	s.ofKind[sub.Asks] = append(list, l.no)
+	return l
 }
 
-func (e *Engine) person(code string) *past {
-	p := e.people[code]
-	if p == nil {
-		p = newPast()
-		e.people[code] = p
+// person numbers a person, a new one with the next number.
+func (e *Engine) person(code string) int32 {
+	no, ok := e.names.find(code)
+	if !ok {
+		no = e.people.add(e.own, &past{own: e.own})
+		e.names.put(e.own, code, no)
+	}
+	return no
+}
+
+// past gives what happened to a subject, to write on, and (of all but persons) the subject at its site.
+func (e *Engine) past(site string, sub Subject) (*past, *local) {
+	if sub.Asks == program.AsksPerson {
+		return e.ownedPast(e.person(sub.Code)), nil
+	}
+	l := e.local(site, sub)
+	if l.past.own != e.own {
+		l.past = l.past.copy(e.own)
+	}
+	return l.past, l
+}
+
+func (e *Engine) ownedPast(person int32) *past {
+	p := e.people.at(person)
+	if p.own != e.own {
+		p = p.copy(e.own)
+		e.people.set(e.own, person, p)
 	}
 	return p
 }
 
-func newPast() *past {
-	return &past{records: map[string][]record{}, events: map[string][]Event{}}
+// copy gives a past that may be changed without changing p. The lists inside are shared.
+func (p *past) copy(own *owner) *past {
+	c := *p
+	c.own = own
+	c.homes, c.deeds, c.events = slices.Clone(p.homes), slices.Clone(p.deeds), slices.Clone(p.events)
+	return &c
 }
 
-// upsert puts v in its place in the ordered list, over an equal one if there is one.
+// find gives the place of the records of a kind and code, -1 where there are none.
+func (p *past) find(what string) int {
+	for i := range p.deeds {
+		if p.deeds[i].what == what {
+			return i
+		}
+	}
+	return -1
+}
+
+// records gives the records of a kind and code.
+func (p *past) records(what string) []record {
+	if i := p.find(what); i >= 0 {
+		return p.deeds[i].list
+	}
+	return nil
+}
+
+// eventsOf gives the events of a code.
+func (p *past) eventsOf(code string) []Event {
+	for i := range p.events {
+		if p.events[i].code == code {
+			return p.events[i].list
+		}
+	}
+	return nil
+}
+
+// values gives the dated values of a fact.
+func (l *local) values(code string) []Fact {
+	for i := range l.facts {
+		if l.facts[i].code == code {
+			return l.facts[i].list
+		}
+	}
+	return nil
+}
+
+// excused gives the excusals of an item.
+func (l *local) excused(item string) []Excusal {
+	for i := range l.excusals {
+		if l.excusals[i].item == item {
+			return l.excusals[i].list
+		}
+	}
+	return nil
+}
+
+// upsert puts v in its place in the ordered list, over an equal one if there is one. What others may
+// be reading stays as it is: but behind the end, the list is copied.
 func upsert[T any](list []T, v T, compare func(a, b *T) int) []T {
 	n := len(list)
 	if n == 0 || compare(&list[n-1], &v) < 0 {
@@ -168,22 +380,9 @@ func upsert[T any](list []T, v T, compare func(a, b *T) int) []T {
 	}
 	i, found := sort.Find(n, func(i int) int { return compare(&v, &list[i]) })
 	if found {
+		list = slices.Clone(list)
 		list[i] = v
 		return list
 	}
-	return slices.Insert(list, i, v)
-}
-
-// compareRecords orders records as the design does, with the days of those that have a time
-// counted in UTC: a site's own zone moves them by a day at most.
-func compareRecords(a, b *record) int {
-	return compareDeeds(deed{dayIn(a.day, a.time, time.UTC), a}, deed{dayIn(b.day, b.time, time.UTC), b})
-}
-
-// dayIn is the day in the zone of something that has a day and perhaps a time.
-func dayIn(day civil.Day, at *time.Time, loc *time.Location) civil.Day {
-	if at == nil {
-		return day
-	}
-	return civil.DayOf(*at, loc)
+	return slices.Insert(list[:n:n], i, v)
 }

@@ -68,7 +68,7 @@ func (ob *obligation) fill(s *Standing, f finding) {
 	s.Due = f.due
 	s.InGrace = f.word == Closing && ob.on > *f.due
 	if f.record != nil {
-		s.Record = f.record.ID
+		s.Record = f.record.id.String()
 	}
 	if f.excusal != nil && f.excusal.To != nil {
 		s.ExcusedUntil = ob.day(*f.excusal.To)

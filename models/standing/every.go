@@ -50,8 +50,8 @@ func renew(c *program.Cadence, d deed, old renewal) renewal {
 		r.end = r.sum.MonthEnd()
 	}
 	r.due = r.end
-	if d.until != nil {
-		r.due = min(*d.until, r.end)
+	if d.until != noDay {
+		r.due = min(d.until, r.end)
 	} else if renews && old.due > r.end {
 		return old
 	}

@@ -5,7 +5,7 @@ import "lodebook/models/civil"
 // excuse gathers the known excusals of the item and the subject's pauses.
 func (v *view) excuse(item string, l *local) []*Excusal {
 	var out []*Excusal
-	for _, list := range [][]Excusal{l.excusals[item], l.past.pauses} {
+	for _, list := range [2][]Excusal{l.excused(item), v.past(l).pauses} {
 		for i := range list {
 			if x := &list[i]; x.KnownAt(v.k) {
 				out = append(out, x)

@@ -149,10 +149,10 @@ func (v *view) itemTurns(t *turns, l *local, item *program.Item) {
 		}
 	}
 	for _, what := range item.Records {
-		v.recordTurns(t, l.past.records[what])
+		v.recordTurns(t, v.past(l).records(what))
 	}
 	for _, code := range item.Cadence.After {
-		v.eventTurns(t, l.past.events[code])
+		v.eventTurns(t, v.past(l).eventsOf(code))
 	}
 	for _, x := range v.excuse(item.Code, l) {
 		t.addSpan(&x.From, x.To)

@@ -194,7 +194,7 @@ func (v *view) fieldTurns(t *turns, l *local, field string) {
 		v.postTurns(t, l, "")
 	case field == "holders":
 		for _, person := range v.site.appointed[l.subject.Code] {
-			v.postTurns(t, person, l.subject.Code)
+			v.postTurns(t, v.site.locals[person], l.subject.Code)
 		}
 	case isField(field):
 		v.factTurns(t, l, strings.TrimPrefix(field, factsPrefix))
@@ -204,8 +204,8 @@ func (v *view) fieldTurns(t *turns, l *local, field string) {
 }
 
 func (v *view) allTurns(t *turns, l *local) {
-	for code := range l.facts {
-		v.factTurns(t, l, code)
+	for i := range l.facts {
+		v.factTurns(t, l, l.facts[i].code)
 	}
 	for _, field := range []string{"held", "posts", "holders"} {
 		v.fieldTurns(t, l, field)
@@ -213,8 +213,9 @@ func (v *view) allTurns(t *turns, l *local) {
 }
 
 func (v *view) factTurns(t *turns, l *local, code string) {
-	for i := range l.facts[code] {
-		if f := &l.facts[code][i]; f.KnownAt(v.k) {
+	list := l.values(code)
+	for i := range list {
+		if f := &list[i]; f.KnownAt(v.k) {
 			t.add(f.From)
 		}
 	}
@@ -223,11 +224,13 @@ func (v *view) factTurns(t *turns, l *local, code string) {
 // postTurns adds the days on which the person may have begun or ceased to hold the post, or any
 // post where it is empty.
 func (v *view) postTurns(t *turns, person *local, post string) {
-	for what, records := range person.past.records {
+	deeds := v.past(person).deeds
+	for i := range deeds {
+		what := deeds[i].what
 		if !strings.HasPrefix(what, appointment) || post != "" && what != appointment+post {
 			continue
 		}
-		v.recordTurns(t, records)
+		v.recordTurns(t, deeds[i].list)
 	}
 	v.stintTurns(t, person)
 	v.reignTurns(t) // a version may bring another time zone
@@ -238,13 +241,15 @@ func (v *view) postTurns(t *turns, person *local, post string) {
 func (v *view) recordTurns(t *turns, records []record) {
 	for i := range records {
 		r := &records[i]
-		if !r.KnownAt(v.k) {
+		if !r.knownAt(v.k) {
 			continue
 		}
 		for j := range v.reigns {
-			t.add(dayIn(r.day, r.time, v.reigns[j].loc))
+			t.add(r.in(v.reigns[j].loc))
 		}
-		t.addSpan(nil, r.until)
+		if r.until != noDay {
+			t.add(r.until + 1)
+		}
 	}
 }
 

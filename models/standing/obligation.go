@@ -29,6 +29,9 @@ type finding struct {
 	// goes on record, no version, fact or excusal begins or ends.
 	open  bool
 	lasts civil.Day
+	// stays is a day through which the word stays if, further, no record, event or excusal begins to
+	// count or ends: at the least the day judged.
+	stays civil.Day
 	since civil.Day // of a gap: its first day by the rule
 	from  civil.Day // of met and closing: the day on which the span up to the due day began
 
@@ -110,10 +113,10 @@ func (ob *obligation) judge() (finding, bool) {
 		before = last.on
 	}
 	if x := longest(ob.excusals, ob.on, before); x != nil {
-		return finding{word: Excused, excusal: x, open: !failed && opening(ob.excusals, ob.on), lasts: civil.LastDay}, true
+		return finding{word: Excused, excusal: x, open: !failed && opening(ob.excusals, ob.on), lasts: civil.LastDay, stays: civil.LastDay}, true
 	}
 	if failed {
-		return finding{word: Failed, record: last.record, since: last.on}, true
+		return finding{word: Failed, record: last.record, since: last.on, stays: civil.LastDay}, true
 	}
 	return ob.byCadence(), true
 }

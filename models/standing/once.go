@@ -8,10 +8,10 @@ func (ob *obligation) once() finding {
 	switch {
 	case !any:
 		return ob.first()
-	case d.until == nil:
-		return finding{word: Met, record: d.record, open: true, lasts: civil.LastDay}
+	case d.until == noDay:
+		return finding{word: Met, record: d.record, open: true, lasts: civil.LastDay, stays: civil.LastDay}
 	}
-	f := ob.byDue(*d.until)
+	f := ob.byDue(d.until)
 	f.record, f.from = d.record, d.on
 	return f
 }

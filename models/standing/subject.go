@@ -68,7 +68,8 @@ func (v *view) profile(l *local, on civil.Day, reads []string) program.Subject {
 
 func (v *view) facts(l *local, on civil.Day) map[string]any {
 	all := make(map[string]any, len(l.facts))
-	for code := range l.facts {
+	for i := range l.facts {
+		code := l.facts[i].code
 		if value := v.fact(l, code, on); value != nil && !builtIn(l.subject.Asks, code) {
 			all[code] = value
 		}
@@ -79,7 +80,7 @@ func (v *view) facts(l *local, on civil.Day) map[string]any {
 // fact is the value that holds on the day, nil where there is none: of the latest day, the last
 // recorded.
 func (v *view) fact(l *local, code string, on civil.Day) any {
-	list := l.facts[code]
+	list := l.values(code)
 	for i := len(list) - 1; i >= 0; i-- {
 		if f := &list[i]; f.From <= on && f.KnownAt(v.k) {
 			return f.Value
@@ -96,8 +97,9 @@ func (v *view) text(l *local, code string, on civil.Day) string {
 // posts are those that the person holds on the day, sorted.
 func (v *view) posts(person *local, on civil.Day) []string {
 	var out []string
-	for what := range person.past.records {
-		if post, ok := strings.CutPrefix(what, appointment); ok && v.holdsPost(person, post, on) {
+	deeds := v.past(person).deeds
+	for i := range deeds {
+		if post, ok := strings.CutPrefix(deeds[i].what, appointment); ok && v.holdsPost(person, post, on) {
 			out = append(out, post)
 		}
 	}
@@ -108,7 +110,8 @@ func (v *view) posts(person *local, on civil.Day) []string {
 // holders are the people who hold the post on the day, sorted.
 func (v *view) holders(post string, on civil.Day) []string {
 	var out []string
-	for _, person := range v.site.appointed[post] {
+	for _, no := range v.site.appointed[post] {
+		person := v.site.locals[no]
 		if v.holdsPost(person, post, on) {
 			out = append(out, person.subject.Code)
 		}
@@ -125,7 +128,7 @@ func (v *view) holdsPost(person *local, post string, on civil.Day) bool {
 		return false
 	}
 	last := v.appointment(person, post, on)
-	return last != nil && last.passed && (last.until == nil || on <= *last.until)
+	return last != nil && last.passed && (last.until == noDay || on <= last.until)
 }
 
 func (v *view) appointment(person *local, post string, on civil.Day) *record {
@@ -134,13 +137,13 @@ func (v *view) appointment(person *local, post string, on civil.Day) *record {
 		return nil
 	}
 	var last deed
-	list := person.past.records[appointment+post]
+	list := v.past(person).records(appointment + post)
 	for i := range list {
 		r := &list[i]
-		if r.site != v.site || !r.KnownAt(v.k) {
+		if int32(r.site) != v.site.no || !r.knownAt(v.k) {
 			continue
 		}
-		d := deed{dayIn(r.day, r.time, ed.loc), r}
+		d := deed{r.in(ed.loc), r}
 		if d.on <= on && (last.record == nil || compareDeeds(last, d) < 0) {
 			last = d
 		}

@@ -11,6 +11,7 @@ import (
 
 // view is one site as known at one moment. It serves one call and is not shared.
 type view struct {
+	e       *Engine
 	site    *site
 	k       int64
 	reigns  []reign
@@ -22,21 +23,26 @@ type view struct {
 
 	obligation obligation  // scratch, see verdict
 	deeds      []deed      // scratch, see gather
+	turnDays   turns       // scratch, see segments
 	days       []civil.Day // what the days of standings point into
 }
 
 func (e *Engine) view(code string, k int64) (*view, error) {
-	s := e.sites[code]
+	s := e.site(code)
 	if s == nil || len(s.editions) == 0 {
 		return nil, fmt.Errorf("site %q is not in the book", code)
 	}
-	v := newView(s, k, s.reigns(k))
-	v.beneath = newView(s, k, v.reigns)
-	return v, nil
+	return e.viewOf(s, k), nil
 }
 
-func newView(s *site, k int64, reigns []reign) *view {
-	return &view{site: s, k: k, reigns: reigns, answers: map[*program.Selector]*answers{}, ladders: map[*local]ladder{}}
+func (e *Engine) viewOf(s *site, k int64) *view {
+	v := e.newView(s, k, s.reigns(k))
+	v.beneath = e.newView(s, k, v.reigns)
+	return v
+}
+
+func (e *Engine) newView(s *site, k int64, reigns []reign) *view {
+	return &view{e: e, site: s, k: k, reigns: reigns, answers: map[*program.Selector]*answers{}, ladders: map[*local]ladder{}}
 }
 
 // day gives a day that stays put, for a standing to point to.
@@ -72,8 +78,8 @@ func (e *Engine) Subjects(site string, asks program.Asks, on civil.Day, k int64)
 func (v *view) present(asks program.Asks, on civil.Day) []presence {
 	var out []presence
 	if hasStints(asks) {
-		for _, l := range v.site.ofKind[asks] {
-			if p, ok := v.presence(l, on); ok {
+		for _, no := range v.site.ofKind[asks] {
+			if p, ok := v.presence(v.site.locals[no], on); ok {
 				out = append(out, p)
 			}
 		}
@@ -98,10 +104,18 @@ func (v *view) only(sub Subject, on civil.Day) []presence {
 
 // local is what the site has on record about a subject: nothing at all where it has no line.
 func (v *view) local(sub Subject) *local {
-	if l := v.site.subjects[sub]; l != nil {
-		return l
+	if no, ok := v.site.number[sub]; ok {
+		return v.site.locals[no]
 	}
-	return &local{subject: sub, past: &past{}}
+	return &local{no: -1, person: -1, subject: sub, past: &past{}}
+}
+
+// past is what happened to the subject.
+func (v *view) past(l *local) *past {
+	if l.person >= 0 {
+		return v.e.people.at(l.person)
+	}
+	return l.past
 }
 
 // presence tells whether the subject exists on the day.

@@ -121,8 +121,8 @@ func (ob *obligation) whyEvery(r *reasons, f finding) {
 		sum += fmt.Sprintf(", moved to the month's end: %v", n.end)
 	}
 	r.say("%s.", sum)
-	if n.until != nil {
-		r.say("The record itself is good until %v; the earlier of the two days counts, which is %v.", *n.until, n.due)
+	if n.until != noDay {
+		r.say("The record itself is good until %v; the earlier of the two days counts, which is %v.", n.until, n.due)
 	}
 	if last := ob.deeds[len(ob.deeds)-1]; last.record != n.record {
 		r.say("The later record, %s, would not move that day on, so it stays.", ob.named(last.record))
@@ -248,13 +248,13 @@ func (ob *obligation) whyAfter(r *reasons, f finding) {
 
 // named says which record: its kind, day, time and entry.
 func (ob *obligation) named(r *record) string {
-	return fmt.Sprintf("%s of %s%s", ob.kind(r), ob.moment(r.day, r.time), entry(r.ID))
+	return fmt.Sprintf("%s of %s%s", ob.kind(r), ob.moment(r.day, r.time()), entry(r.id.String()))
 }
 
 // kind is the kind and code under which the record is on file.
 func (ob *obligation) kind(r *record) string {
 	for _, what := range ob.item.Records {
-		list := ob.subject.past.records[what]
+		list := ob.past(ob.subject.local).records(what)
 		for i := range list {
 			if &list[i] == r {
 				return what

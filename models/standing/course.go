@@ -1,0 +1,247 @@
+package standing
+
+import (
+	"slices"
+
+	"lodebook/models/civil"
+	"lodebook/models/program"
+)
+
+// A course is an obligation's standings over all days: points in order of day, each with the word
+// that begins on its day. Before the first point, and from a point of none on, there is no obligation.
+type point int32
+
+// Words by number: the places in Words, and one for no obligation.
+const (
+	none      = len(Words)
+	wordBits  = 4
+	wordMask  = 1<<wordBits - 1
+	dayBefore = civil.FirstDay - 1
+)
+
+func pointOf(d civil.Day, word uint8) point { return point(d)<<wordBits | point(word) }
+
+func (p point) day() civil.Day { return civil.Day(p >> wordBits) }
+func (p point) word() uint8    { return uint8(p & wordMask) }
+
+// codeOf numbers a word by its place in Words.
+func codeOf(w Word) uint8 {
+	switch w {
+	case Met:
+		return 0
+	case Closing:
+		return 1
+	case Lapsed:
+		return 2
+	case Missing:
+		return 3
+	case Failed:
+		return 4
+	case Excused:
+		return 5
+	case Awaited:
+		return 6
+	}
+	return 7
+}
+
+// wordOn is the number of the word on the day.
+func wordOn(course []point, on civil.Day) uint8 {
+	key := pointOf(on, wordMask)
+	for i := len(course) - 1; i >= 0; i-- {
+		if course[i] <= key {
+			return course[i].word()
+		}
+	}
+	return uint8(none)
+}
+
+// nextTurn is the day after the given one on which the word changes, noDay where none does.
+func nextTurn(course []point, after civil.Day) civil.Day {
+	key := pointOf(after, wordMask)
+	next := noDay
+	for i := len(course) - 1; i >= 0 && course[i] > key; i-- {
+		next = course[i].day()
+	}
+	return next
+}
+
+// segment is a run of days, both ends included, on which an obligation is judged by one version and
+// from one start; a faulty one cannot be judged.
+type segment struct {
+	first, last civil.Day
+	start       civil.Day
+	since       civil.Day // of the presence
+	reign       int16
+	faulty      bool
+}
+
+// segments lists, in order, the runs of days on which the item of that code is asked of the subject,
+// or cannot be told to be.
+func (v *view) segments(code string, l *local, to []segment) []segment {
+	v.turnDays.days = v.turnDays.days[:0]
+	v.turnDays.after, v.turnDays.upTo = dayBefore, civil.LastDay
+	if !v.askTurns(&v.turnDays, code, l) {
+		return to
+	}
+	days := v.turnDays.days
+	slices.Sort(days)
+	days = slices.Compact(days)
+	for i, d := range days {
+		s, ok := v.segment(code, l, d)
+		if !ok {
+			continue
+		}
+		s.last = civil.LastDay
+		if i+1 < len(days) {
+			s.last = days[i+1] - 1
+		}
+		to = append(to, s)
+	}
+	v.turnDays.days = days // looking back for a start takes a list of its own
+	return to
+}
+
+// askTurns adds every day on which it may change whether the item is asked of the subject, from which
+// start and by which version. It is false where no version asks it of such a subject.
+func (v *view) askTurns(t *turns, code string, l *local) bool {
+	asked := false
+	var last *program.Item
+	for i := range v.reigns {
+		item := v.reigns[i].byCode[code]
+		if item == nil || item.Asks != l.subject.Asks || item == last {
+			continue
+		}
+		asked, last = true, item
+		if item.Since != nil {
+			t.add(*item.Since)
+		}
+		for _, sel := range [2]*program.Selector{item.When, item.Cadence.Holds} {
+			if sel == nil {
+				continue
+			}
+			for _, field := range sel.Reads() {
+				v.fieldTurns(t, l, field)
+			}
+		}
+	}
+	if asked {
+		v.reignTurns(t)
+		v.stintTurns(t, l)
+	}
+	return asked
+}
+
+// segment is the run of days that begins on a turn; false where the item is not asked.
+func (v *view) segment(code string, l *local, d civil.Day) (segment, bool) {
+	r := v.reign(d)
+	if r < 0 {
+		return segment{}, false
+	}
+	item := v.reigns[r].byCode[code]
+	if item == nil || item.Asks != l.subject.Asks || v.inForce(item, d) > d {
+		return segment{}, false
+	}
+	p, here := v.presence(l, d)
+	if !here {
+		return segment{}, false
+	}
+	s := segment{first: d, reign: int16(r), since: p.since}
+	yes, err := v.matches(item, l, d)
+	if err != nil {
+		s.faulty = true
+		return s, true
+	}
+	if !yes {
+		return segment{}, false
+	}
+	s.start = v.began(item, l, max(p.since, v.inForce(item, d)), d)
+	return s, true
+}
+
+// course appends the points of the obligation to a list.
+func (v *view) course(code string, l *local, segments []segment, to []point) []point {
+	at := len(to)
+	for i := range segments {
+		s := &segments[i]
+		if i > 0 && segments[i-1].last+1 < s.first {
+			to = turnTo(to, at, segments[i-1].last+1, uint8(none))
+		}
+		to = v.stretch(code, l, s, s.first, at, to)
+	}
+	if n := len(segments); n > 0 && segments[n-1].last < civil.LastDay {
+		to = turnTo(to, at, segments[n-1].last+1, uint8(none))
+	}
+	return to
+}
+
+// turnTo appends a point unless the word goes on. The course begins at the place at.
+func turnTo(to []point, at int, d civil.Day, word uint8) []point {
+	if n := len(to); n > at && to[n-1].word() == word || n == at && word == uint8(none) {
+		return to
+	}
+	return append(to, pointOf(d, word))
+}
+
+// stretch appends the points of a segment from a day of it on.
+func (v *view) stretch(code string, l *local, s *segment, from civil.Day, at int, to []point) []point {
+	if s.faulty {
+		return turnTo(to, at, from, codeOf(DataFault))
+	}
+	ed := v.reigns[s.reign].edition
+	ob := &v.obligation
+	*ob = obligation{view: v, edition: ed, item: ed.byCode[code], subject: presence{l, s.since}, start: s.start, started: true}
+	deeds := v.gather(ob.item, l, ed, civil.LastDay)
+	return v.walk(ob, deeds, s, from, at, to)
+}
+
+// walk judges the obligation on each day of the segment, from one on, on which its word may change.
+// The deeds are all that bear on it, or at least those that decide from that day on.
+func (v *view) walk(ob *obligation, deeds []deed, s *segment, from civil.Day, at int, to []point) []point {
+	ob.excusals = v.excuse(ob.item.Code, ob.subject.local)
+	var events []happening
+	if ob.item.Cadence.Rule == program.After {
+		events = v.happenings(ob.item, ob.subject.local, ob.edition, civil.LastDay)
+	}
+	n, m := 0, 0
+	for d := from; d <= s.last; {
+		for n < len(deeds) && deeds[n].on <= d {
+			n++
+		}
+		for m < len(events) && events[m].on <= d {
+			m++
+		}
+		ob.on, ob.deeds, ob.events = d, deeds[:n], events[:m]
+		v.days = v.days[:0] // nothing keeps the due days of a course
+		f, asked := ob.judge()
+		next := civil.LastDay
+		if asked {
+			to = turnTo(to, at, d, codeOf(f.word))
+			next = f.stays
+		} else {
+			to = turnTo(to, at, d, uint8(none))
+		}
+		next = max(next, d) + 1
+		if n < len(deeds) {
+			next = min(next, deeds[n].on)
+		}
+		if m < len(events) {
+			next = min(next, events[m].on)
+		}
+		d = nextExcusal(ob.excusals, d, next)
+	}
+	return to
+}
+
+// nextExcusal is the first day after d, and before next, on which an excusal begins or has ended.
+func nextExcusal(all []*Excusal, d, next civil.Day) civil.Day {
+	for _, x := range all {
+		if x.From > d {
+			next = min(next, x.From)
+		}
+		if x.To != nil && *x.To >= d {
+			next = min(next, *x.To+1)
+		}
+	}
+	return next
+}
