@@ -1,7 +1,13 @@
 package standing
 
 import (
+	"cmp"
+	"fmt"
+	"math/bits"
+	"runtime"
 	"slices"
+	"sync"
+	"sync/atomic"
 
 	"lodebook/models/civil"
 )
@@ -10,10 +16,10 @@ import (
 var Words = [...]Word{Met, Closing, Lapsed, Missing, Failed, Excused, Awaited, DataFault}
 
 // Tally counts obligations by standing, in the order of Words.
-type Tally [len(Words)]int
+type Tally [len(Words)]int32
 
 // Of is the count of a standing.
-func (t Tally) Of(w Word) int { return t[slices.Index(Words[:], w)] }
+func (t Tally) Of(w Word) int { return int(t[codeOf(w)]) }
 
 // Gaps is how many are lapsed, missing or failed.
 func (t Tally) Gaps() int { return t.Of(Lapsed) + t.Of(Missing) + t.Of(Failed) }
@@ -31,49 +37,233 @@ type SiteCount struct {
 	Items []ItemCount
 }
 
-// Counts counts the standings of a site on a day by all that is recorded.
+// Counts counts the standings of a site on a day by all that is recorded. On the present day of the
+// site (see Turn) they are at hand; on any other they are looked up in the courses.
 func (e *Engine) Counts(site string, on civil.Day) (SiteCount, error) {
-	rows, err := e.Evaluate(site, Query{On: on, KnownAt: Always})
-	c := SiteCount{Site: site}
-	for _, r := range rows {
-		n := len(c.Items)
-		if n == 0 || c.Items[n-1].Item != r.Item {
-			c.Items = append(c.Items, ItemCount{Item: r.Item})
-			n++
-		}
-		c.Items[n-1].Tally[slices.Index(Words[:], r.Word)]++
+	s := e.site(site)
+	if s == nil || len(s.editions) == 0 {
+		return SiteCount{}, fmt.Errorf("site %q is not in the book", site)
 	}
-	return c, err
+	return e.board(s).counts(site, on), nil
 }
 
 // AllCounts counts the standings of every site that has a version, in order of code, over all cores.
 func (e *Engine) AllCounts(on civil.Day) []SiteCount {
-	var out []SiteCount
+	return overSites(e, func(s *site) SiteCount { return e.board(s).counts(s.code, on) })
+}
+
+// Build makes ready what counts and histories of all sites are taken from, over all cores. Without it, each
+// site's is made when it is first asked for.
+func (e *Engine) Build() {
+	overSites(e, func(s *site) *board { return e.board(s) })
+}
+
+// overSites calls fn for every site that has a version, over all cores, and gives what it gave in
+// order of the sites' codes.
+func overSites[T any](e *Engine, fn func(*site) T) []T {
+	var sites []*site
 	for _, s := range e.sites {
 		if len(s.editions) > 0 {
-			c, _ := e.Counts(s.code, on) // the site is there
-			out = append(out, c)
+			sites = append(sites, s)
 		}
 	}
-	slices.SortFunc(out, func(a, b SiteCount) int { return compareStrings(a.Site, b.Site) })
+	slices.SortFunc(sites, func(a, b *site) int { return cmp.Compare(a.code, b.code) })
+	out := make([]T, len(sites))
+	var next atomic.Int64
+	var all sync.WaitGroup
+	for range min(runtime.GOMAXPROCS(0), len(sites)) {
+		all.Go(func() {
+			for i := next.Add(1) - 1; int(i) < len(sites); i = next.Add(1) - 1 {
+				out[i] = fn(sites[i])
+			}
+		})
+	}
+	all.Wait()
 	return out
 }
 
-func compareStrings(a, b string) int {
-	switch {
-	case a < b:
-		return -1
-	case a > b:
-		return 1
+func (b *board) counts(site string, on civil.Day) SiteCount {
+	c := SiteCount{Site: site, Items: make([]ItemCount, 0, len(b.tracks))}
+	for _, t := range b.tracks {
+		tally := t.tally
+		if on != b.present {
+			tally = t.asOf(on)
+		}
+		n := ItemCount{Item: t.item, Tally: Tally(tally[:len(Words)])}
+		if n.Tally != (Tally{}) {
+			c.Items = append(c.Items, n)
+		}
 	}
-	return 0
+	return c
 }
 
-// Span is a run of days on which an obligation has one standing and one due day. First and Last are
-// included; Last is civil.LastDay where nothing known ends it.
-type Span struct {
-	First, Last civil.Day
-	Word        Word
-	Due         *civil.Day
-	Record      string // identifier of the entry that decided, or empty
+// asOf counts the words of a day.
+func (t *track) asOf(on civil.Day) [none + 1]int32 {
+	var n [none + 1]int32
+	key := pointOf(on, wordMask)
+	points := t.points
+	for i := range t.rows {
+		r := &t.rows[i]
+		course := points[r.at : int(r.at)+r.length()]
+		if len(course) > 8 {
+			n[wordIn(course, key)]++
+			continue
+		}
+		word := uint8(none)
+		for j := len(course) - 1; j >= 0; j-- {
+			if course[j] <= key {
+				word = course[j].word()
+				break
+			}
+		}
+		n[word]++
+	}
+	return n
+}
+
+// wordIn is the number of the word of the last point that is not above the key.
+func wordIn(course []point, key point) uint8 {
+	lo, hi := 0, len(course)
+	for lo < hi {
+		if mid := int(uint(lo+hi) >> 1); course[mid] <= key {
+			lo = mid + 1
+		} else {
+			hi = mid
+		}
+	}
+	if lo == 0 {
+		return uint8(none)
+	}
+	return course[lo-1].word()
+}
+
+// ItemCourse is how the counts of an item went over a period: First counts its first day; Days are
+// those days after it, in order, on which a count changed, and Tallies the counts from each of them on.
+type ItemCourse struct {
+	Item    string
+	First   Tally
+	Days    []civil.Day
+	Tallies []Tally
+}
+
+// On is the counts of a day of the period.
+func (c *ItemCourse) On(d civil.Day) Tally {
+	i, found := slices.BinarySearch(c.Days, d)
+	switch {
+	case found:
+		return c.Tallies[i]
+	case i == 0:
+		return c.First
+	}
+	return c.Tallies[i-1]
+}
+
+// SiteCourse is how the counts of a site went from one day to another, both included, by item in order
+// of code.
+type SiteCourse struct {
+	Site     string
+	From, To civil.Day
+	Items    []ItemCourse
+}
+
+// CountsOver counts the standings of a site on every day of a period by one sweep over the days on which a
+// standing turns, by all that is recorded.
+func (e *Engine) CountsOver(site string, from, to civil.Day) (SiteCourse, error) {
+	s := e.site(site)
+	if s == nil || len(s.editions) == 0 {
+		return SiteCourse{}, fmt.Errorf("site %q is not in the book", site)
+	}
+	if to < from {
+		return SiteCourse{}, fmt.Errorf("the period ends on %v, before it begins on %v", to, from)
+	}
+	return newSweep(from, to).site(s.code, e.board(s)), nil
+}
+
+// AllCountsOver is CountsOver of every site that has a version, in order of code, over all cores.
+func (e *Engine) AllCountsOver(from, to civil.Day) []SiteCourse {
+	if to < from {
+		return nil
+	}
+	var sweeps sync.Pool
+	return overSites(e, func(s *site) SiteCourse {
+		w, ok := sweeps.Get().(*sweep)
+		if !ok {
+			w = newSweep(from, to)
+		}
+		defer sweeps.Put(w)
+		return w.site(s.code, e.board(s))
+	})
+}
+
+// sweep adds up, for each day of a period, by how much the count of each word changes.
+type sweep struct {
+	from, to civil.Day
+	deltas   [][none + 1]int32
+	turned   []uint64 // a bit for each day on which something changes
+}
+
+func newSweep(from, to civil.Day) *sweep {
+	n := int(to-from) + 1
+	return &sweep{from: from, to: to, deltas: make([][none + 1]int32, n), turned: make([]uint64, (n+63)/64)}
+}
+
+func (w *sweep) site(code string, b *board) SiteCourse {
+	c := SiteCourse{Site: code, From: w.from, To: w.to, Items: make([]ItemCourse, len(b.tracks))}
+	for i, t := range b.tracks {
+		c.Items[i] = w.track(t)
+	}
+	return c
+}
+
+func (w *sweep) track(t *track) ItemCourse {
+	var now [none + 1]int32
+	begin, end := pointOf(w.from, wordMask), pointOf(w.to, wordMask)
+	for i := range t.rows {
+		course := t.course(int32(i))
+		word := uint8(none)
+		for _, p := range course {
+			if p > end {
+				break
+			}
+			if p > begin {
+				d := p.day() - w.from
+				w.deltas[d][word]--
+				w.deltas[d][p.word()]++
+				w.turned[d/64] |= 1 << (d % 64)
+			} else {
+				now[word]--
+				now[p.word()]++
+			}
+			word = p.word()
+		}
+		now[none]++
+	}
+	return w.collect(t.item, now)
+}
+
+// collect adds the changes up, and leaves none behind.
+func (w *sweep) collect(item string, now [none + 1]int32) ItemCourse {
+	c := ItemCourse{Item: item, First: Tally(now[:len(Words)])}
+	n := 0
+	for _, some := range w.turned {
+		n += bits.OnesCount64(some)
+	}
+	if n == 0 {
+		return c
+	}
+	c.Days, c.Tallies = make([]civil.Day, 0, n), make([]Tally, 0, n)
+	for i, some := range w.turned {
+		for ; some != 0; some &= some - 1 {
+			d := i*64 + bits.TrailingZeros64(some)
+			delta := &w.deltas[d]
+			for word := range now {
+				now[word] += delta[word]
+			}
+			*delta = [none + 1]int32{}
+			c.Days = append(c.Days, w.from+civil.Day(d))
+			c.Tallies = append(c.Tallies, Tally(now[:len(Words)]))
+		}
+		w.turned[i] = 0
+	}
+	return c
 }

@@ -71,7 +71,6 @@ func nextTurn(course []point, after civil.Day) civil.Day {
 type segment struct {
 	first, last civil.Day
 	start       civil.Day
-	since       civil.Day // of the presence
 	reign       int16
 	faulty      bool
 }
@@ -146,7 +145,7 @@ func (v *view) segment(code string, l *local, d civil.Day) (segment, bool) {
 	if !here {
 		return segment{}, false
 	}
-	s := segment{first: d, reign: int16(r), since: p.since}
+	s := segment{first: d, reign: int16(r)}
 	yes, err := v.matches(item, l, d)
 	if err != nil {
 		s.faulty = true
@@ -190,7 +189,7 @@ func (v *view) stretch(code string, l *local, s *segment, from civil.Day, at int
 	}
 	ed := v.reigns[s.reign].edition
 	ob := &v.obligation
-	*ob = obligation{view: v, edition: ed, item: ed.byCode[code], subject: presence{l, s.since}, start: s.start, started: true}
+	*ob = obligation{view: v, edition: ed, item: ed.byCode[code], subject: presence{local: l}, start: s.start, started: true}
 	deeds := v.gather(ob.item, l, ed, civil.LastDay)
 	return v.walk(ob, deeds, s, from, at, to)
 }

@@ -23,8 +23,9 @@ type Engine struct {
 	own    *owner
 	sites  []*site // by number
 	number map[string]int32
-	names  names // numbers of people
-	people pages // what happened to people, by number
+	names  names           // numbers of people
+	people pages           // what happened to people, by number
+	views  map[int32]*view // the writer's, by site
 }
 
 // owner marks what an engine may change in place.
@@ -55,7 +56,6 @@ type local struct {
 	stints   []Stint     // by Seq
 	facts    []facts     // in no order
 	excusals []exception // in no order
-	rows     []int32     // the number, from 1, of its row in each sheet of the board; 0: none
 }
 
 // facts are the dated values of one code, by day and Seq.
@@ -102,6 +102,7 @@ func New() *Engine { return &Engine{own: &owner{}, number: map[string]int32{}} }
 func (e *Engine) Fork() *Engine {
 	f := *e
 	f.own = &owner{}
+	f.views = nil
 	f.sites = slices.Clone(e.sites)
 	f.names = e.names.fork()
 	f.people = e.people.fork()
@@ -111,8 +112,13 @@ func (e *Engine) Fork() *Engine {
 // PutVersion puts a recorded version of the site's program.
 func (e *Engine) PutVersion(site string, v Version) {
 	s := e.owned(site)
-	s.editions = upsert(s.editions, newEdition(site, v), func(a, b **edition) int { return cmp.Compare((*a).Seq, (*b).Seq) })
+	ed := newEdition(site, v)
+	s.editions = upsert(s.editions, ed, func(a, b **edition) int { return cmp.Compare((*a).Seq, (*b).Seq) })
 	s.compiled = &compiled{}
+	delete(e.views, s.no)
+	for sub := range ed.declared {
+		e.local(site, sub)
+	}
 }
 
 // PutStint puts a span of presence of a person or a fixture, which makes it known at the site.
@@ -151,10 +157,8 @@ func (e *Engine) PutRecord(r Record) {
 	kept := newRecord(&r, at)
 	fresh := len(p.deeds[i].list)
 	p.deeds[i].list = upsert(p.deeds[i].list, kept, compareRecords)
-	c := change{what: p.deeds[i].what, record: kept, isLast: false}
-	if n := len(p.deeds[i].list); n > fresh && p.deeds[i].list[n-1] == kept {
-		c.isLast = true
-	}
+	list := p.deeds[i].list
+	c := change{what: p.deeds[i].what, record: &kept, behind: len(list) > fresh && list[len(list)-1] == kept}
 	if post, ok := strings.CutPrefix(r.What, appointment); ok && r.Subject.Asks == program.AsksPerson {
 		e.appoint(r.Site, post, e.local(r.Site, r.Subject).no)
 	}
@@ -257,7 +261,7 @@ func (e *Engine) ownedLocal(s *site, no int32) *local {
 	if l.own != e.own {
 		c := *l
 		c.own = e.own
-		c.facts, c.excusals, c.rows = slices.Clone(l.facts), slices.Clone(l.excusals), slices.Clone(l.rows)
+		c.facts, c.excusals = slices.Clone(l.facts), slices.Clone(l.excusals)
 		l = &c
 		s.locals[no] = l
 	}

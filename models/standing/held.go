@@ -36,7 +36,22 @@ func (v *view) heldLevel(person *local, on civil.Day) string {
 	if v.beneath == nil || person.subject.Asks != program.AsksPerson {
 		return ""
 	}
+	if known, ok := v.ladders[person.no]; ok && known.upTo >= on {
+		return known.on(on)
+	}
 	level, _ := v.beneath.deriveHeld(person, on)
+	return level
+}
+
+// on is the level held on a day up to which the ladder is known.
+func (l *ladder) on(d civil.Day) string {
+	level := ""
+	for _, h := range l.holdings {
+		if h.from > d {
+			break
+		}
+		level = h.level
+	}
 	return level
 }
 
@@ -94,7 +109,7 @@ func (v *view) heldTurns(t *turns, person *local) {
 
 // ladder is the person's held level over the days from the first version up to the day.
 func (v *view) ladder(person *local, upTo civil.Day) []holding {
-	if known, ok := v.ladders[person]; ok && known.upTo >= upTo {
+	if known, ok := v.ladders[person.no]; ok && known.upTo >= upTo {
 		return known.holdings
 	}
 	var out []holding
@@ -112,7 +127,7 @@ func (v *view) ladder(person *local, upTo civil.Day) []holding {
 			d = min(d, outer[i])
 		}
 	}
-	v.ladders[person] = ladder{upTo, out}
+	v.ladders[person.no] = ladder{upTo, out}
 	return out
 }
 

@@ -370,7 +370,16 @@ func (w *world) endSome() {
 // its own.
 func (w *world) puts() *standing.Engine {
 	e := standing.New()
-	var all []func(ended bool)
+	for _, put := range w.steps() {
+		put(e)
+	}
+	return e
+}
+
+// steps are the puts of puts.
+func (w *world) steps() []func(*standing.Engine) {
+	type line func(e *standing.Engine, ended bool)
+	var all []line
 	keep := func(l standing.Line, ended bool) standing.Line {
 		if !ended {
 			l.Ended = 0
@@ -378,34 +387,47 @@ func (w *world) puts() *standing.Engine {
 		return l
 	}
 	for _, v := range w.n.versions {
-		all = append(all, func(ended bool) { x := v; x.Line = keep(x.Line, ended); e.PutVersion("S", x) })
+		all = append(all, func(e *standing.Engine, ended bool) { x := v; x.Line = keep(x.Line, ended); e.PutVersion("S", x) })
 	}
 	for _, s := range w.n.stints {
-		all = append(all, func(ended bool) { x := s.line; x.Line = keep(x.Line, ended); e.PutStint(s.site, x) })
+		all = append(all, func(e *standing.Engine, ended bool) {
+			x := s.line
+			x.Line = keep(x.Line, ended)
+			e.PutStint(s.site, x)
+		})
 	}
 	for _, f := range w.n.facts {
-		all = append(all, func(ended bool) { x := f.line; x.Line = keep(x.Line, ended); e.PutFact(f.site, x) })
+		all = append(all, func(e *standing.Engine, ended bool) { x := f.line; x.Line = keep(x.Line, ended); e.PutFact(f.site, x) })
 	}
 	for _, r := range w.n.records {
-		all = append(all, func(ended bool) { x := r; x.Line = keep(x.Line, ended); e.PutRecord(x) })
+		all = append(all, func(e *standing.Engine, ended bool) { x := r; x.Line = keep(x.Line, ended); e.PutRecord(x) })
 	}
 	for _, ev := range w.n.events {
-		all = append(all, func(ended bool) { x := ev.line; x.Line = keep(x.Line, ended); e.PutEvent(ev.site, x) })
+		all = append(all, func(e *standing.Engine, ended bool) {
+			x := ev.line
+			x.Line = keep(x.Line, ended)
+			e.PutEvent(ev.site, x)
+		})
 	}
 	for _, x := range w.n.excusals {
-		all = append(all, func(ended bool) { y := x.line; y.Line = keep(y.Line, ended); e.PutExcusal(x.site, y) })
+		all = append(all, func(e *standing.Engine, ended bool) {
+			y := x.line
+			y.Line = keep(y.Line, ended)
+			e.PutExcusal(x.site, y)
+		})
 	}
 	for i := range all {
 		j := i + w.pick(len(all)-i)
 		all[i], all[j] = all[j], all[i]
 	}
+	var steps []func(*standing.Engine)
 	for _, put := range all {
 		if w.chance(50) {
-			put(false)
+			steps = append(steps, func(e *standing.Engine) { put(e, false) })
 		}
-		put(true)
+		steps = append(steps, func(e *standing.Engine) { put(e, true) })
 	}
-	return e
+	return steps
 }
 
 type fataler interface {

@@ -16,7 +16,8 @@ type view struct {
 	k       int64
 	reigns  []reign
 	answers map[*program.Selector]*answers
-	ladders map[*local]ladder
+	ladders map[int32]ladder // by number of the subject
+	board   *board           // of a writer: the one that it keeps
 	// beneath is the same view without held levels: those are derived in it, so that a held level
 	// can never hang on itself. In the view beneath it is nil.
 	beneath *view
@@ -42,7 +43,7 @@ func (e *Engine) viewOf(s *site, k int64) *view {
 }
 
 func (e *Engine) newView(s *site, k int64, reigns []reign) *view {
-	return &view{e: e, site: s, k: k, reigns: reigns, answers: map[*program.Selector]*answers{}, ladders: map[*local]ladder{}}
+	return &view{e: e, site: s, k: k, reigns: reigns, answers: map[*program.Selector]*answers{}, ladders: map[int32]ladder{}}
 }
 
 // day gives a day that stays put, for a standing to point to.

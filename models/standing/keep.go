@@ -1,0 +1,276 @@
+package standing
+
+import (
+	"maps"
+	"slices"
+	"strings"
+
+	"lodebook/models/civil"
+	"lodebook/models/program"
+)
+
+// happenedTo brings the boards up to date with what happened to a subject: a person's at every site
+// where they are known, any other's at its own.
+func (e *Engine) happenedTo(site string, p *past, l *local, c change) {
+	if l != nil {
+		e.changed(e.owned(site), l, c)
+		return
+	}
+	for _, h := range p.homes {
+		if s := e.sites[h.site]; s.made.Load() != nil {
+			s = e.ownedSite(h.site)
+			e.changed(s, s.locals[h.local], c)
+		}
+	}
+}
+
+// changed brings the site's board, if it has one, up to date with a change of a subject.
+func (e *Engine) changed(s *site, l *local, c change) {
+	if s.made.Load() == nil {
+		return
+	}
+	b := e.ownedBoard(s)
+	v := e.writing(s, b)
+	delete(v.ladders, l.no)
+	from := len(b.memo.tracks) // changes may come inside changes
+	b.memo.tracks = b.plan.touched(&c, l, b.memo.tracks)
+	for _, i := range b.memo.tracks[from:] {
+		e.refresh(b, v, i, l, &c)
+	}
+	b.memo.tracks = b.memo.tracks[:from]
+	if l.subject.Asks == program.AsksPerson && (c.stint || strings.HasPrefix(c.what, appointment)) {
+		e.refill(s, b, v, l)
+	}
+}
+
+// refill brings up to date what hangs on who holds the posts that the person was ever appointed to.
+func (e *Engine) refill(s *site, b *board, v *view, person *local) {
+	readers := addAll(slices.Clone(b.plan.fields["holders"]), 0, b.plan.other)
+	if len(readers) == 0 {
+		return
+	}
+	for post, list := range s.appointed {
+		if no, ok := s.number[Subject{program.AsksPost, post}]; ok && slices.Contains(list, person.no) {
+			for _, i := range readers {
+				e.refresh(b, v, i, s.locals[no], &change{fact: "holders"})
+			}
+		}
+	}
+}
+
+// ownedBoard gives the board to write on.
+func (e *Engine) ownedBoard(s *site) *board {
+	b := s.made.Load()
+	if b.own != e.own {
+		c := *b
+		c.own = e.own
+		c.tracks = slices.Clone(b.tracks)
+		b = &c
+		s.made.Store(b)
+	}
+	if b.memo == nil {
+		b.memo = &memo{calendar: map[civil.Day][]ref{}, answers: map[*program.Selector]*answers{}}
+	}
+	return b
+}
+
+// ownedTrack gives the track to write on.
+func (b *board) ownedTrack(own *owner, i int32) *track {
+	t := b.tracks[i]
+	if t.own != own {
+		c := *t
+		c.own = own
+		c.rows, c.asked = slices.Clone(t.rows), slices.Clone(t.asked)
+		t = &c
+		b.tracks[i] = t
+	}
+	return t
+}
+
+// writing is the view through which the writer brings a board up to date.
+func (e *Engine) writing(s *site, b *board) *view {
+	if v := e.views[s.no]; v != nil && v.site == s && v.board == b {
+		return v
+	}
+	v := e.viewOf(s, Always)
+	v.board, v.answers, v.beneath.answers = b, b.memo.answers, b.memo.answers
+	if e.views == nil {
+		e.views = map[int32]*view{}
+	}
+	e.views[s.no] = v
+	return v
+}
+
+// refresh makes the course of an item and a subject anew, from the change on.
+func (e *Engine) refresh(b *board, v *view, i int32, l *local, c *change) {
+	no := b.row(i, l.no)
+	written := false
+	if no >= 0 && c.record != nil && b.plan.plain[i] && b.tracks[i].asked[no].reign >= 0 {
+		written = e.goOn(b, v, i, no, l, c)
+	} else {
+		no, written = e.anew(b, v, i, no, l)
+	}
+	if written {
+		b.follow(i, no)
+	}
+}
+
+// anew makes the whole course, and a row for it where there is none yet.
+func (e *Engine) anew(b *board, v *view, i, no int32, l *local) (int32, bool) {
+	m, code := b.memo, b.plan.items[i]
+	m.segments = v.segments(code, l, m.segments[:0])
+	m.course = v.course(code, l, m.segments, m.course[:0])
+	if no < 0 && len(m.course) == 0 {
+		return no, false
+	}
+	t := b.ownedTrack(e.own, i)
+	if no < 0 {
+		return b.addRow(e.own, i, l.no, m.segments, m.course), true
+	}
+	t.asked[no] = askingOf(l.no, m.segments)
+	t.rewrite(no, m.course)
+	return no, true
+}
+
+// goOn writes the course anew from a record's day on: what is done on a day bears on no day before it.
+// It is false where nothing changes.
+func (e *Engine) goOn(b *board, v *view, i, no int32, l *local, c *change) bool {
+	a := b.tracks[i].asked[no]
+	ed := v.reigns[a.reign].edition
+	item := ed.byCode[b.plan.items[i]]
+	from := max(c.record.in(ed.loc), a.first)
+	if from > a.last || !slices.Contains(item.Records, c.what) {
+		return false
+	}
+	old := b.tracks[i].course(no)
+	keep := len(old)
+	for keep > 0 && old[keep-1].day() >= from {
+		keep--
+	}
+	m := b.memo
+	m.course = append(m.course[:0], old[:keep]...)
+	ob := &v.obligation
+	*ob = obligation{view: v, edition: ed, item: item, subject: presence{local: l}, start: a.start, started: true}
+	s := segment{first: a.first, last: a.last, start: a.start, reign: a.reign}
+	m.course = v.walk(ob, v.deciding(item, l, ed, c), &s, from, 0, m.course)
+	if a.last < civil.LastDay {
+		m.course = turnTo(m.course, 0, a.last+1, uint8(none))
+	}
+	if slices.Equal(old, m.course) {
+		return false
+	}
+	b.ownedTrack(e.own, i).rewrite(no, m.course)
+	return true
+}
+
+// deciding lists the deeds that decide the item's standings from the changed record on. For most rules
+// a few of the last do; the rest may be many.
+func (v *view) deciding(item *program.Item, l *local, ed *edition, c *change) []deed {
+	if !c.behind || len(item.Records) > 1 {
+		return v.gather(item, l, ed, civil.LastDay)
+	}
+	wants := 1
+	switch item.Cadence.Rule {
+	case program.Each, program.Once:
+	case program.Within:
+		wants = item.Cadence.Count
+	default:
+		return v.gather(item, l, ed, civil.LastDay)
+	}
+	return v.lastDeeds(item, l, ed, wants, c.record.in(ed.loc))
+}
+
+// lastDeeds lists the last deeds: as many as hold accepted ones of so many days before the given one,
+// and a few more, since zones may order them otherwise.
+func (v *view) lastDeeds(item *program.Item, l *local, ed *edition, wants int, before civil.Day) []deed {
+	list := v.past(l).records(item.Records[0])
+	out := v.deeds[:0]
+	enough := noDay // records of days before it need not be looked at
+	for i := len(list) - 1; i >= 0; i-- {
+		r := &list[i]
+		if !r.knownAt(v.k) || item.Local && int32(r.site) != v.site.no {
+			continue
+		}
+		d := r.in(ed.loc)
+		if enough != noDay && d < enough {
+			break
+		}
+		out = append(out, deed{d, r})
+		if r.passed && d < before {
+			if wants--; wants <= 0 && enough == noDay {
+				enough = d - 2
+			}
+			before = d
+		}
+	}
+	slices.Reverse(out)
+	if !slices.IsSortedFunc(out, compareDeeds) {
+		slices.SortFunc(out, compareDeeds)
+	}
+	v.deeds = out
+	return out
+}
+
+// follow counts a row whose course was written under its word of the present day, and puts its next
+// turn in the calendar.
+func (b *board) follow(i, no int32) {
+	if b.present == noDay {
+		return
+	}
+	t := b.tracks[i]
+	course := t.course(no)
+	r := &t.rows[no]
+	if now := wordOn(course, b.present); now != r.now() {
+		t.tally[r.now()]--
+		t.tally[now]++
+		r.size = r.size&^wordMask | uint32(now)
+	}
+	if next := nextTurn(course, b.present); next != noDay {
+		b.memo.calendar[next] = append(b.memo.calendar[next], ref{i, no})
+	}
+}
+
+// Turn makes a day the present one of the site: the counts of that day are then kept current. From one
+// day to a later one only the obligations whose standing may change between them are looked at.
+func (e *Engine) Turn(site string, to civil.Day) {
+	no, ok := e.number[site]
+	if !ok || len(e.sites[no].editions) == 0 {
+		return
+	}
+	if b := e.board(e.sites[no]); b.present == to {
+		return
+	}
+	s := e.ownedSite(no)
+	b := e.ownedBoard(s)
+	m := *b.memo // a fork that is thrown away leaves the calendar of the other as it is
+	m.calendar = maps.Clone(m.calendar)
+	b.memo = &m
+	const stride = 400 // beyond so many days it is quicker to look at all
+	if b.present == noDay || to < b.present || to > b.present+stride {
+		b.turnAll(e.own, to)
+		return
+	}
+	was := b.present
+	b.present = to
+	for d := was + 1; d <= to; d++ {
+		for _, r := range b.memo.calendar[d] {
+			if int(r.row) < len(b.tracks[r.track].rows) {
+				b.ownedTrack(e.own, r.track)
+				b.follow(r.track, r.row)
+			}
+		}
+		delete(b.memo.calendar, d)
+	}
+}
+
+// turnAll looks at every row.
+func (b *board) turnAll(own *owner, to civil.Day) {
+	b.present = to
+	clear(b.memo.calendar)
+	for i := range b.tracks {
+		t := b.ownedTrack(own, int32(i))
+		for no := range t.rows {
+			b.follow(int32(i), int32(no))
+		}
+	}
+}
