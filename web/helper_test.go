@@ -20,7 +20,7 @@ import (
 // house is a book with a site, an account of every role, and the pages over it. Its clock stands
 // still on Tuesday 1 December 2026, 08:00, until a test moves it.
 type house struct {
-	*testing.T
+	testing.TB
 	b       *book.Book
 	handler http.Handler
 	now     time.Time
@@ -31,9 +31,9 @@ type house struct {
 
 const fell = "FELL"
 
-func newHouse(t *testing.T) *house {
+func newHouse(t testing.TB) *house {
 	t.Helper()
-	h := &house{T: t, now: time.Date(2026, 12, 1, 8, 0, 0, 0, time.UTC), op: book.SystemOperator("ops"), actors: map[book.Role]book.Actor{}, jars: map[book.Role]*jar{}}
+	h := &house{TB: t, now: time.Date(2026, 12, 1, 8, 0, 0, 0, time.UTC), op: book.SystemOperator("ops"), actors: map[book.Role]book.Actor{}, jars: map[book.Role]*jar{}}
 	b, err := book.Create(t.Context(), filepath.Join(t.TempDir(), "site.book"), book.Options{Clock: func() time.Time { return h.now }, Random: rand.Reader})
 	h.ok(err)
 	h.b = b
@@ -44,7 +44,7 @@ func newHouse(t *testing.T) *house {
 }
 
 // furnished is a house with the site of testdata and people and fixtures in it.
-func furnished(t *testing.T) *house {
+func furnished(t testing.TB) *house {
 	t.Helper()
 	h := newHouse(t)
 	source, err := os.ReadFile("testdata/site.yaml")
@@ -145,7 +145,7 @@ func (h *house) as(r book.Role) *jar {
 // answer is what came back.
 type answer struct {
 	*httptest.ResponseRecorder
-	t    *testing.T
+	t    testing.TB
 	root *html.Node
 }
 
@@ -170,7 +170,7 @@ func (h *house) do(j *jar, r *http.Request) *answer {
 	}
 	root, err := html.Parse(strings.NewReader(w.Body.String()))
 	h.ok(err)
-	return &answer{w, h.T, root}
+	return &answer{w, h.TB, root}
 }
 
 func (h *house) get(j *jar, path string) *answer {
