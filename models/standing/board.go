@@ -32,12 +32,16 @@ type board struct {
 	rowOf   [][]int32 // by number of the subject and track: the row from 1, 0 for none; nil for no row at all
 	rowsOwn *owner    // whose rowOf is
 	present civil.Day // the day of the tallies; noDay before the first turn
+	tallies []counter // of the present day, by track
 	memo    *memo
 }
 
+// counter counts rows by the number of their word.
+type counter [none + 1]int32
+
 // memo is what only the writers of a line of forks share, one after the other.
 type memo struct {
-	calendar map[civil.Day][]ref // rows whose word may turn on the day
+	calendar *calendar
 	answers  map[*program.Selector]*answers
 	course   []point
 	segments []segment
@@ -51,11 +55,11 @@ type ref struct{ track, row int32 }
 type track struct {
 	own    *owner
 	item   string
+	judged []*program.Item // by reign
 	rows   []row
 	asked  []asking
 	points []point // of all rows; a course that changes is written anew at the end
 	waste  int     // points of courses that were written anew
-	tally  [none + 1]int32
 }
 
 // row is where a course lies in the points, and its word on the present day.
@@ -71,7 +75,8 @@ func (r row) now() uint8  { return uint8(r.size & wordMask) }
 type asking struct {
 	local              int32
 	first, last, start civil.Day
-	reign              int16 // -1 where there are several segments, or a faulty one
+	reign              int16     // -1 where there are several segments, or a faulty one
+	due                civil.Day // of an item with every: what all its deeds made; noDay where they have to be asked
 }
 
 func (t *track) course(i int32) []point {
@@ -96,10 +101,13 @@ func (e *Engine) board(s *site) *board {
 
 func (e *Engine) newBoard(s *site) *board {
 	v := e.viewOf(s, Always)
-	b := &board{own: e.own, rowsOwn: e.own, plan: newPlan(v.reigns), present: noDay, rowOf: make([][]int32, len(s.locals))}
+	b := &board{own: e.own, rowsOwn: e.own, plan: newPlan(v.reigns, e.kinds.number), present: noDay, rowOf: make([][]int32, len(s.locals))}
 	b.tracks = make([]*track, len(b.plan.items))
 	for i, code := range b.plan.items {
 		b.tracks[i] = &track{own: e.own, item: code}
+		for _, r := range v.reigns {
+			b.tracks[i].judged = append(b.tracks[i].judged, r.byCode[code])
+		}
 	}
 	var segments []segment
 	var course []point
@@ -108,7 +116,7 @@ func (e *Engine) newBoard(s *site) *board {
 			code := b.plan.items[i]
 			segments = v.segments(code, l, segments[:0])
 			if course = v.course(code, l, segments, course[:0]); len(course) > 0 {
-				b.addRow(e.own, i, int32(no), segments, course)
+				b.addRow(e.own, i, v.askingOf(int32(no), segments), course)
 			}
 		}
 	}
@@ -119,8 +127,8 @@ func (e *Engine) newBoard(s *site) *board {
 }
 
 // askingOf says what is known of a row by its segments.
-func askingOf(local int32, segments []segment) asking {
-	a := asking{local: local, reign: -1}
+func (v *view) askingOf(local int32, segments []segment) asking {
+	a := asking{local: local, reign: -1, due: v.due}
 	if len(segments) == 1 && !segments[0].faulty {
 		s := segments[0]
 		a.first, a.last, a.start, a.reign = s.first, s.last, s.start, s.reign
@@ -129,23 +137,25 @@ func askingOf(local int32, segments []segment) asking {
 }
 
 // addRow adds a row to a track that may be written.
-func (b *board) addRow(own *owner, track, local int32, segments []segment, course []point) int32 {
+func (b *board) addRow(own *owner, track int32, a asking, course []point) int32 {
 	if b.rowsOwn != own {
 		b.rowOf, b.rowsOwn = slices.Clone(b.rowOf), own
 	}
-	for int(local) >= len(b.rowOf) {
+	for int(a.local) >= len(b.rowOf) {
 		b.rowOf = append(b.rowOf, nil)
 	}
 	rows := make([]int32, len(b.tracks))
-	copy(rows, b.rowOf[local])
+	copy(rows, b.rowOf[a.local])
 	t := b.tracks[track]
 	no := int32(len(t.rows))
 	rows[track] = no + 1
-	b.rowOf[local] = rows
+	b.rowOf[a.local] = rows
 	t.rows = append(t.rows, row{uint32(len(t.points)), uint32(len(course)<<wordBits | none)})
-	t.asked = append(t.asked, askingOf(local, segments))
+	t.asked = append(t.asked, a)
 	t.points = append(t.points, course...)
-	t.tally[none]++
+	if b.tallies != nil {
+		b.tallies[track][none]++
+	}
 	return no
 }
 

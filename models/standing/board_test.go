@@ -87,6 +87,9 @@ func (w *world) checkKept(t fataler) {
 		if w.chance(50) {
 			e.Turn("S", d)
 			w.sameCounts(t, e, d)
+			if got, want := fmt.Sprint(e.Recount()), fmt.Sprint(e.AllCounts(d)); got != want && len(e.Recount()) > 0 {
+				t.Fatalf("on %v the rows say %s and the counts %s", d, got, want)
+			}
 		}
 	}
 	w.checkOver(t, e, first)

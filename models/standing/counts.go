@@ -84,22 +84,62 @@ func overSites[T any](e *Engine, fn func(*site) T) []T {
 
 func (b *board) counts(site string, on civil.Day) SiteCount {
 	c := SiteCount{Site: site, Items: make([]ItemCount, 0, len(b.tracks))}
-	for _, t := range b.tracks {
-		tally := t.tally
-		if on != b.present {
-			tally = t.asOf(on)
-		}
-		n := ItemCount{Item: t.item, Tally: Tally(tally[:len(Words)])}
-		if n.Tally != (Tally{}) {
-			c.Items = append(c.Items, n)
+	for i, item := range b.plan.items {
+		if on == b.present {
+			c.add(item, &b.tallies[i])
+		} else {
+			n := b.tracks[i].asOf(on)
+			c.add(item, &n)
 		}
 	}
 	return c
 }
 
+func (c *SiteCount) add(item string, n *counter) {
+	if of := Tally(n[:len(Words)]); of != (Tally{}) {
+		c.Items = append(c.Items, ItemCount{item, of})
+	}
+}
+
+// Recount counts the standings of the present day of every site by looking at each obligation: what
+// AllCounts has at hand is then the same. Sites without a present day are left out.
+func (e *Engine) Recount() []SiteCount {
+	all := overSites(e, func(s *site) SiteCount {
+		c, b := SiteCount{Site: s.code}, e.board(s)
+		if b.present == noDay {
+			return c
+		}
+		c.Items = make([]ItemCount, 0, len(b.tracks))
+		for _, t := range b.tracks {
+			n := t.now()
+			c.add(t.item, &n)
+		}
+		return c
+	})
+	return slices.DeleteFunc(all, func(c SiteCount) bool { return c.Items == nil })
+}
+
+// now counts the words of the present day. Two counters take turns, so that none waits for itself.
+func (t *track) now() counter {
+	var even, odd counter
+	rows := t.rows
+	for len(rows) > 1 {
+		even[rows[0].now()]++
+		odd[rows[1].now()]++
+		rows = rows[2:]
+	}
+	for _, r := range rows {
+		even[r.now()]++
+	}
+	for i, n := range odd {
+		even[i] += n
+	}
+	return even
+}
+
 // asOf counts the words of a day.
-func (t *track) asOf(on civil.Day) [none + 1]int32 {
-	var n [none + 1]int32
+func (t *track) asOf(on civil.Day) counter {
+	var n counter
 	key := pointOf(on, wordMask)
 	points := t.points
 	for i := range t.rows {
@@ -179,91 +219,102 @@ func (e *Engine) CountsOver(site string, from, to civil.Day) (SiteCourse, error)
 	return newSweep(from, to).site(s.code, e.board(s)), nil
 }
 
-// AllCountsOver is CountsOver of every site that has a version, in order of code, over all cores.
-func (e *Engine) AllCountsOver(from, to civil.Day) []SiteCourse {
+// AllCountsOver calls fn with what CountsOver gives of every site that has a version, over all cores: in
+// no order and several at once. What fn is given is good until it returns.
+func (e *Engine) AllCountsOver(from, to civil.Day, fn func(SiteCourse)) error {
 	if to < from {
-		return nil
+		return fmt.Errorf("the period ends on %v, before it begins on %v", to, from)
 	}
 	var sweeps sync.Pool
-	return overSites(e, func(s *site) SiteCourse {
+	overSites(e, func(s *site) bool {
 		w, ok := sweeps.Get().(*sweep)
 		if !ok {
 			w = newSweep(from, to)
 		}
-		defer sweeps.Put(w)
-		return w.site(s.code, e.board(s))
+		w.days, w.tallies, w.items = w.days[:0], w.tallies[:0], w.items[:0]
+		fn(w.site(s.code, e.board(s)))
+		sweeps.Put(w)
+		return true
 	})
+	return nil
 }
 
 // sweep adds up, for each day of a period, by how much the count of each word changes.
 type sweep struct {
 	from, to civil.Day
-	deltas   [][none + 1]int32
+	deltas   []delta
 	turned   []uint64 // a bit for each day on which something changes
+	days     []civil.Day
+	tallies  []Tally
+	items    []ItemCourse
+}
+
+// delta is the change of a day, with a place for what has no obligation.
+type delta struct {
+	Tally
+	none int32
+}
+
+func (d *delta) at(word uint8) *int32 {
+	if int(word) < len(d.Tally) {
+		return &d.Tally[word]
+	}
+	return &d.none
 }
 
 func newSweep(from, to civil.Day) *sweep {
 	n := int(to-from) + 1
-	return &sweep{from: from, to: to, deltas: make([][none + 1]int32, n), turned: make([]uint64, (n+63)/64)}
+	return &sweep{from: from, to: to, deltas: make([]delta, n), turned: make([]uint64, (n+63)/64)}
 }
 
 func (w *sweep) site(code string, b *board) SiteCourse {
-	c := SiteCourse{Site: code, From: w.from, To: w.to, Items: make([]ItemCourse, len(b.tracks))}
-	for i, t := range b.tracks {
-		c.Items[i] = w.track(t)
+	for _, t := range b.tracks {
+		w.items = append(w.items, w.track(t))
 	}
-	return c
+	return SiteCourse{Site: code, From: w.from, To: w.to, Items: w.items}
 }
 
 func (w *sweep) track(t *track) ItemCourse {
-	var now [none + 1]int32
+	var now delta
 	begin, end := pointOf(w.from, wordMask), pointOf(w.to, wordMask)
 	for i := range t.rows {
-		course := t.course(int32(i))
 		word := uint8(none)
-		for _, p := range course {
+		for _, p := range t.course(int32(i)) {
 			if p > end {
 				break
 			}
+			next := p.word()
 			if p > begin {
 				d := p.day() - w.from
-				w.deltas[d][word]--
-				w.deltas[d][p.word()]++
+				*w.deltas[d].at(word)--
+				*w.deltas[d].at(next)++
 				w.turned[d/64] |= 1 << (d % 64)
 			} else {
-				now[word]--
-				now[p.word()]++
+				*now.at(word)--
+				*now.at(next)++
 			}
-			word = p.word()
+			word = next
 		}
-		now[none]++
 	}
-	return w.collect(t.item, now)
+	return w.collect(t.item, now.Tally)
 }
 
 // collect adds the changes up, and leaves none behind.
-func (w *sweep) collect(item string, now [none + 1]int32) ItemCourse {
-	c := ItemCourse{Item: item, First: Tally(now[:len(Words)])}
-	n := 0
-	for _, some := range w.turned {
-		n += bits.OnesCount64(some)
-	}
-	if n == 0 {
-		return c
-	}
-	c.Days, c.Tallies = make([]civil.Day, 0, n), make([]Tally, 0, n)
+func (w *sweep) collect(item string, now Tally) ItemCourse {
+	c := ItemCourse{Item: item, First: now}
+	from := len(w.days)
 	for i, some := range w.turned {
 		for ; some != 0; some &= some - 1 {
 			d := i*64 + bits.TrailingZeros64(some)
-			delta := &w.deltas[d]
-			for word := range now {
-				now[word] += delta[word]
+			for word, n := range w.deltas[d].Tally {
+				now[word] += n
 			}
-			*delta = [none + 1]int32{}
-			c.Days = append(c.Days, w.from+civil.Day(d))
-			c.Tallies = append(c.Tallies, Tally(now[:len(Words)]))
+			w.deltas[d] = delta{}
+			w.days = append(w.days, w.from+civil.Day(d))
+			w.tallies = append(w.tallies, now)
 		}
 		w.turned[i] = 0
 	}
+	c.Days, c.Tallies = w.days[from:len(w.days):len(w.days)], w.tallies[from:len(w.tallies):len(w.tallies)]
 	return c
 }

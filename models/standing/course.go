@@ -160,6 +160,7 @@ func (v *view) segment(code string, l *local, d civil.Day) (segment, bool) {
 
 // course appends the points of the obligation to a list.
 func (v *view) course(code string, l *local, segments []segment, to []point) []point {
+	v.due = noDay
 	at := len(to)
 	for i := range segments {
 		s := &segments[i]
@@ -220,6 +221,10 @@ func (v *view) walk(ob *obligation, deeds []deed, s *segment, from civil.Day, at
 		} else {
 			to = turnTo(to, at, d, uint8(none))
 		}
+		if n == len(deeds) && m == len(events) && len(ob.excusals) == 0 && f.ends != 0 {
+			to = ob.runsOut(f, s, at, to) // nothing more will happen
+			break
+		}
 		next = max(next, d) + 1
 		if n < len(deeds) {
 			next = min(next, deeds[n].on)
@@ -228,6 +233,21 @@ func (v *view) walk(ob *obligation, deeds []deed, s *segment, from civil.Day, at
 			next = min(next, events[m].on)
 		}
 		d = nextExcusal(ob.excusals, d, next)
+	}
+	v.due = noDay
+	if ob.fold.record != nil && ob.folded == len(deeds) && len(deeds) > 0 {
+		v.due = ob.fold.due
+	}
+	return to
+}
+
+// runsOut appends what follows a finding that goes by a due day when nothing more happens.
+func (ob *obligation) runsOut(f finding, s *segment, at int, to []point) []point {
+	if ob.on < f.closes && f.closes <= s.last {
+		to = turnTo(to, at, f.closes, codeOf(Closing))
+	}
+	if ob.on < f.ends && f.ends <= s.last {
+		to = turnTo(to, at, f.ends, codeOf(ob.gap()))
 	}
 	return to
 }

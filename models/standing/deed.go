@@ -42,7 +42,7 @@ func compareTimes(a, b *time.Time) int {
 func (v *view) gather(item *program.Item, l *local, ed *edition, on civil.Day) []deed {
 	out := v.deeds[:0]
 	for _, what := range item.Records {
-		list := v.past(l).records(what)
+		list := v.records(l, what)
 		for i := range list {
 			r := &list[i]
 			if !r.knownAt(v.k) || item.Local && int32(r.site) != v.site.no {

@@ -20,6 +20,7 @@ func (ob *obligation) first() finding {
 func (ob *obligation) byDue(due civil.Day) finding {
 	f := finding{word: Met, due: ob.day(due), open: true, lasts: due.Add(ob.item.Grace)}
 	notice := ob.item.Notice.Before(due)
+	f.closes, f.ends = notice, f.lasts+1
 	switch {
 	case ob.on < notice:
 		f.stays = notice - 1

@@ -23,9 +23,11 @@ type Engine struct {
 	own    *owner
 	sites  []*site // by number
 	number map[string]int32
+	kinds  kinds           // of records
 	names  names           // numbers of people
 	people pages           // what happened to people, by number
 	views  map[int32]*view // the writer's, by site
+	room   [2]*scratch     // that they write into
 }
 
 // owner marks what an engine may change in place.
@@ -83,8 +85,15 @@ type home struct{ site, local int32 }
 
 // deedsOf are the records of one kind and code, by compareRecords.
 type deedsOf struct {
-	what string
+	kind int32
 	list []record
+}
+
+// kinds numbers the kinds and codes of records. It is copied when one is added.
+type kinds struct {
+	number map[string]int32
+	what   []string
+	post   []string // of an appointment the post, of any other empty
 }
 
 // happened are the events of one code, by Seq.
@@ -102,7 +111,7 @@ func New() *Engine { return &Engine{own: &owner{}, number: map[string]int32{}} }
 func (e *Engine) Fork() *Engine {
 	f := *e
 	f.own = &owner{}
-	f.views = nil
+	f.views, f.room = nil, [2]*scratch{}
 	f.sites = slices.Clone(e.sites)
 	f.names = e.names.fork()
 	f.people = e.people.fork()
@@ -118,6 +127,11 @@ func (e *Engine) PutVersion(site string, v Version) {
 	delete(e.views, s.no)
 	for sub := range ed.declared {
 		e.local(site, sub)
+	}
+	for _, item := range ed.items {
+		for _, what := range item.Records {
+			e.kind(what)
+		}
 	}
 }
 
@@ -149,18 +163,21 @@ func (e *Engine) PutFact(site string, f Fact) {
 func (e *Engine) PutRecord(r Record) {
 	at := e.siteNumber(r.Site)
 	p, l := e.past(r.Site, r.Subject)
-	i := p.find(r.What)
+	kind := e.kind(r.What)
+	i := p.find(kind)
 	if i < 0 {
 		i = len(p.deeds)
-		p.deeds = append(p.deeds, deedsOf{what: r.What})
+		p.deeds = append(p.deeds, deedsOf{kind: kind})
 	}
 	kept := newRecord(&r, at)
 	fresh := len(p.deeds[i].list)
 	p.deeds[i].list = upsert(p.deeds[i].list, kept, compareRecords)
 	list := p.deeds[i].list
-	c := change{what: p.deeds[i].what, record: &kept, behind: len(list) > fresh && list[len(list)-1] == kept}
-	if post, ok := strings.CutPrefix(r.What, appointment); ok && r.Subject.Asks == program.AsksPerson {
-		e.appoint(r.Site, post, e.local(r.Site, r.Subject).no)
+	c := change{done: true, kind: kind, record: kept, behind: len(list) > fresh && list[len(list)-1].seq == kept.seq}
+	if r.Subject.Asks == program.AsksPerson {
+		if c.post = e.kinds.post[kind]; c.post != "" {
+			e.appoint(r.Site, c.post, e.local(r.Site, r.Subject).no)
+		}
 	}
 	e.happenedTo(r.Site, p, l, c)
 }
@@ -328,9 +345,9 @@ func (p *past) copy(own *owner) *past {
 }
 
 // find gives the place of the records of a kind and code, -1 where there are none.
-func (p *past) find(what string) int {
+func (p *past) find(kind int32) int {
 	for i := range p.deeds {
-		if p.deeds[i].what == what {
+		if p.deeds[i].kind == kind {
 			return i
 		}
 	}
@@ -338,11 +355,35 @@ func (p *past) find(what string) int {
 }
 
 // records gives the records of a kind and code.
-func (p *past) records(what string) []record {
-	if i := p.find(what); i >= 0 {
+func (v *view) records(l *local, what string) []record {
+	kind, ok := v.e.kinds.number[what]
+	if !ok {
+		return nil
+	}
+	p := v.past(l)
+	if i := p.find(kind); i >= 0 {
 		return p.deeds[i].list
 	}
 	return nil
+}
+
+// kind numbers a kind and code of records, a new one with the next number.
+func (e *Engine) kind(what string) int32 {
+	no, ok := e.kinds.number[what]
+	if !ok {
+		no = int32(len(e.kinds.what))
+		if e.kinds.number = maps.Clone(e.kinds.number); e.kinds.number == nil {
+			e.kinds.number = map[string]int32{}
+		}
+		e.kinds.number[what] = no
+		e.kinds.what = append(e.kinds.what, what)
+		post, _ := strings.CutPrefix(what, appointment)
+		if post == what {
+			post = ""
+		}
+		e.kinds.post = append(e.kinds.post, post)
+	}
+	return no
 }
 
 // eventsOf gives the events of a code.

@@ -19,19 +19,20 @@ type renewal struct {
 // every folds over the records: each accepted one renews, a failed one makes the old due day
 // forgotten.
 func (ob *obligation) every() finding {
-	var r renewal
-	for _, d := range ob.deeds {
+	for _, d := range ob.deeds[ob.folded:] {
 		if d.passed {
-			r = renew(&ob.item.Cadence, d, r)
+			ob.fold = renew(&ob.item.Cadence, d, ob.fold)
 		} else {
-			r = renewal{}
+			ob.fold = renewal{}
 		}
 	}
+	ob.folded = len(ob.deeds) // as the days go by, deeds are only added
+	r := &ob.fold
 	if r.record == nil {
 		return ob.first()
 	}
 	f := ob.byDue(r.due)
-	f.record, f.renewal = r.record, r
+	f.record, f.renewal = r.record, *r
 	f.from = ob.deeds[len(ob.deeds)-1].on
 	return f
 }

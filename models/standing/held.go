@@ -164,7 +164,7 @@ func (v *view) itemTurns(t *turns, l *local, item *program.Item) {
 		}
 	}
 	for _, what := range item.Records {
-		v.recordTurns(t, v.past(l).records(what))
+		v.recordTurns(t, v.records(l, what))
 	}
 	for _, code := range item.Cadence.After {
 		v.eventTurns(t, v.past(l).eventsOf(code))

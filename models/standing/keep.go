@@ -1,9 +1,7 @@
 package standing
 
 import (
-	"maps"
 	"slices"
-	"strings"
 
 	"lodebook/models/civil"
 	"lodebook/models/program"
@@ -38,7 +36,7 @@ func (e *Engine) changed(s *site, l *local, c change) {
 		e.refresh(b, v, i, l, &c)
 	}
 	b.memo.tracks = b.memo.tracks[:from]
-	if l.subject.Asks == program.AsksPerson && (c.stint || strings.HasPrefix(c.what, appointment)) {
+	if l.subject.Asks == program.AsksPerson && (c.stint || c.post != "") {
 		e.refill(s, b, v, l)
 	}
 }
@@ -64,12 +62,12 @@ func (e *Engine) ownedBoard(s *site) *board {
 	if b.own != e.own {
 		c := *b
 		c.own = e.own
-		c.tracks = slices.Clone(b.tracks)
+		c.tracks, c.tallies = slices.Clone(b.tracks), slices.Clone(b.tallies)
 		b = &c
 		s.made.Store(b)
 	}
 	if b.memo == nil {
-		b.memo = &memo{calendar: map[civil.Day][]ref{}, answers: map[*program.Selector]*answers{}}
+		b.memo = &memo{calendar: newCalendar(0), answers: map[*program.Selector]*answers{}}
 	}
 	return b
 }
@@ -95,8 +93,9 @@ func (e *Engine) writing(s *site, b *board) *view {
 	v := e.viewOf(s, Always)
 	v.board, v.answers, v.beneath.answers = b, b.memo.answers, b.memo.answers
 	if e.views == nil {
-		e.views = map[int32]*view{}
+		e.views, e.room = map[int32]*view{}, [2]*scratch{v.scratch, v.beneath.scratch}
 	}
+	v.scratch, v.beneath.scratch = e.room[0], e.room[1] // one room for all sites lies nearer at hand
 	e.views[s.no] = v
 	return v
 }
@@ -105,7 +104,7 @@ func (e *Engine) writing(s *site, b *board) *view {
 func (e *Engine) refresh(b *board, v *view, i int32, l *local, c *change) {
 	no := b.row(i, l.no)
 	written := false
-	if no >= 0 && c.record != nil && b.plan.plain[i] && b.tracks[i].asked[no].reign >= 0 {
+	if no >= 0 && c.done && b.plan.plain[i] && b.tracks[i].asked[no].reign >= 0 {
 		written = e.goOn(b, v, i, no, l, c)
 	} else {
 		no, written = e.anew(b, v, i, no, l)
@@ -125,9 +124,9 @@ func (e *Engine) anew(b *board, v *view, i, no int32, l *local) (int32, bool) {
 	}
 	t := b.ownedTrack(e.own, i)
 	if no < 0 {
-		return b.addRow(e.own, i, l.no, m.segments, m.course), true
+		return b.addRow(e.own, i, v.askingOf(l.no, m.segments), m.course), true
 	}
-	t.asked[no] = askingOf(l.no, m.segments)
+	t.asked[no] = v.askingOf(l.no, m.segments)
 	t.rewrite(no, m.course)
 	return no, true
 }
@@ -135,14 +134,14 @@ func (e *Engine) anew(b *board, v *view, i, no int32, l *local) (int32, bool) {
 // goOn writes the course anew from a record's day on: what is done on a day bears on no day before it.
 // It is false where nothing changes.
 func (e *Engine) goOn(b *board, v *view, i, no int32, l *local, c *change) bool {
-	a := b.tracks[i].asked[no]
-	ed := v.reigns[a.reign].edition
-	item := ed.byCode[b.plan.items[i]]
+	t := b.tracks[i]
+	a := t.asked[no]
+	ed, item := v.reigns[a.reign].edition, t.judged[a.reign]
 	from := max(c.record.in(ed.loc), a.first)
-	if from > a.last || !slices.Contains(item.Records, c.what) {
+	if from > a.last || !slices.Contains(item.Records, e.kinds.what[c.kind]) || c.behind && c.record.ended != 0 {
 		return false
 	}
-	old := b.tracks[i].course(no)
+	old := t.course(no)
 	keep := len(old)
 	for keep > 0 && old[keep-1].day() >= from {
 		keep--
@@ -152,9 +151,12 @@ func (e *Engine) goOn(b *board, v *view, i, no int32, l *local, c *change) bool 
 	ob := &v.obligation
 	*ob = obligation{view: v, edition: ed, item: item, subject: presence{local: l}, start: a.start, started: true}
 	s := segment{first: a.first, last: a.last, start: a.start, reign: a.reign}
-	m.course = v.walk(ob, v.deciding(item, l, ed, c), &s, from, 0, m.course)
+	m.course = v.walk(ob, v.deciding(ob, l, &a, c), &s, from, 0, m.course)
 	if a.last < civil.LastDay {
 		m.course = turnTo(m.course, 0, a.last+1, uint8(none))
+	}
+	if v.due != a.due {
+		b.ownedTrack(e.own, i).asked[no].due = v.due
 	}
 	if slices.Equal(old, m.course) {
 		return false
@@ -165,7 +167,8 @@ func (e *Engine) goOn(b *board, v *view, i, no int32, l *local, c *change) bool 
 
 // deciding lists the deeds that decide the item's standings from the changed record on. For most rules
 // a few of the last do; the rest may be many.
-func (v *view) deciding(item *program.Item, l *local, ed *edition, c *change) []deed {
+func (v *view) deciding(ob *obligation, l *local, a *asking, c *change) []deed {
+	item, ed := ob.item, ob.edition
 	if !c.behind || len(item.Records) > 1 {
 		return v.gather(item, l, ed, civil.LastDay)
 	}
@@ -174,16 +177,38 @@ func (v *view) deciding(item *program.Item, l *local, ed *edition, c *change) []
 	case program.Each, program.Once:
 	case program.Within:
 		wants = item.Cadence.Count
+	case program.Every:
+		if d, ok := v.lastDeed(item, l, ed); ok && a.due != noDay {
+			ob.fold = renewal{deed: deed{a.first, &folded}, due: a.due}
+			return append(v.deeds[:0], d)
+		}
+		return v.gather(item, l, ed, civil.LastDay)
 	default:
 		return v.gather(item, l, ed, civil.LastDay)
 	}
 	return v.lastDeeds(item, l, ed, wants, c.record.in(ed.loc))
 }
 
+// folded stands for the records that made a due day.
+var folded record
+
+// lastDeed is the last record of an item that one kind answers, if it is after all others in the zone
+// too.
+func (v *view) lastDeed(item *program.Item, l *local, ed *edition) (deed, bool) {
+	list := v.records(l, item.Records[0])
+	n := len(list)
+	if n < 2 || item.Local {
+		return deed{}, false
+	}
+	last, other := &list[n-1], &list[n-2]
+	d, o := deed{last.in(ed.loc), last}, deed{other.in(ed.loc), other}
+	return d, o.on < d.on || last.at == untimed && other.at == untimed
+}
+
 // lastDeeds lists the last deeds: as many as hold accepted ones of so many days before the given one,
 // and a few more, since zones may order them otherwise.
 func (v *view) lastDeeds(item *program.Item, l *local, ed *edition, wants int, before civil.Day) []deed {
-	list := v.past(l).records(item.Records[0])
+	list := v.records(l, item.Records[0])
 	out := v.deeds[:0]
 	enough := noDay // records of days before it need not be looked at
 	for i := len(list) - 1; i >= 0; i-- {
@@ -221,12 +246,12 @@ func (b *board) follow(i, no int32) {
 	course := t.course(no)
 	r := &t.rows[no]
 	if now := wordOn(course, b.present); now != r.now() {
-		t.tally[r.now()]--
-		t.tally[now]++
+		b.tallies[i][r.now()]--
+		b.tallies[i][now]++
 		r.size = r.size&^wordMask | uint32(now)
 	}
 	if next := nextTurn(course, b.present); next != noDay {
-		b.memo.calendar[next] = append(b.memo.calendar[next], ref{i, no})
+		b.memo.calendar.put(next, ref{i, no})
 	}
 }
 
@@ -242,34 +267,34 @@ func (e *Engine) Turn(site string, to civil.Day) {
 	}
 	s := e.ownedSite(no)
 	b := e.ownedBoard(s)
-	m := *b.memo // a fork that is thrown away leaves the calendar of the other as it is
-	m.calendar = maps.Clone(m.calendar)
-	b.memo = &m
 	const stride = 400 // beyond so many days it is quicker to look at all
+	m := *b.memo       // a fork that is thrown away leaves the calendar of the other as it is
+	b.memo = &m
 	if b.present == noDay || to < b.present || to > b.present+stride {
+		m.calendar = newCalendar(to)
 		b.turnAll(e.own, to)
 		return
 	}
+	m.calendar = m.calendar.from(b.present)
 	was := b.present
 	b.present = to
 	for d := was + 1; d <= to; d++ {
-		for _, r := range b.memo.calendar[d] {
+		for _, r := range b.memo.calendar.on(d) {
 			if int(r.row) < len(b.tracks[r.track].rows) {
 				b.ownedTrack(e.own, r.track)
 				b.follow(r.track, r.row)
 			}
 		}
-		delete(b.memo.calendar, d)
 	}
 }
 
 // turnAll looks at every row.
 func (b *board) turnAll(own *owner, to civil.Day) {
-	b.present = to
-	clear(b.memo.calendar)
+	b.present, b.tallies = to, make([]counter, len(b.tracks))
 	for i := range b.tracks {
 		t := b.ownedTrack(own, int32(i))
 		for no := range t.rows {
+			b.tallies[i][t.rows[no].now()]++
 			b.follow(int32(i), int32(no))
 		}
 	}

@@ -226,8 +226,8 @@ func (v *view) factTurns(t *turns, l *local, code string) {
 func (v *view) postTurns(t *turns, person *local, post string) {
 	deeds := v.past(person).deeds
 	for i := range deeds {
-		what := deeds[i].what
-		if !strings.HasPrefix(what, appointment) || post != "" && what != appointment+post {
+		held := v.e.kinds.post[deeds[i].kind]
+		if held == "" || post != "" && held != post {
 			continue
 		}
 		v.recordTurns(t, deeds[i].list)

@@ -18,6 +18,8 @@ type obligation struct {
 
 	start   civil.Day // see began
 	started bool
+	fold    renewal // of every: what the first folded deeds made
+	folded  int
 }
 
 // finding is what the rules make of an obligation, and what they made it of.
@@ -32,8 +34,10 @@ type finding struct {
 	// stays is a day through which the word stays if, further, no record, event or excusal begins to
 	// count or ends: at the least the day judged.
 	stays civil.Day
-	since civil.Day // of a gap: its first day by the rule
-	from  civil.Day // of met and closing: the day on which the span up to the due day began
+	// Of what goes by a due day: from closes on it is closing, from ends on a gap; else both are 0.
+	closes, ends civil.Day
+	since        civil.Day // of a gap: its first day by the rule
+	from         civil.Day // of met and closing: the day on which the span up to the due day began
 
 	excusal *Excusal
 	renewal renewal

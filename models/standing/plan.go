@@ -2,7 +2,6 @@ package standing
 
 import (
 	"slices"
-	"strings"
 
 	"lodebook/models/program"
 )
@@ -13,7 +12,7 @@ type plan struct {
 	items   []string
 	number  map[string]int32
 	ofKind  map[program.Asks][]int32
-	records map[string][]int32 // by kind and code of the records that answer
+	records [][]int32 // by number of the kind and code of the records that answer
 	events  map[string][]int32
 	fields  map[string][]int32 // by field that the selector or the condition reads
 	other   []int32            // reads what is no field that we know
@@ -21,9 +20,10 @@ type plan struct {
 	plain   []bool // whether it is asked hangs on facts and stints only
 }
 
-func newPlan(reigns []reign) *plan {
+// newPlan makes the plan of versions; kinds numbers the records that they ask for.
+func newPlan(reigns []reign, kinds map[string]int32) *plan {
 	p := &plan{
-		number: map[string]int32{}, ofKind: map[program.Asks][]int32{}, records: map[string][]int32{},
+		number: map[string]int32{}, ofKind: map[program.Asks][]int32{},
 		events: map[string][]int32{}, fields: map[string][]int32{},
 	}
 	for _, r := range reigns {
@@ -42,13 +42,13 @@ func newPlan(reigns []reign) *plan {
 	}
 	for _, r := range reigns {
 		for _, item := range r.items {
-			p.add(p.number[item.Code], item)
+			p.add(p.number[item.Code], item, kinds)
 		}
 	}
 	return p
 }
 
-func (p *plan) add(i int32, item *program.Item) {
+func (p *plan) add(i int32, item *program.Item, kinds map[string]int32) {
 	note := func(list []int32) []int32 {
 		if slices.Contains(list, i) {
 			return list
@@ -57,7 +57,11 @@ func (p *plan) add(i int32, item *program.Item) {
 	}
 	p.ofKind[item.Asks] = note(p.ofKind[item.Asks])
 	for _, what := range item.Records {
-		p.records[what] = note(p.records[what])
+		kind := kinds[what] // numbered when the version was put
+		for int(kind) >= len(p.records) {
+			p.records = append(p.records, nil)
+		}
+		p.records[kind] = note(p.records[kind])
 	}
 	for _, code := range item.Cadence.After {
 		p.events[code] = note(p.events[code])
@@ -91,8 +95,10 @@ type change struct {
 	fact         string
 	event        string
 	item         string // of an excusal
-	what         string // kind and code of the record
-	record       *record
+	done         bool   // a record was put
+	kind         int32  // kind and code of the record
+	post         string // of an appointment of a person
+	record       record
 	behind       bool // no record of that kind and code is later
 }
 
@@ -115,8 +121,10 @@ func (p *plan) touched(c *change, l *local, to []int32) []int32 {
 			to = append(to, i)
 		}
 	default:
-		to = append(to, p.records[c.what]...)
-		if l.subject.Asks == program.AsksPerson && strings.HasPrefix(c.what, appointment) {
+		if int(c.kind) < len(p.records) {
+			to = append(to, p.records[c.kind]...)
+		}
+		if c.post != "" {
 			to = addAll(to, from, p.fields["posts"])
 			to = addAll(to, from, p.other)
 		}

@@ -2,7 +2,6 @@ package standing
 
 import (
 	"slices"
-	"strings"
 
 	"lodebook/models/civil"
 	"lodebook/models/program"
@@ -99,7 +98,7 @@ func (v *view) posts(person *local, on civil.Day) []string {
 	var out []string
 	deeds := v.past(person).deeds
 	for i := range deeds {
-		if post, ok := strings.CutPrefix(deeds[i].what, appointment); ok && v.holdsPost(person, post, on) {
+		if post := v.e.kinds.post[deeds[i].kind]; post != "" && v.holdsPost(person, post, on) {
 			out = append(out, post)
 		}
 	}
@@ -137,7 +136,7 @@ func (v *view) appointment(person *local, post string, on civil.Day) *record {
 		return nil
 	}
 	var last deed
-	list := v.past(person).records(appointment + post)
+	list := v.records(person, appointment+post)
 	for i := range list {
 		r := &list[i]
 		if int32(r.site) != v.site.no || !r.knownAt(v.k) {

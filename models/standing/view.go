@@ -22,9 +22,15 @@ type view struct {
 	// can never hang on itself. In the view beneath it is nil.
 	beneath *view
 
-	obligation obligation  // scratch, see verdict
-	deeds      []deed      // scratch, see gather
-	turnDays   turns       // scratch, see segments
+	*scratch
+}
+
+// scratch is what a view writes into while it judges.
+type scratch struct {
+	obligation obligation  // see verdict
+	deeds      []deed      // see gather
+	turnDays   turns       // see segments
+	due        civil.Day   // see walk
 	days       []civil.Day // what the days of standings point into
 }
 
@@ -43,7 +49,7 @@ func (e *Engine) viewOf(s *site, k int64) *view {
 }
 
 func (e *Engine) newView(s *site, k int64, reigns []reign) *view {
-	return &view{e: e, site: s, k: k, reigns: reigns, answers: map[*program.Selector]*answers{}, ladders: map[int32]ladder{}}
+	return &view{e: e, site: s, k: k, reigns: reigns, answers: map[*program.Selector]*answers{}, ladders: map[int32]ladder{}, scratch: &scratch{}}
 }
 
 // day gives a day that stays put, for a standing to point to.

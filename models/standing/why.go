@@ -254,7 +254,7 @@ func (ob *obligation) named(r *record) string {
 // kind is the kind and code under which the record is on file.
 func (ob *obligation) kind(r *record) string {
 	for _, what := range ob.item.Records {
-		list := ob.past(ob.subject.local).records(what)
+		list := ob.records(ob.subject.local, what)
 		for i := range list {
 			if &list[i] == r {
 				return what
