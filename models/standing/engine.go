@@ -75,6 +75,7 @@ type exception struct {
 // past is what happened to a subject. A person's is shared by all sites.
 type past struct {
 	own    *owner
+	code   string     // of a person
 	homes  []home     // of a person: where they are known
 	deeds  []deedsOf  // in no order
 	events []happened // in no order
@@ -309,7 +310,7 @@ func (e *Engine) newLocal(s *site, sub Subject) *local {
 func (e *Engine) person(code string) int32 {
 	no, ok := e.names.find(code)
 	if !ok {
-		no = e.people.add(e.own, &past{own: e.own})
+		no = e.people.add(e.own, &past{own: e.own, code: code})
 		e.names.put(e.own, code, no)
 	}
 	return no
