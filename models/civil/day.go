@@ -29,7 +29,11 @@ func isLeap(year int) bool { return year%4 == 0 && (year%100 != 0 || year%400 ==
 // yearStart is the number of days from 0001-01-01 to the year's first day.
 func yearStart(year int) int {
 	y := year - 1
-	return y*365 + floorDiv(y, 4) - floorDiv(y, 100) + floorDiv(y, 400)
+	if y < 0 {
+		return y*365 + floorDiv(y, 4) - floorDiv(y, 100) + floorDiv(y, 400)
+	}
+	of := uint32(y)
+	return int(of*365 + of/4 - of/100 + of/400)
 }
 
 // monthStart is the number of days of the year before the month, counted from 0; 12 is the year's end.
@@ -87,23 +91,29 @@ func DaysIn(year int, month time.Month) int {
 	return monthStart(year, int(month)) - monthStart(year, int(month)-1)
 }
 
-// Date splits the day into year, month and day of the month.
+// Date splits the day into year, month and day of the month, by counting years from March, so that the
+// leap day comes last (E. G. Richards, Calendars, in the Explanatory Supplement to the Astronomical
+// Almanac, 3rd edition, 2013, section 15.11; from memory).
 func (d Day) Date() (year int, month time.Month, day int) {
-	const daysIn400Years = 146097
-	n := int(d - FirstDay)
-	year = floorDiv(n*400, daysIn400Years) + 1 // this year or one beside it
-	switch {
-	case n < yearStart(year):
-		year--
-	case n >= yearStart(year+1):
-		year++
+	const (
+		fromMarch      = 306 // days from 0000-03-01 to 0001-01-01
+		daysIn400Years = 146097
+		daysIn100Years = 36524
+		daysIn4Years   = 1461
+	)
+	n := int(d-FirstDay) + fromMarch
+	centuries := floorDiv(n, daysIn400Years)
+	n -= centuries * daysIn400Years
+	of := uint32(n)
+	years := (of - of/(daysIn4Years-1) + of/daysIn100Years - of/(daysIn400Years-1)) / 365
+	of -= 365*years + years/4 - years/100
+	m := (5*of + 2) / 153 // from March: 153 days in every five months
+	day = int(of-(153*m+2)/5) + 1
+	year, month = centuries*400+int(years), time.Month(m+3)
+	if month > time.December {
+		year, month = year+1, month-12
 	}
-	n -= yearStart(year)
-	m := n / 32 // this month or the one before it
-	if n >= monthStart(year, m+1) {
-		m++
-	}
-	return year, time.Month(m + 1), n - monthStart(year, m) + 1
+	return year, month, day
 }
 
 func (d Day) utc() time.Time { return time.Unix(int64(d)*secondsPerDay, 0).UTC() }

@@ -1,6 +1,7 @@
 package standing_test
 
 import (
+	"bytes"
 	"flag"
 	"fmt"
 	"math/rand/v2"
@@ -29,18 +30,29 @@ var networkFirst = civil.Of(2021, time.January, 1)
 // network is many sites with every cadence, made from a seed: about 3,300 obligations and 20,000
 // records a site.
 type network struct {
-	rng *rand.Rand
-	e   *standing.Engine
-	seq int64
+	records bool
+	rng     *rand.Rand
+	e       *standing.Engine
+	seq     int64
 }
 
 func newNetwork(sites int) *network {
-	n := &network{rng: rand.New(rand.NewPCG(7, 7)), e: standing.New()}
+	n := &network{rng: rand.New(rand.NewPCG(7, 7)), e: standing.New(), records: true}
 	p := networkProgram()
 	for s := range sites {
 		n.site(fmt.Sprintf("S%03d", s), p, s)
 	}
 	return n
+}
+
+// lines is the same network without its records.
+func (n *network) lines(sites int) (*standing.Engine, *network) {
+	m := &network{rng: rand.New(rand.NewPCG(7, 7)), e: standing.New()}
+	p := networkProgram()
+	for s := range sites {
+		m.site(fmt.Sprintf("S%03d", s), p, s)
+	}
+	return m.e, m
 }
 
 func networkProgram() *program.Program {
@@ -116,7 +128,11 @@ func (n *network) daily(code string, sub standing.Subject, what string) {
 
 func (n *network) put(code string, sub standing.Subject, what string, d civil.Day) {
 	l := n.line()
-	n.e.PutRecord(standing.Record{Line: l, Order: l.Seq, Site: code, Subject: sub, What: what, Day: d, Passed: n.rng.IntN(50) > 0})
+	passed := n.rng.IntN(50) > 0
+	if !n.records {
+		return
+	}
+	n.e.PutRecord(standing.Record{Line: l, Order: l.Seq, Site: code, Subject: sub, What: what, Day: d, Passed: passed})
 }
 
 func heap() uint64 {
@@ -158,9 +174,45 @@ func BenchmarkNetwork(b *testing.B) {
 			n.e.AllCounts(last)
 		}
 	})
+	b.Run("Recount", func(b *testing.B) {
+		for b.Loop() {
+			n.e.Recount()
+		}
+	})
+	b.Run("ScanAsOf", func(b *testing.B) {
+		for b.Loop() {
+			n.e.ScanAsOf()
+		}
+	})
+	b.Run("ScanNow", func(b *testing.B) {
+		for b.Loop() {
+			n.e.ScanNow()
+		}
+	})
+	b.Run("Asked", func(b *testing.B) {
+		for b.Loop() {
+			n.e.Asked(last)
+		}
+	})
 	b.Run("Over", func(b *testing.B) {
 		for b.Loop() {
 			if err := n.e.AllCountsOver(networkFirst, last, func(standing.SiteCourse) {}); err != nil {
+				b.Fatal(err)
+			}
+		}
+	})
+	b.Run("Snapshot", func(b *testing.B) {
+		var out bytes.Buffer
+		if err := n.e.WriteSnapshot(&out); err != nil {
+			b.Fatal(err)
+		}
+		b.ReportMetric(float64(out.Len()>>20), "MB")
+		for b.Loop() {
+			b.StopTimer()
+			e, _ := n.lines(*networkSites)
+			file := bytes.Clone(out.Bytes())
+			b.StartTimer()
+			if err := e.ReadSnapshot(file); err != nil {
 				b.Fatal(err)
 			}
 		}
