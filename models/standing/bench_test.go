@@ -96,3 +96,25 @@ func BenchmarkLoad(b *testing.B) {
 		largeSite(1000) // about 200,000 records
 	}
 }
+
+// Beside BenchmarkEvaluate: the same with the courses at hand, and only what falls short.
+func BenchmarkEvaluateByCourses(b *testing.B) {
+	e := largeSite(5000)
+	e.Build()
+	q := standing.Query{On: civil.Of(2025, time.December, 1), KnownAt: standing.Always}
+	b.Run("All", func(b *testing.B) {
+		for b.Loop() {
+			if got, err := e.Evaluate("S", q); err != nil || len(got) < 100000 {
+				b.Fatal(len(got), err)
+			}
+		}
+	})
+	q.Words = []standing.Word{standing.Lapsed, standing.Missing, standing.Failed}
+	b.Run("Gaps", func(b *testing.B) {
+		for b.Loop() {
+			if got, err := e.Evaluate("S", q); err != nil || len(got) == 0 {
+				b.Fatal(len(got), err)
+			}
+		}
+	})
+}

@@ -31,6 +31,30 @@ func countsOf(t fataler, e *standing.Engine, on civil.Day) standing.SiteCount {
 	return c
 }
 
+// sameRows holds an evaluation that may use the board against one of an engine that has none.
+func (w *world) sameRows(t fataler, e *standing.Engine, on civil.Day) {
+	t.Helper()
+	q := standing.Query{On: on, KnownAt: standing.Always}
+	if w.chance(30) {
+		q.Words = []standing.Word{standing.Lapsed, standing.Failed, standing.DataFault}
+	}
+	got, err := e.Evaluate("S", q)
+	if err != nil {
+		t.Fatalf("%v", err)
+	}
+	fresh := e.Fork()
+	fresh.PutVersion("S", w.n.versions[0]) // which leaves the board behind
+	want, err := fresh.Evaluate("S", q)
+	if err != nil {
+		t.Fatalf("%v", err)
+	}
+	for i := range max(len(got), len(want)) {
+		if i >= len(got) || i >= len(want) || written(got[i]) != written(want[i]) {
+			t.Fatalf("on %v row %d of %d and %d differs\n%s", on, i, len(got), len(want), w.tell())
+		}
+	}
+}
+
 // sameCounts holds what the board counts on a day against an evaluation of the same engine.
 func (w *world) sameCounts(t fataler, e *standing.Engine, on civil.Day) {
 	t.Helper()
@@ -84,6 +108,7 @@ func (w *world) checkKept(t fataler) {
 	first := base - 10
 	for d := first; d < base+civil.Day(2*w.spread+20); d += 1 + civil.Day(w.pick(w.spread/3+1)) {
 		w.sameCounts(t, e, d)
+		w.sameRows(t, e, d)
 		if w.chance(50) {
 			e.Turn("S", d)
 			w.sameCounts(t, e, d)

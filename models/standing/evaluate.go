@@ -1,6 +1,8 @@
 package standing
 
 import (
+	"slices"
+
 	"lodebook/models/civil"
 	"lodebook/models/program"
 )
@@ -18,12 +20,15 @@ func (e *Engine) Evaluate(site string, q Query) ([]Standing, error) {
 	if ed == nil {
 		return nil, nil
 	}
+	if q.KnownAt == Always {
+		v.board = v.site.made.Load() // where there is one, it knows who is asked and from when
+	}
 	c := v.columns(ed, q)
 	for _, asks := range program.AllAsks {
 		for _, p := range c.subjects[asks] { // by subject first, since what is on record about one lies together
 			for i := range c.columns {
 				if col := &c.columns[i]; col.item.Asks == asks {
-					if s, ok := v.standing(col.item, p, ed, q); ok {
+					if s, ok := v.standing(col.item, col.track, p, ed, q); ok {
 						col.rows = append(col.rows, s)
 					}
 				}
@@ -45,9 +50,9 @@ func (v *view) asked(asks program.Asks, q Query) []presence {
 }
 
 // standing judges one item of one subject; it is false where there is no obligation.
-func (v *view) standing(item *program.Item, p presence, ed *edition, q Query) (Standing, bool) {
-	ob, f, asked := v.verdict(item, p, ed, q.On)
-	if !asked {
+func (v *view) standing(item *program.Item, track int32, p presence, ed *edition, q Query) (Standing, bool) {
+	ob, f, asked := v.look(item, track, p, ed, q)
+	if !asked || q.Words != nil && !slices.Contains(q.Words, f.word) {
 		return Standing{}, false
 	}
 	s := Standing{Item: item.Code, Version: ed.Number, Subject: p.subject, Rule: item.Cadence.Rule, Word: f.word}
@@ -60,6 +65,28 @@ func (v *view) standing(item *program.Item, p presence, ed *edition, q Query) (S
 		s.Why = ob.why(f)
 	}
 	return s, true
+}
+
+// look is the verdict, by what the board knows where there is one. What the query does not ask for is not
+// judged then.
+func (v *view) look(item *program.Item, track int32, p presence, ed *edition, q Query) (*obligation, finding, bool) {
+	if v.board == nil {
+		return v.verdict(item, p, ed, q.On)
+	}
+	no := v.board.row(track, p.no)
+	if no < 0 {
+		return nil, finding{}, false
+	}
+	t := v.board.tracks[track]
+	word := wordOn(t.course(no), q.On)
+	if word == uint8(none) || q.Words != nil && !slices.Contains(q.Words, Words[word]) {
+		return nil, finding{}, false
+	}
+	a := &t.asked[no]
+	if a.reign < 0 || q.Why {
+		return v.verdict(item, p, ed, q.On)
+	}
+	return v.asks(item, p, ed, q.On, &a.start)
 }
 
 // fill writes the finding down.
@@ -102,8 +129,9 @@ type columns struct {
 }
 
 type column struct {
-	item *program.Item
-	rows []Standing
+	item  *program.Item
+	track int32 // of the board, where there is one
+	rows  []Standing
 }
 
 func (v *view) columns(ed *edition, q Query) *columns {
@@ -114,9 +142,16 @@ func (v *view) columns(ed *edition, q Query) *columns {
 	most := 0
 	for _, item := range ed.items {
 		if q.Item == "" || q.Item == item.Code {
-			c.columns = append(c.columns, column{item: item})
+			col := column{item: item}
+			if v.board != nil {
+				col.track = v.board.plan.number[item.Code]
+			}
+			c.columns = append(c.columns, col)
 			most += len(c.subjects[item.Asks])
 		}
+	}
+	if q.Words != nil {
+		return c // of which there may be few
 	}
 	c.room = make([]Standing, most)
 	at := 0

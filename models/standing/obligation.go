@@ -61,8 +61,16 @@ func (v *view) verdict(item *program.Item, p presence, ed *edition, on civil.Day
 	if !yes {
 		return nil, finding{}, false
 	}
+	return v.asks(item, p, ed, on, nil)
+}
+
+// asks judges the item of a subject of whom it is asked, since the start if that is known.
+func (v *view) asks(item *program.Item, p presence, ed *edition, on civil.Day, start *civil.Day) (ob *obligation, f finding, asked bool) {
 	ob = &v.obligation
 	*ob = obligation{view: v, edition: ed, item: item, subject: p, on: on}
+	if start != nil {
+		ob.start, ob.started = *start, true
+	}
 	ob.deeds = v.gather(item, p.local, ed, on)
 	ob.excusals = v.excuse(item.Code, p.local)
 	if item.Cadence.Rule == program.After {

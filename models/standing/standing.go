@@ -113,13 +113,14 @@ type Excusal struct {
 	Opens   bool
 }
 
-// Query asks for standings on a day as known at a sequence number (Always: all of it). Item and
-// Subject narrow it; Why asks for the explanation in sentences.
+// Query asks for standings on a day as known at a sequence number (Always: all of it). Item, Subject and
+// Words narrow it; Why asks for the explanation in sentences.
 type Query struct {
 	On      civil.Day
 	KnownAt int64
 	Item    string
 	Subject *Subject
+	Words   []Word // only these; nil: all
 	Why     bool
 }
 
