@@ -23,7 +23,7 @@ func (c *compiled) fork() *compiled {
 	return f
 }
 
-// board holds the courses of all obligations of a site, by all that is recorded: for each item a track
+// board holds the courses of all obligations of a site: for each item a track
 // of rows, one for each subject that it is ever asked of.
 type board struct {
 	own     *owner
@@ -100,7 +100,7 @@ func (e *Engine) board(s *site) *board {
 }
 
 func (e *Engine) newBoard(s *site) *board {
-	v := e.viewOf(s, Always)
+	v := e.viewOf(s, e.known)
 	b := &board{own: e.own, rowsOwn: e.own, plan: newPlan(v.reigns, e.kinds.number), present: noDay, rowOf: make([][]int32, len(s.locals))}
 	b.tracks = make([]*track, len(b.plan.items))
 	for i, code := range b.plan.items {

@@ -13,9 +13,9 @@ import (
 )
 
 // countsOf counts the standings that an evaluation from the lines themselves gives.
-func countsOf(t fataler, e *standing.Engine, on civil.Day) standing.SiteCount {
+func countsOf(t fataler, e *standing.Engine, on civil.Day, k int64) standing.SiteCount {
 	t.Helper()
-	rows, err := e.Evaluate("S", standing.Query{On: on, KnownAt: standing.Always})
+	rows, err := e.Evaluate("S", standing.Query{On: on, KnownAt: k})
 	if err != nil {
 		t.Fatalf("%v", err)
 	}
@@ -62,7 +62,7 @@ func (w *world) sameCounts(t fataler, e *standing.Engine, on civil.Day) {
 	if err != nil {
 		t.Fatalf("%v", err)
 	}
-	if want := countsOf(t, e, on); fmt.Sprint(got) != fmt.Sprint(want) {
+	if want := countsOf(t, e, on, standing.Always); fmt.Sprint(got) != fmt.Sprint(want) {
 		t.Fatalf("on %v:\n  got %+v\n want %+v\n%s", on, got, want, w.tell())
 	}
 }
@@ -119,6 +119,7 @@ func (w *world) checkKept(t fataler) {
 	}
 	w.checkOver(t, e, first)
 	w.checkHistory(t, e)
+	w.checkKnown(t, e)
 }
 
 // checkOver holds the sweep against the counts of each day.
@@ -140,6 +141,23 @@ func (w *world) checkOver(t fataler, e *standing.Engine, from civil.Day) {
 			t.Fatalf("on %v the sweep from %v has %v and the day %v\n%s", d, from, got, want, w.tell())
 		}
 	}
+}
+
+// checkKnown holds counts as of an earlier moment against an evaluation.
+func (w *world) checkKnown(t fataler, e *standing.Engine) {
+	k := int64(w.pick(int(w.seq) + 1))
+	known := e.AsKnownAt(k)
+	for range 3 {
+		on := w.day() + civil.Day(w.pick(w.spread))
+		got, err := known.Counts("S", on)
+		if err != nil {
+			t.Fatalf("%v", err)
+		}
+		if want := countsOf(t, e, on, k); fmt.Sprint(got) != fmt.Sprint(want) {
+			t.Fatalf("on %v as of %d:\n  got %v\n want %v\n%s", on, k, got, want, w.tell())
+		}
+	}
+	w.checkOver(t, known, base)
 }
 
 // checkHistory holds the histories against the standings of single days, also as known earlier.

@@ -37,7 +37,7 @@ type SiteCount struct {
 	Items []ItemCount
 }
 
-// Counts counts the standings of a site on a day by all that is recorded. On the present day of the
+// Counts counts the standings of a site on a day, by all that is recorded (but see AsKnownAt). On the present day of the
 // site (see Turn) they are at hand; on any other they are looked up in the courses.
 func (e *Engine) Counts(site string, on civil.Day) (SiteCount, error) {
 	s := e.site(site)
@@ -207,7 +207,7 @@ type SiteCourse struct {
 }
 
 // CountsOver counts the standings of a site on every day of a period by one sweep over the days on which a
-// standing turns, by all that is recorded.
+// standing turns.
 func (e *Engine) CountsOver(site string, from, to civil.Day) (SiteCourse, error) {
 	s := e.site(site)
 	if s == nil || len(s.editions) == 0 {

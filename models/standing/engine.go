@@ -21,6 +21,7 @@ import (
 // what another engine may be reading. Lists only ever grow behind the end that a reader knows.
 type Engine struct {
 	own    *owner
+	known  int64   // what is recorded up to it counts in the boards
 	sites  []*site // by number
 	number map[string]int32
 	kinds  kinds           // of records
@@ -104,7 +105,7 @@ type happened struct {
 }
 
 // New is an engine with nothing on record.
-func New() *Engine { return &Engine{own: &owner{}, number: map[string]int32{}} }
+func New() *Engine { return &Engine{own: &owner{}, known: Always, number: map[string]int32{}} }
 
 // Fork gives an engine with the same content. From then on e is only read, by any number of readers
 // at once, while the fork may be written. A fork that is thrown away leaves no trace, but only one
@@ -117,6 +118,20 @@ func (e *Engine) Fork() *Engine {
 	f.names = e.names.fork()
 	f.people = e.people.fork()
 	return &f
+}
+
+// AsKnownAt gives an engine, for reading only, whose counts and histories are by what was recorded up to
+// a sequence number: by entries that had not been superseded or withdrawn by then. What it takes them
+// from is made when it is first asked for, and kept as long as the engine is.
+func (e *Engine) AsKnownAt(k int64) *Engine {
+	f := e.Fork()
+	f.known = k
+	for i, s := range f.sites {
+		c := *s
+		c.compiled = &compiled{}
+		f.sites[i] = &c
+	}
+	return f
 }
 
 // PutVersion puts a recorded version of the site's program.

@@ -20,7 +20,7 @@ func (e *Engine) Evaluate(site string, q Query) ([]Standing, error) {
 	if ed == nil {
 		return nil, nil
 	}
-	if q.KnownAt == Always {
+	if q.KnownAt == e.known {
 		v.board = v.site.made.Load() // where there is one, it knows who is asked and from when
 	}
 	c := v.columns(ed, q)

@@ -21,7 +21,7 @@ func (e *Engine) History(site, item string, s Subject, k int64) ([]Span, error) 
 	if at == nil || len(at.editions) == 0 {
 		return nil, fmt.Errorf("site %q is not in the book", site)
 	}
-	if k == Always {
+	if k == e.known {
 		return spansOf(e.courseOf(at, item, s)), nil
 	}
 	v := e.viewOf(at, k)
@@ -57,7 +57,7 @@ func spansOf(course []point) []Span {
 	return out
 }
 
-// EachHistory calls fn with the history of every obligation of a site, by all that is recorded, in order
+// EachHistory calls fn with the history of every obligation of a site, in order
 // of item; the spans are good until fn returns.
 func (e *Engine) EachHistory(site string, fn func(item string, s Subject, spans []Span)) error {
 	at := e.site(site)
