@@ -90,7 +90,7 @@ type importing struct {
 	entries []store.Entry
 	veils   [][]store.Veil
 	drafts  []draft
-	idle    map[string]bool // records that answer no item, noted once each
+	idle    map[string]bool // of each kind and code of record, whether it answers no item
 }
 
 const importChunk = 1000
@@ -240,20 +240,12 @@ func (in *importing) identify(d *rowDraft, line int) (string, bool, error) {
 		in.receipt = Receipt{}
 		return d.id, again, err
 	}
-	hash := uuid.NewSHA1(in.book, []byte(strings.Join([]string{in.o.Site, in.o.Table, d.content}, "\x1f")))
-	if d.run != "" {
-		if in.last[d.run] == hash {
-			return "", true, nil
-		}
-		in.last[d.run] = hash
+	hash, n, follows := in.known(d)
+	if follows {
+		return "", true, nil
 	}
-	n := in.seen[hash]
-	in.seen[hash]++
 	for again := 0; ; again++ {
-		id := hash
-		if n > 0 || again > 0 {
-			id = uuid.NewSHA1(hash, fmt.Appendf(nil, "%d %d", n, again))
-		}
+		id := contentID(hash, n, again)
 		found, err := in.tx.EntryIDs([]string{id.String()})
 		if err != nil {
 			return "", false, err
@@ -268,6 +260,29 @@ func (in *importing) identify(d *rowDraft, line int) (string, bool, error) {
 		in.keepCorrected(d, seq, line)
 		return id.String(), true, nil
 	}
+}
+
+// known gives the hash of the row's content, how many rows before it said the same, and whether it follows
+// its equal and is one with it.
+func (in *importing) known(d *rowDraft) (hash uuid.UUID, n int, follows bool) {
+	hash = uuid.NewSHA1(in.book, []byte(strings.Join([]string{in.o.Site, in.o.Table, d.content}, "\x1f")))
+	if d.run != "" {
+		if in.last[d.run] == hash {
+			return hash, 0, true
+		}
+		in.last[d.run] = hash
+	}
+	n = in.seen[hash]
+	in.seen[hash]++
+	return hash, n, false
+}
+
+// contentID is the identifier of the row after n equal ones; again counts how often its import was taken back.
+func contentID(hash uuid.UUID, n, again int) uuid.UUID {
+	if n == 0 && again == 0 {
+		return hash
+	}
+	return uuid.NewSHA1(hash, fmt.Appendf(nil, "%d %d", n, again))
 }
 
 // undone tells whether the entry was taken back with the whole of its import: then the row may be
@@ -321,7 +336,9 @@ func (in *importing) finish() error {
 		return err
 	}
 	for _, what := range sortedKeys(in.idle) {
-		in.report.Notes = append(in.report.Notes, "no item of the checklist asks for "+what+"; its records are kept but answer nothing")
+		if in.idle[what] {
+			in.report.Notes = append(in.report.Notes, "no item of the checklist asks for "+what+"; its records are kept but answer nothing")
+		}
 	}
 	if in.report.Written == 0 {
 		return nil

@@ -4,6 +4,7 @@ import (
 	"maps"
 	"slices"
 	"strings"
+	"time"
 
 	"lodebook/models/program"
 	"lodebook/models/store"
@@ -21,20 +22,33 @@ var (
 
 // cells reads a row's cells as forms want them, gathering the faults.
 type cells struct {
-	in     *importing
-	row    table.Row
+	row table.Row
+	rowFaults
+	zone *time.Location
+}
+
+// rowFaults gathers what is wrong with one row.
+type rowFaults struct {
+	line   int
 	faults []table.Fault
-	parts  []string // of the row's content
 }
 
-func (c *cells) note(col, value string) string {
+// content is what a row says, as it is known again: a part for each column that is not empty.
+type content []string
+
+func (c *content) note(col, value string) {
 	if value != "" {
-		c.parts = append(c.parts, col+"="+value)
+		*c = append(*c, col+"="+value)
 	}
-	return value
 }
 
-func (c *cells) text(col string) string { return c.note(col, c.row.Text(col)) }
+func (c content) String() string { return strings.Join(c, "\x1f") }
+
+func (in *importing) cells(row table.Row) *cells {
+	return &cells{row: row, rowFaults: rowFaults{line: row.Line}, zone: in.c.zone()}
+}
+
+func (c *cells) text(col string) string { return c.row.Text(col) }
 
 // day gives a day as YYYY-MM-DD, or empty.
 func (c *cells) day(col string) string {
@@ -46,12 +60,12 @@ func (c *cells) day(col string) string {
 	if !ok {
 		return ""
 	}
-	return c.note(col, d.String())
+	return d.String()
 }
 
 // moment gives a day or an instant as an entry holds it, or empty.
 func (c *cells) moment(col string) string {
-	m, ok, f := c.row.Moment(col, c.in.c.zone())
+	m, ok, f := c.row.Moment(col, c.zone)
 	if f != nil {
 		c.faults = append(c.faults, *f)
 		return ""
@@ -59,29 +73,27 @@ func (c *cells) moment(col string) string {
 	if !ok {
 		return ""
 	}
-	return c.note(col, moment{day: m.Day, time: m.Time}.String())
+	return moment{day: m.Day, time: m.Time}.String()
 }
 
 // add turns faults of a body into faults of the row.
-func (c *cells) add(faults []Fault) {
+func (c *rowFaults) add(faults []Fault) {
 	for _, f := range faults {
 		if slices.ContainsFunc(c.faults, func(o table.Fault) bool { return o.Column == f.Field }) {
 			continue // one fault of a cell is enough
 		}
-		c.faults = append(c.faults, table.Fault{Line: c.row.Line, Column: f.Field, Value: f.Value, Problem: f.Problem, Accepted: f.Accepted})
+		c.faults = append(c.faults, table.Fault{Line: c.line, Column: f.Field, Value: f.Value, Problem: f.Problem, Accepted: f.Accepted})
 	}
 }
 
-func (c *cells) content() string { return strings.Join(c.parts, "\x1f") }
-
-// finish validates the body and gives the draft, or the faults.
-func (c *cells) finish(d rowDraft, silent bool) (rowDraft, []table.Fault) {
-	d.content = c.content()
+// finish validates the draft's body against what is on record and gives the draft, or the faults. A silent
+// one says nothing new and has no body.
+func (c *rowFaults) finish(in *importing, d rowDraft, silent bool) (rowDraft, []table.Fault) {
 	if silent && len(c.faults) == 0 {
 		d.body = nil
 		return d, nil
 	}
-	c.add(d.body.validate(c.in.c))
+	c.add(d.body.validate(in.c))
 	return d, c.faults
 }
 
@@ -124,7 +136,7 @@ func (c *cells) factCells(declared map[string]program.Fact) map[string]string {
 			if f != nil {
 				c.faults = append(c.faults, *f)
 			} else if ok {
-				out[k] = c.note(k, n)
+				out[k] = n
 			}
 		default:
 			out[k] = c.text(k)
@@ -134,76 +146,158 @@ func (c *cells) factCells(declared map[string]program.Fact) map[string]string {
 }
 
 func personRow(in *importing, row table.Row) (rowDraft, []table.Fault) {
-	in.c.m = in.m
-	c := &cells{in: in, row: row}
+	c := in.cells(row)
 	f := PersonForm{
 		Code: c.text("code"), Name: c.text("name"), Email: c.text("email"), Badge: c.text("badge"), Level: c.text("level"),
 		Crew: c.text("crew"), Joined: c.day("joined"), Left: c.day("left"), From: c.day("from"), Facts: c.factCells(in.c.personFacts()),
 	}
+	return f.draft(in, c.rowFaults)
+}
+
+func (PersonForm) table() string { return "people" }
+
+// draft makes the draft of a row that says what the form does, or gives its faults. So do those of the
+// other tables' forms.
+func (f PersonForm) draft(in *importing, c rowFaults) (rowDraft, []table.Fault) {
+	in.c.m = in.m
 	body, faults := in.c.personBody(f)
 	c.add(faults)
 	if body == nil {
 		return rowDraft{}, c.faults
 	}
-	d := rowDraft{key: store.SubjectKey{Kind: string(program.AsksPerson), Code: f.Code}, body: body}
-	d.undoes = in.personUndoes(f, row.Line)
-	return c.finish(d, body.saysNothing())
+	var says content
+	for _, x := range [][2]string{
+		{"code", f.Code}, {"name", f.Name}, {"email", f.Email}, {"badge", f.Badge}, {"level", f.Level}, {"crew", f.Crew},
+		{"joined", f.Joined}, {"left", f.Left}, {"from", f.From},
+	} {
+		says.note(x[0], x[1])
+	}
+	says.facts(f.Facts)
+	d := rowDraft{key: store.SubjectKey{Kind: string(program.AsksPerson), Code: f.Code}, body: body, content: says.String()}
+	d.undoes = in.personUndoes(f, c.line)
+	return c.finish(in, d, body.saysNothing())
+}
+
+func (c *content) facts(facts map[string]string) {
+	for _, k := range sortedKeys(facts) {
+		c.note(k, facts[k])
+	}
 }
 
 func fixtureRow(in *importing, row table.Row) (rowDraft, []table.Fault) {
-	in.c.m = in.m
-	c := &cells{in: in, row: row}
+	c := in.cells(row)
 	f := FixtureForm{
 		Code: c.text("code"), Kind: c.text("kind"), Name: c.text("name"), Zone: c.text("zone"), Since: c.day("since"), Until: c.day("until"), From: c.day("from"),
 	}
 	f.Facts = c.factCells(in.allFixtureFacts())
+	return f.draft(in, c.rowFaults)
+}
+
+func (FixtureForm) table() string { return "fixtures" }
+
+func (f FixtureForm) draft(in *importing, c rowFaults) (rowDraft, []table.Fault) {
+	in.c.m = in.m
 	body, faults := in.c.fixtureBody(f)
 	c.add(faults)
 	if body == nil {
 		return rowDraft{}, c.faults
 	}
-	d := rowDraft{key: store.SubjectKey{Site: in.o.Site, Kind: string(program.AsksFixture), Code: f.Code}, body: body}
-	d.undoes = in.fixtureUndoes(f, row.Line)
-	return c.finish(d, body.saysNothing(in.m, in.o.Site))
+	var says content
+	for _, x := range [][2]string{
+		{"code", f.Code}, {"kind", f.Kind}, {"name", f.Name}, {"zone", f.Zone}, {"since", f.Since}, {"until", f.Until}, {"from", f.From},
+	} {
+		says.note(x[0], x[1])
+	}
+	says.facts(f.Facts)
+	d := rowDraft{key: store.SubjectKey{Site: in.o.Site, Kind: string(program.AsksFixture), Code: f.Code}, body: body, content: says.String()}
+	d.undoes = in.fixtureUndoes(f, c.line)
+	return c.finish(in, d, body.saysNothing(in.m, in.o.Site))
 }
 
 func recordRow(in *importing, row table.Row) (rowDraft, []table.Fault) {
-	c := &cells{in: in, row: row}
-	id := strings.ToLower(row.Text("id"))
-	f := RecordForm{Record: c.text("record"), Subject: row.Text("subject"), On: c.moment("on"), Result: strings.ToLower(row.Text("result")), Until: c.day("until"), Limit: strings.Join(strings.Fields(c.text("limit")), " "), By: c.text("by"), Note: c.text("note")}
-	body, faults := in.c.recordBody(f)
-	c.add(faults)
-	c.note("result", body.Result)
-	c.note("subject", body.Subject.Kind+":"+body.Subject.Code)
-	if id != "" && checkID(id) != nil {
+	c := in.cells(row)
+	f := RecordForm{
+		ID: strings.ToLower(c.text("id")), Record: c.text("record"), Subject: c.text("subject"), On: c.moment("on"), Result: strings.ToLower(c.text("result")),
+		Until: c.day("until"), Limit: c.text("limit"), By: c.text("by"), Note: c.text("note"),
+	}
+	if f.ID != "" && checkID(f.ID) != nil {
 		c.faults = append(c.faults, *row.Fault("id", "is no identifier", "a UUID, or nothing"))
 	}
-	if len(c.faults) == 0 && !in.m.site(in.o.Site).answers(body.Record) {
-		in.idle[body.Record] = true
+	return f.draft(in, c.rowFaults)
+}
+
+func (RecordForm) table() string { return "records" }
+
+func (f RecordForm) draft(in *importing, c rowFaults) (rowDraft, []table.Fault) {
+	body, faults := in.c.recordBody(f)
+	c.add(faults)
+	subject := body.Subject.Kind + ":" + body.Subject.Code
+	var says content
+	for _, x := range [][2]string{
+		{"record", f.Record}, {"on", body.On}, {"until", f.Until}, {"limit", f.Limit}, {"by", f.By}, {"note", f.Note},
+		{"result", body.Result}, {"subject", subject},
+	} {
+		says.note(x[0], x[1])
 	}
-	d := rowDraft{id: id, key: body.Subject.key(in.o.Site), run: body.Subject.Kind + ":" + body.Subject.Code + " " + body.Record, body: body}
-	return c.finish(d, false)
+	if _, known := in.idle[body.Record]; !known && len(c.faults) == 0 {
+		in.idle[body.Record] = !in.m.site(in.o.Site).answers(body.Record)
+	}
+	d := rowDraft{id: f.ID, key: body.Subject.key(in.o.Site), run: subject + " " + body.Record, body: body, content: says.String()}
+	return c.finish(in, d, false)
 }
 
 func eventRow(in *importing, row table.Row) (rowDraft, []table.Fault) {
-	c := &cells{in: in, row: row}
-	body, faults := in.c.eventBody(EventForm{Event: c.text("event"), Subject: c.text("subject"), On: c.moment("on"), Note: c.text("note")})
+	c := in.cells(row)
+	f := EventForm{Event: c.text("event"), Subject: c.text("subject"), On: c.moment("on"), Note: c.text("note")}
+	return f.draft(in, c.rowFaults)
+}
+
+func (EventForm) table() string { return "events" }
+
+func (f EventForm) draft(in *importing, c rowFaults) (rowDraft, []table.Fault) {
+	body, faults := in.c.eventBody(f)
 	c.add(faults)
-	return c.finish(rowDraft{key: body.Subject.key(in.o.Site), body: body}, false)
+	var says content
+	for _, x := range [][2]string{{"event", f.Event}, {"subject", f.Subject}, {"on", body.On}, {"note", f.Note}} {
+		says.note(x[0], x[1])
+	}
+	return c.finish(in, rowDraft{key: body.Subject.key(in.o.Site), body: body, content: says.String()}, false)
 }
 
 func excusalRow(in *importing, row table.Row) (rowDraft, []table.Fault) {
-	c := &cells{in: in, row: row}
+	c := in.cells(row)
 	f := ExcusalForm{Item: c.text("item"), Subject: c.text("subject"), From: c.day("from"), To: c.day("to"), Reason: c.text("reason"), ApprovedBy: c.text("approved_by"), Opens: c.text("opens")}
+	return f.draft(in, c.rowFaults)
+}
+
+func (ExcusalForm) table() string { return "excusals" }
+
+func (f ExcusalForm) draft(in *importing, c rowFaults) (rowDraft, []table.Fault) {
 	body, faults := in.c.excusalBody(f)
 	c.add(faults)
-	return c.finish(rowDraft{key: body.Subject.key(in.o.Site), body: body}, false)
+	var says content
+	for _, x := range [][2]string{
+		{"item", f.Item}, {"subject", f.Subject}, {"from", f.From}, {"to", f.To}, {"reason", f.Reason}, {"approved_by", f.ApprovedBy}, {"opens", f.Opens},
+	} {
+		says.note(x[0], x[1])
+	}
+	return c.finish(in, rowDraft{key: body.Subject.key(in.o.Site), body: body, content: says.String()}, false)
 }
 
 func pauseRow(in *importing, row table.Row) (rowDraft, []table.Fault) {
-	c := &cells{in: in, row: row}
+	c := in.cells(row)
 	f := PauseForm{Subject: c.text("subject"), From: c.day("from"), To: c.day("to"), Reason: c.text("reason")}
+	return f.draft(in, c.rowFaults)
+}
+
+func (PauseForm) table() string { return "pauses" }
+
+func (f PauseForm) draft(in *importing, c rowFaults) (rowDraft, []table.Fault) {
 	body, faults := in.c.pauseBody(f)
 	c.add(faults)
-	return c.finish(rowDraft{key: body.Subject.key(in.o.Site), body: body}, false)
+	var says content
+	for _, x := range [][2]string{{"subject", f.Subject}, {"from", f.From}, {"to", f.To}, {"reason", f.Reason}} {
+		says.note(x[0], x[1])
+	}
+	return c.finish(in, rowDraft{key: body.Subject.key(in.o.Site), body: body, content: says.String()}, false)
 }
