@@ -27,6 +27,7 @@ type Engine struct {
 	kinds  kinds           // of records
 	names  names           // numbers of people
 	people pages           // what happened to people, by number
+	marks  marks           // identifiers of the entries of records, by sequence number
 	views  map[int32]*view // the writer's, by site
 	room   [2]*scratch     // that they write into
 }
@@ -117,6 +118,7 @@ func (e *Engine) Fork() *Engine {
 	f.sites = slices.Clone(e.sites)
 	f.names = e.names.fork()
 	f.people = e.people.fork()
+	f.marks = e.marks.fork()
 	return &f
 }
 
@@ -186,6 +188,7 @@ func (e *Engine) PutRecord(r Record) {
 		p.deeds = append(p.deeds, deedsOf{kind: kind})
 	}
 	kept := newRecord(&r, at)
+	e.marks.put(e.own, kept.seq, markOf(r.ID))
 	fresh := len(p.deeds[i].list)
 	p.deeds[i].list = upsert(p.deeds[i].list, kept, compareRecords)
 	list := p.deeds[i].list

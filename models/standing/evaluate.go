@@ -95,7 +95,7 @@ func (ob *obligation) fill(s *Standing, f finding) {
 	s.Due = f.due
 	s.InGrace = f.word == Closing && ob.on > *f.due
 	if f.record != nil {
-		s.Record = f.record.id.String()
+		s.Record = ob.e.marks.at(f.record.seq).String()
 	}
 	if f.excusal != nil && f.excusal.To != nil {
 		s.ExcusedUntil = ob.day(*f.excusal.To)

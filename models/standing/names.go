@@ -3,6 +3,7 @@ package standing
 import (
 	"hash/maphash"
 	"maps"
+	"slices"
 )
 
 // names numbers people by their code. Its parts are copied when they are first written after a fork,
@@ -92,4 +93,39 @@ func (p *pages) add(own *owner, x *past) int32 {
 	p.n++
 	p.set(own, no, x)
 	return no
+}
+
+// marks are the identifiers of entries by sequence number, in pages as those of people.
+type marks struct{ list []markPage }
+
+type markPage struct {
+	own *owner
+	of  *[markPageSize]mark // nil: none
+}
+
+const markPageSize = 1024
+
+func (m marks) fork() marks { return marks{slices.Clone(m.list)} }
+
+func (m *marks) at(seq uint32) mark {
+	if no := int(seq / markPageSize); no < len(m.list) && m.list[no].of != nil {
+		return m.list[no].of[seq%markPageSize]
+	}
+	return markOf("")
+}
+
+func (m *marks) put(own *owner, seq uint32, id mark) {
+	no := int(seq / markPageSize)
+	if no >= len(m.list) {
+		m.list = append(m.list, make([]markPage, no+1-len(m.list))...)
+	}
+	p := &m.list[no]
+	if p.own != own {
+		of := &[markPageSize]mark{}
+		if p.of != nil {
+			*of = *p.of
+		}
+		*p = markPage{own, of}
+	}
+	p.of[seq%markPageSize] = id
 }

@@ -14,7 +14,6 @@ import (
 
 // record is a Record as it is kept: what the rules read and no more, since there are many.
 type record struct {
-	id         mark
 	at         int64 // microseconds since 1970 in UTC, or untimed
 	seq, ended uint32
 	day        civil.Day
@@ -31,7 +30,7 @@ const noDay = civil.LastDay + 1
 
 func newRecord(r *Record, site int32) record {
 	kept := record{
-		id: markOf(r.ID), at: untimed, seq: small(r.Seq), ended: small(r.Ended), day: r.Day,
+		at: untimed, seq: small(r.Seq), ended: small(r.Ended), day: r.Day,
 		until: noDay, site: uint16(site), passed: r.Passed,
 	}
 	if site > math.MaxUint16 {

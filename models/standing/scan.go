@@ -6,11 +6,11 @@ import (
 	"lodebook/models/civil"
 )
 
-// Bytes is how large the columns are in which the engine keeps what it judges by: the records, and of
+// Bytes is how large the columns are in which the engine keeps what it judges by: the records with the identifiers of their entries, and of
 // the boards that are made the rows and points of all courses. What leads to them, and what is on
 // record about subjects beside their records, is not in it.
 func (e *Engine) Bytes() int64 {
-	var n int64
+	n := int64(len(e.marks.list)) * markPageSize * int64(unsafe.Sizeof(mark{}))
 	for no := range e.people.n {
 		n += e.people.at(no).bytes()
 	}

@@ -6,6 +6,7 @@ import (
 	"encoding/binary"
 	"errors"
 	"io"
+	"math"
 	"slices"
 	"unsafe"
 
@@ -17,7 +18,7 @@ import (
 // read. It is for the same program on the same kind of machine, beside a database that has it all.
 
 // snapshotForm changes whenever the layout of a column does.
-const snapshotForm = 1
+const snapshotForm = 2
 
 var snapshotMagic = []byte("LODEBOOK")
 
@@ -30,6 +31,7 @@ func (e *Engine) WriteSnapshot(w io.Writer) error {
 	h.raw(snapshotMagic)
 	h.numbers(snapshotForm, 1, uint32(unsafe.Sizeof(record{})), uint32(unsafe.Sizeof(row{})), uint32(unsafe.Sizeof(asking{})))
 	h.texts(e.kinds.what)
+	pages := h.marks(e.marks)
 	for _, of := range e.sites {
 		h.site(e, of)
 	}
@@ -55,6 +57,11 @@ func (e *Engine) WriteSnapshot(w io.Writer) error {
 	_, err := out.Write(size[:])
 	if err == nil {
 		_, err = out.Write(h.Bytes())
+	}
+	for _, page := range pages {
+		if err == nil {
+			_, err = out.Write(bytesOf(page))
+		}
 	}
 	for _, list := range lists {
 		if err == nil {
@@ -128,6 +135,20 @@ func (h *head) past(p *past, lists [][]record) [][]record {
 	return lists
 }
 
+// marks writes which pages of identifiers there are, and gives them.
+func (h *head) marks(m marks) [][]mark {
+	var pages [][]mark
+	var numbers []uint32
+	for no, p := range m.list {
+		if p.of != nil {
+			pages, numbers = append(pages, p.of[:]), append(numbers, uint32(no))
+		}
+	}
+	h.numbers(uint32(len(numbers)))
+	h.numbers(numbers...)
+	return pages
+}
+
 func (h *head) site(e *Engine, s *site) {
 	h.text(s.code)
 	h.numbers(uint32(len(s.locals)))
@@ -174,6 +195,7 @@ func (e *Engine) ReadSnapshot(b []byte) error {
 	for i := range r.kinds {
 		r.kinds[i] = e.kind(r.text())
 	}
+	r.marks(e)
 	var sites []*siteSnapshot
 	for r.ok() && !r.end() {
 		sites = append(sites, r.site(e))
@@ -265,6 +287,24 @@ func columnOf[T any](r *reader, n int) []T {
 	c := unsafe.Slice((*T)(unsafe.Pointer(&r.columns[0])), n)
 	r.columns = r.columns[n*size:]
 	return c[:n:n]
+}
+
+// marks finds the pages of identifiers at the beginning of the columns.
+func (r *reader) marks(e *Engine) {
+	last := -1
+	for range r.count() {
+		no := int(r.number())
+		page := columnOf[mark](r, markPageSize)
+		r.must(no > last && no <= math.MaxUint32/markPageSize)
+		if !r.ok() {
+			return
+		}
+		last = no
+		if no >= len(e.marks.list) {
+			e.marks.list = append(e.marks.list, make([]markPage, no+1-len(e.marks.list))...)
+		}
+		e.marks.list[no] = markPage{e.own, (*[markPageSize]mark)(page)}
+	}
 }
 
 type siteSnapshot struct {

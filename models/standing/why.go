@@ -248,7 +248,7 @@ func (ob *obligation) whyAfter(r *reasons, f finding) {
 
 // named says which record: its kind, day, time and entry.
 func (ob *obligation) named(r *record) string {
-	return fmt.Sprintf("%s of %s%s", ob.kind(r), ob.moment(r.day, r.time()), entry(r.id.String()))
+	return fmt.Sprintf("%s of %s%s", ob.kind(r), ob.moment(r.day, r.time()), entry(ob.e.marks.at(r.seq).String()))
 }
 
 // kind is the kind and code under which the record is on file.
