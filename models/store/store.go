@@ -18,13 +18,18 @@ type Store struct {
 	path string
 	w, r *gorm.DB
 	set  settings
+
+	stamps stamps
 }
 
 // Path is where the book is.
 func (s *Store) Path() string { return s.path }
 
 // Close closes the book. Nothing may use it any more.
-func (s *Store) Close() error { return errors.Join(disconnect(s.r), disconnect(s.w)) }
+func (s *Store) Close() error {
+	s.closeStamps()
+	return errors.Join(disconnect(s.r), disconnect(s.w))
+}
 
 // Tx is one transaction. It is for one goroutine and ends with the function that it was given to.
 type Tx struct {
@@ -33,6 +38,7 @@ type Tx struct {
 	last    string             // recorded-at of the last entry, as stored; set with builder
 	held    map[string]holding // projection rows that are not in the database yet, by table
 	failed  error              // of an insert: what it was to write is in part forgotten
+	bulk    *bulkWriter        // writes many rows at once; nil but in WriteBulk
 }
 
 // holding is what a transaction holds back of one table, so that rows put one by one are written
