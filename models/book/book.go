@@ -25,6 +25,8 @@ type Book struct {
 	clock  func() time.Time
 	random io.Reader
 
+	door door // who is signed in
+
 	writing sync.Mutex   // one write of this process at a time; the store's lock keeps other processes out
 	mu      sync.RWMutex // guards m
 	m       *model

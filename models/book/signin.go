@@ -262,29 +262,44 @@ func (b *Book) SignInByLink(ctx context.Context, secret string) (SignedIn, error
 
 // BySession gives the actor of a session's secret; a session ends after twelve hours, or two without use.
 func (b *Book) BySession(ctx context.Context, secret string) (Actor, error) {
-	var row store.SessionRow
+	stamp, err := b.Stamp(ctx)
+	if err != nil {
+		return Actor{}, err
+	}
+	g, known := b.door.guest(hashToken(secret), stamp)
+	if !known {
+		if g, err = b.guest(ctx, hashToken(secret), stamp); err != nil {
+			return Actor{}, err
+		}
+	}
+	now := b.Now()
+	if now.After(g.row.Expires) || now.Sub(g.row.LastSeen) > sessionIdle {
+		return Actor{}, &BadSignIn{}
+	}
+	if !known {
+		if g.actor, err = b.actor(ctx, g.row.Account); err != nil {
+			return Actor{}, err
+		}
+		b.door.remember(g)
+	}
+	if due := b.door.pass(g.row.Hash, now); len(due) > 0 {
+		err = b.writeSeen(ctx, due)
+	}
+	return g.actor, err
+}
+
+// guest reads a session; stamp is from before. A secret of no session is a *BadSignIn.
+func (b *Book) guest(ctx context.Context, hash, stamp string) (guest, error) {
+	g := guest{stamp: stamp}
 	err := b.st.Read(ctx, func(tx *store.Tx) error {
-		r, ok, err := tx.Session(hashToken(secret))
-		if err != nil {
-			return err
+		row, ok, err := tx.Session(hash)
+		if err == nil && !ok {
+			err = &BadSignIn{}
 		}
-		if now := b.Now(); !ok || now.After(r.Expires) || now.Sub(r.LastSeen) > sessionIdle {
-			return &BadSignIn{}
-		}
-		row = r
-		return nil
+		g.row = row
+		return err
 	})
-	if err != nil {
-		return Actor{}, err
-	}
-	actor, err := b.actor(ctx, row.Account)
-	if err != nil {
-		return Actor{}, err
-	}
-	if now := b.Now(); now.Sub(row.LastSeen) > time.Minute {
-		err = b.operate(ctx, func(tx *store.Tx, _ *model) error { return tx.TouchSession(row.Hash, now) })
-	}
-	return actor, err
+	return b.door.current(g), err
 }
 
 // SignOut ends a session.
