@@ -4,6 +4,7 @@ import (
 	"errors"
 	"fmt"
 	"html/template"
+	"slices"
 	"strings"
 
 	"lodebook/models/book"
@@ -132,24 +133,27 @@ func itemPage(v *visit) error {
 	}
 	p.Head, p.Title = item.Title, item.Title
 	p.About = aboutItem(item)
-	bad, low, told := sorted(st.Rows)
-	var rest []book.Row
-	for _, r := range st.Rows {
-		if !r.Word.IsGap() && r.Word != standing.Closing && r.Word != standing.DataFault {
+	bad, low, told := sorted(pointers(st.Rows))
+	var rest []*book.Row
+	for i := range st.Rows {
+		if r := &st.Rows[i]; !r.Word.IsGap() && r.Word != standing.Closing && r.Word != standing.DataFault {
 			rest = append(rest, r)
 		}
 	}
-	all := append(append(append(bad, told...), low...), rest...)
+	all := slices.Concat(bad, told, low, rest)
 	p.Say = upperFirst(item.Cadence.Words()) + ", asked of " + askedOf(len(all), item.Asks) + ". " + upperFirst(countWords(st.Count())) + "."
 	if len(all) == 0 {
 		p.Say = upperFirst(item.Cadence.Words()) + ". It is asked of nothing on this day."
 	}
-	list, f := find(v, all, "Name or word", func(r book.Row) string {
+	list, f := find(v, all, "Name or word", func(r *book.Row) string {
 		return r.SubjectName + " " + r.Subject.Code + " " + word(r.Word) + " " + r.SubjectNote
 	})
 	p.Finder = f
 	shown, pg := paged(v, list)
-	p.Rows, p.Pager = v.rowLines(shown), pg
+	for _, r := range shown {
+		p.Rows = append(p.Rows, v.rowLine(*r))
+	}
+	p.Pager = pg
 	return itemSheet.show(v, 200, p)
 }
 

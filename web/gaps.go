@@ -2,11 +2,13 @@ package web
 
 import (
 	"bytes"
+	"cmp"
 	"slices"
 	"strings"
 
 	"lodebook/models/book"
 	"lodebook/models/program"
+	"lodebook/models/standing"
 	"lodebook/models/table"
 )
 
@@ -17,9 +19,16 @@ type gapLine struct {
 	Excuse   string
 }
 
+// gapGroup is the gaps of one item or of one who answers for them: the first few, or a page of all.
 type gapGroup struct {
-	Name  string
-	Lines []gapLine
+	Name    string
+	Count   int
+	Lines   []gapLine
+	More    int    // gaps that are not shown
+	MoreURL string // all of them
+
+	key  string
+	rows bunch
 }
 
 type gapsLeaf struct {
@@ -27,60 +36,126 @@ type gapsLeaf struct {
 	Say       string
 	Tabs      []spineLink
 	Groups    []gapGroup
-	Told      []rowLine
+	Told      []todayLine
+	Pager     pager
 	ExportURL string
+	AllURL    string // of a page with one group: all groups
 	When      *asOf
 }
 
 var gapsSheet = leafOf[gapsLeaf]("gaps")
 
-// gapsPage lists everything that falls short, by item or by who answers for it.
+// A group is shown whole up to groupWhole gaps. Of a larger one the page with all groups shows the first
+// groupFew, those that have lasted longest.
+const (
+	groupWhole = 12
+	groupFew   = 4
+)
+
+// gapsPage shows what falls short, by item or by who answers for it: the first few of each, or with ?of=
+// one of them whole.
 func gapsPage(v *visit) error {
-	st, err := v.b.Standings(v.ctx(), v.actor, book.StandingQuery{Site: v.site.Code, On: v.on})
-	if err != nil {
-		return err
-	}
-	gaps := st.Gaps()
 	if v.query("format") == "csv" {
-		return v.gapsCSV(st, gaps)
+		return gapsCSV(v)
 	}
-	flags, err := v.reopened()
+	st, err := v.short()
 	if err != nil {
 		return err
 	}
-	by := v.query("by")
+	by, of := v.query("by"), v.query("of")
 	p := &gapsLeaf{page: page{Title: "Gaps", Section: secGaps, AsOf: v.asOf()}, ExportURL: with(v.url("gaps"), "format", "csv")}
 	p.When = p.AsOf
 	here := v.c.Request.URL.EscapedPath()
 	p.Tabs = []spineLink{{Name: "By item", URL: with(here, "on", onQuery(v.on)), Current: by != "owner"}, {Name: "By owner", URL: with(here, "by", "owner", "on", onQuery(v.on)), Current: by == "owner"}}
-	names := map[string]*gapGroup{}
-	var order []string
-	for _, r := range gaps {
-		name := r.Title
-		if by == "owner" {
-			name = v.ownerName(r.Owner)
+	var bad, told []*book.Row
+	for i := range st.Rows {
+		switch r := &st.Rows[i]; {
+		case r.Word.IsGap():
+			bad = append(bad, r)
+		case r.Word == standing.DataFault:
+			told = append(told, r)
 		}
-		if names[name] == nil {
-			names[name] = &gapGroup{Name: name}
-			order = append(order, name)
-		}
-		l := v.gapLine(r, flags)
-		if by != "owner" {
-			l.What = "" // the heading says it
-		}
-		names[name].Lines = append(names[name].Lines, l)
 	}
-	slices.Sort(order)
-	for _, n := range order {
-		p.Groups = append(p.Groups, *names[n])
+	longestFirst(bad)
+	groups := v.gapGroups(bad, by)
+	p.Say = gapsSay(bad, len(told), len(groups), by)
+	if of != "" {
+		groups = slices.DeleteFunc(groups, func(g gapGroup) bool { return g.key != of })
+		p.AllURL, told = with(here, "by", by, "on", onQuery(v.on)), nil
 	}
-	p.Told = v.rowLines(st.Faults())
-	p.Say = gapsSay(gaps, st.Faults(), order, by)
+	if err := v.fillGroups(p, groups, of != ""); err != nil {
+		return err
+	}
+	untold := bunches(told, true)
+	if err := v.nameFirst(untold, namesShown); err != nil {
+		return err
+	}
+	p.Told = v.todayLines(untold)
 	return gapsSheet.show(v, 200, p)
 }
 
-func gapsSay(gaps, told []book.Row, order []string, by string) string {
-	if len(gaps) == 0 && len(told) == 0 {
+// gapGroups groups gaps by item or owner, by name.
+func (v *visit) gapGroups(gaps []*book.Row, by string) []gapGroup {
+	var out []gapGroup
+	at := map[string]int{}
+	for _, r := range gaps {
+		key := r.Item
+		if by == "owner" {
+			key = r.Owner
+		}
+		i, ok := at[key]
+		if !ok {
+			i = len(out)
+			at[key] = i
+			out = append(out, gapGroup{Name: orCode(r.Title, r.Item), key: key})
+			if by == "owner" {
+				out[i].Name = v.ownerName(key)
+			}
+		}
+		out[i].rows = append(out[i].rows, r)
+	}
+	slices.SortFunc(out, func(a, b gapGroup) int { return cmp.Or(strings.Compare(a.Name, b.Name), strings.Compare(a.key, b.key)) })
+	return out
+}
+
+// fillGroups cuts the groups to what is shown, names it, and dresses it.
+func (v *visit) fillGroups(p *gapsLeaf, groups []gapGroup, whole bool) error {
+	var shown []bunch
+	for i := range groups {
+		g := &groups[i]
+		g.Count = len(g.rows)
+		switch {
+		case whole:
+			g.rows, p.Pager = paged(v, g.rows)
+		case g.Count > groupWhole:
+			g.rows, g.More = g.rows[:groupFew], g.Count-groupFew
+			g.MoreURL = with(v.c.Request.URL.EscapedPath(), "by", v.query("by"), "of", g.key, "on", onQuery(v.on))
+		}
+		shown = append(shown, g.rows)
+	}
+	if err := v.nameFirst(shown, perPage); err != nil {
+		return err
+	}
+	again, err := v.reopened()
+	if err != nil {
+		return err
+	}
+	for i := range groups {
+		g := &groups[i]
+		for _, r := range g.rows {
+			l := v.gapLine(*r, again)
+			if v.query("by") != "owner" {
+				l.What = "" // the heading says it
+			}
+			g.Lines = append(g.Lines, l)
+		}
+	}
+	p.Groups = groups
+	return nil
+}
+
+func gapsSay(gaps []*book.Row, told, groups int, by string) string {
+	if len(gaps) == 0 && told == 0 {
 		return "Nothing falls short of the checklist."
 	}
 	guarded := 0
@@ -91,15 +166,15 @@ func gapsSay(gaps, told []book.Row, order []string, by string) string {
 	}
 	s := upperFirst(count(len(gaps), "gap", "gaps"))
 	if by == "owner" {
-		s += " among " + count(len(order), "owner", "owners") + "."
+		s += " among " + count(groups, "owner", "owners") + "."
 	} else {
-		s += " in " + count(len(order), "item", "items") + "."
+		s += " in " + count(groups, "item", "items") + "."
 	}
 	if guarded > 0 {
 		s += " " + upperFirst(count(guarded, "of them guards a restricted zone.", "of them guard a restricted zone."))
 	}
-	if len(told) > 0 {
-		s += " " + upperFirst(count(len(told), "more cannot be told.", "more cannot be told."))
+	if told > 0 {
+		s += " " + upperFirst(count(told, "more cannot be told.", "more cannot be told."))
 	}
 	return s
 }
@@ -122,20 +197,27 @@ func (v *visit) gapLine(r book.Row, flags map[string]int) gapLine {
 	return l
 }
 
-// reopened counts how often each flag came back.
+// reopened counts how often each flag came back, of those that did.
 func (v *visit) reopened() (map[string]int, error) {
-	list, err := v.b.Flags(v.ctx(), v.actor, v.site.Code)
-	out := map[string]int{}
-	for _, f := range list {
-		if f.Cleared == nil {
-			out[f.Item+" "+f.Kind+":"+f.Code] = f.Reopened
+	return v.flags.get(v.ctx(), v.site.Code, v.b.Stamp, func() (made[map[string]int], error) {
+		list, err := v.b.Flags(v.ctx(), v.actor, v.site.Code)
+		out := map[string]int{}
+		for _, f := range list {
+			if f.Cleared == nil && f.Reopened > 0 {
+				out[f.Item+" "+f.Kind+":"+f.Code] = f.Reopened
+			}
 		}
-	}
-	return out, err
+		return made[map[string]int]{out, 100 * (len(out) + 1)}, err
+	})
 }
 
 // gapsCSV writes the gaps for a spreadsheet, harmless to open, with the question on it.
-func (v *visit) gapsCSV(st book.Standings, gaps []book.Row) error {
+func gapsCSV(v *visit) error {
+	st, err := v.b.Standings(v.ctx(), v.actor, book.StandingQuery{Site: v.site.Code, On: v.on})
+	if err != nil {
+		return err
+	}
+	gaps := st.Gaps()
 	var buf bytes.Buffer
 	header := []string{"site", "day", "item", "title", "asks", "subject", "name", "standing", "since", "due", "owner"}
 	rows := func(yield func([]string) bool) {

@@ -22,6 +22,7 @@ import (
 type house struct {
 	testing.TB
 	b       *book.Book
+	path    string // of the book
 	handler http.Handler
 	now     time.Time
 	op      book.Actor
@@ -34,13 +35,27 @@ const fell = "FELL"
 func newHouse(t testing.TB) *house {
 	t.Helper()
 	h := &house{TB: t, now: time.Date(2026, 12, 1, 8, 0, 0, 0, time.UTC), op: book.SystemOperator("ops"), actors: map[book.Role]book.Actor{}, jars: map[book.Role]*jar{}}
-	b, err := book.Create(t.Context(), filepath.Join(t.TempDir(), "site.book"), book.Options{Clock: func() time.Time { return h.now }, Random: rand.Reader})
+	h.path = filepath.Join(t.TempDir(), "site.book")
+	b, err := book.Create(t.Context(), h.path, h.options())
 	h.ok(err)
 	h.b = b
 	t.Cleanup(func() { h.ok(b.Close()) })
 	h.handler, err = New(b, Options{PublicURL: "http://book.example"})
 	h.ok(err)
 	return h
+}
+
+func (h *house) options() book.Options {
+	return book.Options{Clock: func() time.Time { return h.now }, Random: rand.Reader}
+}
+
+// elsewhere opens the book once more, as another program would.
+func (h *house) elsewhere() *book.Book {
+	h.Helper()
+	b, err := book.Open(h.Context(), h.path, h.options())
+	h.ok(err)
+	h.Cleanup(func() { h.ok(b.Close()) })
+	return b
 }
 
 // furnished is a house with the site of testdata and people and fixtures in it.

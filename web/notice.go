@@ -34,6 +34,12 @@ func (v *visit) setNotice(n notice) {
 	http.SetCookie(v.c.Writer, v.cookie(v.noticeName(), base64.RawURLEncoding.EncodeToString(data), noticeLife))
 }
 
+// hasNotice tells whether the page that is asked for is the one to show a notice.
+func (v *visit) hasNotice() bool {
+	_, err := v.c.Request.Cookie(v.noticeName())
+	return err == nil
+}
+
 // takeNotice takes the notice that an earlier request left.
 func (v *visit) takeNotice() *notice {
 	c, err := v.c.Request.Cookie(v.noticeName())

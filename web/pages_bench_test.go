@@ -147,3 +147,17 @@ func (l load) ask(client *http.Client, url string, j *jar) error {
 	}
 	return nil
 }
+
+// BenchmarkFreshPages makes the pages anew each time, since the minute is another one.
+func BenchmarkFreshPages(b *testing.B) {
+	h := crowded(b, 5000)
+	j, morning := h.as(book.SafetyOfficer), h.now
+	for _, path := range firstPages {
+		b.Run(path[len("/s/"+fell+"/"):], func(b *testing.B) {
+			for i := 0; b.Loop(); i++ {
+				h.now = morning.Add(time.Duration(i%2) * time.Minute)
+				h.page(j, path)
+			}
+		})
+	}
+}

@@ -50,7 +50,11 @@ func (l leaf[T, P]) show(v *visit, status int, data P) error {
 	if err := v.leaves[l.name].ExecuteTemplate(&buf, "layout", data); err != nil {
 		return fmt.Errorf("page %s: %w", l.name, err)
 	}
-	v.c.Data(status, "text/html; charset=utf-8", buf.Bytes())
+	if v.proof != nil {
+		*v.proof = proof{status, buf.Bytes()}
+		return nil
+	}
+	v.send(proof{status, buf.Bytes()})
 	return nil
 }
 

@@ -54,6 +54,15 @@ func (v *visit) rowLines(rows []book.Row) []rowLine {
 	return out
 }
 
+// pointers lead to the rows where they lie.
+func pointers(rows []book.Row) []*book.Row {
+	out := make([]*book.Row, len(rows))
+	for i := range rows {
+		out[i] = &rows[i]
+	}
+	return out
+}
+
 // subjectKey names a subject as forms and tables do: kind:code.
 func subjectKey(s standing.Subject) string { return string(s.Asks) + ":" + s.Code }
 

@@ -39,7 +39,9 @@ type server struct {
 	o      Options
 	leaves templates
 	files  static
-	spines spineMemo
+	pages  *memo[proof]
+	shorts *memo[short]
+	flags  *memo[map[string]int] // by site: how often flags that stand came back
 	tray   tray
 }
 
@@ -56,7 +58,7 @@ func New(b *book.Book, o Options) (http.Handler, error) {
 	if err != nil {
 		return nil, err
 	}
-	s := &server{b: b, o: o, leaves: leaves, files: files}
+	s := &server{b: b, o: o, leaves: leaves, files: files, pages: newMemo[proof](pageRoom), shorts: newMemo[short](shortRoom), flags: newMemo[map[string]int](flagRoom)}
 	engine, err := s.engine()
 	if err != nil {
 		return nil, err

@@ -1,11 +1,6 @@
 package web
 
-import (
-	"sync"
-
-	"lodebook/models/book"
-	"lodebook/models/civil"
-)
+import "lodebook/models/book"
 
 // spine is the margin of every page: where one is, where one can go, who one is.
 type spine struct {
@@ -72,7 +67,7 @@ func (v *visit) spine(section string) (*spine, error) {
 }
 
 func (v *visit) siteLinks(s *spine, at book.SiteView, section string) error {
-	counts, err := v.spines.counts(v, at)
+	counts, err := v.counts(at)
 	if err != nil {
 		return err
 	}
@@ -112,42 +107,12 @@ func (v *visit) moreLinks(site, section string) []spineLink {
 	return out
 }
 
-// spineMemo keeps the counts of each site until something is written or the day turns.
-type spineMemo struct {
-	mu    sync.Mutex
-	sites map[string]spineCount
-}
-
-type spineCount struct {
-	size  int64
-	today civil.Day
-	book.SpineCounts
-}
-
 // counts are those of today. Whoever does not see the whole site sees none but the number of entries.
-func (m *spineMemo) counts(v *visit, at book.SiteView) (book.SpineCounts, error) {
-	size, err := v.b.Size(v.ctx())
-	if err != nil {
-		return book.SpineCounts{}, err
-	}
+func (v *visit) counts(at book.SiteView) (book.SpineCounts, error) {
 	if !v.may(book.SeeSite) {
-		return book.SpineCounts{Entries: size}, nil
+		size, err := v.b.Size(v.ctx())
+		return book.SpineCounts{Entries: size}, err
 	}
-	m.mu.Lock()
-	known, ok := m.sites[at.Code]
-	m.mu.Unlock()
-	if ok && known.size == size && known.today == at.Today {
-		return known.SpineCounts, nil
-	}
-	counts, err := v.b.SpineCounts(v.ctx(), v.actor, at.Code)
-	if err != nil {
-		return counts, err
-	}
-	m.mu.Lock()
-	defer m.mu.Unlock()
-	if m.sites == nil {
-		m.sites = map[string]spineCount{}
-	}
-	m.sites[at.Code] = spineCount{counts.Entries, at.Today, counts}
-	return counts, nil
+	st, err := v.shortAt(at.Code, nil)
+	return st.counts, err
 }

@@ -64,7 +64,7 @@ var todaySheet = leafOf[todayLeaf]("today")
 const lowShown = 14
 
 func todayPage(v *visit) error {
-	st, err := v.b.Standings(v.ctx(), v.actor, book.StandingQuery{Site: v.site.Code, On: v.on})
+	st, err := v.short()
 	if err != nil {
 		return v.todayWithoutPerson(err)
 	}
@@ -72,15 +72,17 @@ func todayPage(v *visit) error {
 	p.When = p.AsOf
 	rows := v.forRole(st.Rows)
 	bad, low, told := sorted(rows)
-	p.Out, p.Low, p.Told = v.grouped(bad, false), v.grouped(low, true), v.grouped(told, true)
-	if len(p.Low) > lowShown {
-		p.LowMore = len(p.Low) - lowShown
-		p.Low = p.Low[:lowShown]
+	p.Say = v.todaySay(len(bad), len(low), len(told))
+	p.Week = v.week(st.Plans, rows)
+	out, running, untold := bunches(bad, false), bunches(low, true), bunches(told, true)
+	if len(running) > lowShown {
+		p.LowMore = len(running) - lowShown
+		running = running[:lowShown]
 	}
-	p.Say = v.todaySay(bad, low, told)
-	if p.Week, err = v.week(rows); err != nil {
+	if err := v.nameFirst(slices.Concat(out, running, untold), namesShown); err != nil {
 		return err
 	}
+	p.Out, p.Low, p.Told = v.todayLines(out), v.todayLines(running), v.todayLines(untold)
 	if v.acts(book.RecordDone) {
 		p.Do = []act{{"Record a session", v.url("session")}, {"Record a drill", v.url("drill")}}
 	}
@@ -91,7 +93,7 @@ func todayPage(v *visit) error {
 }
 
 // todayRest adds the checks that a member may record, and the first steps of an empty site.
-func (v *visit) todayRest(p *todayLeaf, st book.Standings) error {
+func (v *visit) todayRest(p *todayLeaf, st short) error {
 	if !v.may(book.SeeSite) && v.may(book.FillSheet) {
 		round, err := v.b.Rounds(v.ctx(), v.actor, v.site.Code, v.on)
 		if err != nil {
@@ -124,28 +126,26 @@ func (v *visit) todayWithoutPerson(err error) error {
 	p := &todayLeaf{page: page{Title: "Today", Section: secToday, AsOf: v.asOf()}, Head: longDay(v.day(), v.today()), WeekURL: v.url("week")}
 	p.When = p.AsOf
 	p.Say = []string{"This account is linked to no person yet, so nothing of yours can be shown. An administrator can link it."}
-	if err := v.todayRest(p, book.Standings{}); err != nil {
+	if err := v.todayRest(p, short{}); err != nil {
 		return err
 	}
 	return todaySheet.show(v, 200, p)
 }
 
 // forRole leaves facilities what they answer for; everybody else sees all that they may.
-func (v *visit) forRole(rows []book.Row) []book.Row {
+func (v *visit) forRole(rows []book.Row) []*book.Row {
+	all := pointers(rows)
 	if v.actor.Role != book.Facilities {
-		return rows
+		return all
 	}
-	var out []book.Row
-	for _, r := range rows {
-		if r.Subject.Asks == program.AsksFixture || r.Owner == string(book.Facilities) || r.Subject.Code == v.actor.Person && r.Subject.Asks == program.AsksPerson {
-			out = append(out, r)
-		}
-	}
-	return out
+	return slices.DeleteFunc(all, func(r *book.Row) bool {
+		mine := r.Subject.Asks == program.AsksPerson && r.Subject.Code == v.actor.Person
+		return r.Subject.Asks != program.AsksFixture && r.Owner != string(book.Facilities) && !mine
+	})
 }
 
 // sorted parts rows into gaps (longest first), what is closing (soonest first) and data faults.
-func sorted(rows []book.Row) (bad, low, told []book.Row) {
+func sorted(rows []*book.Row) (bad, low, told []*book.Row) {
 	for _, r := range rows {
 		switch {
 		case r.Word.IsGap():
@@ -156,56 +156,101 @@ func sorted(rows []book.Row) (bad, low, told []book.Row) {
 			told = append(told, r)
 		}
 	}
-	day := func(d *civil.Day) civil.Day {
-		if d == nil {
-			return civil.LastDay
-		}
-		return *d
-	}
-	slices.SortStableFunc(bad, func(a, b book.Row) int { return cmp.Compare(day(a.Since), day(b.Since)) })
-	slices.SortStableFunc(low, func(a, b book.Row) int { return cmp.Compare(day(a.Due), day(b.Due)) })
+	longestFirst(bad)
+	slices.SortStableFunc(low, func(a, b *book.Row) int { return cmp.Compare(dayOrLast(a.Due), dayOrLast(b.Due)) })
 	return bad, low, told
 }
 
-// grouped gathers people in the same standing of one item into a line. Things stand alone, but for
-// those of a kind that are due alike, where all is set.
-func (v *visit) grouped(rows []book.Row, all bool) []todayLine {
-	type key struct {
-		item string
-		word standing.Word
+// longestFirst puts gaps in the order in which they began.
+func longestFirst(gaps []*book.Row) {
+	slices.SortStableFunc(gaps, func(a, b *book.Row) int { return cmp.Compare(dayOrLast(a.Since), dayOrLast(b.Since)) })
+}
+
+func dayOrLast(d *civil.Day) civil.Day {
+	if d == nil {
+		return civil.LastDay
 	}
-	byItem := map[key][]book.Row{}
-	var order []key
+	return *d
+}
+
+// bunch is rows that one line shows.
+type bunch []*book.Row
+
+// thingsAlone is how many things in the same standing of one item stand each on a line of its own.
+const thingsAlone = 6
+
+// bunches gathers people in the same standing of one item. A few things stand alone; many are gathered
+// too. With due, things are gathered that are due alike, be they few or many.
+func bunches(rows []*book.Row, due bool) []bunch {
+	type key struct {
+		item, subject string
+		word          standing.Word
+		due           civil.Day
+	}
+	alike := map[key]int{}
 	for _, r := range rows {
-		k := key{r.Item, r.Word}
+		alike[key{item: r.Item, word: r.Word}]++
+	}
+	at := map[key]int{}
+	var out []bunch
+	for _, r := range rows {
+		k := key{item: r.Item, word: r.Word}
 		switch {
 		case r.Subject.Asks == program.AsksPerson:
-		case all && r.Due != nil:
-			k.item += " " + r.Due.String()
-		default:
-			k.item += " " + r.Subject.Code
+		case due && r.Due != nil:
+			k.due = *r.Due
+		case alike[k] <= thingsAlone:
+			k.subject = r.Subject.Code
 		}
-		if byItem[k] == nil {
-			order = append(order, k)
+		i, ok := at[k]
+		if !ok {
+			i = len(out)
+			at[k], out = i, append(out, nil)
 		}
-		byItem[k] = append(byItem[k], r)
+		out[i] = append(out[i], r)
 	}
-	out := make([]todayLine, 0, len(order))
-	for _, k := range order {
-		out = append(out, v.todayLine(byItem[k]))
+	return out
+}
+
+// nameFirst puts rows with names in the place of the first few of each bunch.
+func (v *visit) nameFirst(all []bunch, few int) error {
+	var rows []book.Row
+	for _, b := range all {
+		for _, r := range b[:min(few, len(b))] {
+			rows = append(rows, *r)
+		}
+	}
+	if err := v.b.Named(v.ctx(), v.actor, v.site.Code, v.on, rows); err != nil {
+		return err
+	}
+	n := 0
+	for _, b := range all {
+		for i := range b[:min(few, len(b))] {
+			b[i] = &rows[n]
+			n++
+		}
+	}
+	return nil
+}
+
+func (v *visit) todayLines(all []bunch) []todayLine {
+	out := make([]todayLine, len(all))
+	for i, b := range all {
+		out[i] = v.todayLine(b)
 	}
 	return out
 }
 
 const namesShown = 4
 
-func (v *visit) todayLine(rows []book.Row) todayLine {
-	one := v.rowLine(rows[0])
+func (v *visit) todayLine(rows bunch) todayLine {
+	first := *rows[0]
+	one := v.rowLine(first)
 	l := todayLine{Disc: one.Disc, Word: one.Word, What: one.What, WhatURL: one.WhatURL, Cadence: one.Cadence, Who: one.Who, WhoURL: one.WhoURL, Note: one.Note, When: one.When, Do: one.Do}
 	if len(rows) == 1 {
 		return l
 	}
-	l.Who, l.WhoURL = askedOf(len(rows), rows[0].Subject.Asks), l.WhatURL
+	l.Who, l.WhoURL = askedOf(len(rows), first.Subject.Asks), l.WhatURL
 	var names []string
 	for i, r := range rows {
 		if i == namesShown {
@@ -215,21 +260,21 @@ func (v *visit) todayLine(rows []book.Row) todayLine {
 		names = append(names, r.SubjectName)
 	}
 	l.Note = and(names)
-	l.Do = v.manyActs(rows)
-	if rows[0].Word == standing.DataFault {
+	l.Do = v.manyActs(first)
+	if first.Word == standing.DataFault {
 		l.When = ""
 	}
 	return l
 }
 
 // manyActs records many people in one form.
-func (v *visit) manyActs(rows []book.Row) []act {
-	if v.elsewhen() || !rows[0].Asked || len(rows[0].Records) == 0 {
+func (v *visit) manyActs(r book.Row) []act {
+	if v.elsewhen() || !r.Asked || len(r.Records) == 0 {
 		return nil
 	}
-	what := rows[0].Records[0]
+	what := r.Records[0]
 	kind, _, _ := strings.Cut(what, "/")
-	if rows[0].Subject.Asks == program.AsksFixture && v.may(book.FillSheet) {
+	if r.Subject.Asks == program.AsksFixture && v.may(book.FillSheet) {
 		return []act{{"To the round", v.url("rounds")}}
 	}
 	if !v.may(book.RecordDone) {
@@ -246,31 +291,31 @@ func (v *visit) manyActs(rows []book.Row) []act {
 	return nil
 }
 
-func (v *visit) todaySay(bad, low, told []book.Row) []string {
+func (v *visit) todaySay(bad, low, told int) []string {
 	whose := ""
 	if !v.may(book.SeeSite) {
 		whose = " of yours"
 	}
 	var out []string
 	switch {
-	case len(bad) == 0 && len(low) == 0 && len(told) == 0:
+	case bad == 0 && low == 0 && told == 0:
 		return []string{"Nothing" + whose + " has run out and nothing is running low."}
-	case len(bad) == 0:
+	case bad == 0:
 		out = append(out, "Nothing"+whose+" has run out.")
 	default:
-		out = append(out, upperFirst(count(len(bad), "thing"+whose+" has run out or failed.", "things"+whose+" have run out or failed.")))
+		out = append(out, upperFirst(count(bad, "thing"+whose+" has run out or failed.", "things"+whose+" have run out or failed.")))
 	}
-	if len(low) > 0 {
-		out = append(out, upperFirst(count(len(low), "is running low.", "are running low.")))
+	if low > 0 {
+		out = append(out, upperFirst(count(low, "is running low.", "are running low.")))
 	}
-	if len(told) > 0 {
-		out = append(out, upperFirst(count(len(told), "cannot be told for want of a fact.", "cannot be told for want of a fact.")))
+	if told > 0 {
+		out = append(out, upperFirst(count(told, "cannot be told for want of a fact.", "cannot be told for want of a fact.")))
 	}
 	return out
 }
 
 // week is the strip of the seven days from Monday.
-func (v *visit) week(rows []book.Row) ([]weekDay, error) {
+func (v *visit) week(plans []book.PlanLine, rows []*book.Row) []weekDay {
 	first := civil.PeriodOf(civil.ByWeek, v.day()).First
 	out := make([]weekDay, 7)
 	for i := range out {
@@ -280,29 +325,23 @@ func (v *visit) week(rows []book.Row) ([]weekDay, error) {
 			out[i].Lines = append(out[i].Lines, "closed")
 		}
 	}
-	if v.may(book.SeeSite) {
-		x, err := v.b.Drills(v.ctx(), v.actor, v.site.Code, v.on)
-		if err != nil {
-			return nil, err
-		}
-		for _, p := range x.Plans {
-			if i := int(p.Day - first); i >= 0 && i < 7 {
-				line := strings.TrimSpace(p.Title + ", " + strings.ToLower(orCode(p.CrewName, "everybody")) + " " + p.At)
-				if p.Done {
-					line = "✓ " + line
-				}
-				out[i].Lines = append(out[i].Lines, line)
+	for _, p := range plans {
+		if i := int(p.Day - first); i >= 0 && i < 7 {
+			line := strings.TrimSpace(p.Title + ", " + strings.ToLower(orCode(p.CrewName, "everybody")) + " " + p.At)
+			if p.Done {
+				line = "✓ " + line
 			}
+			out[i].Lines = append(out[i].Lines, line)
 		}
 	}
 	dueInWeek(out, first, rows)
-	return out, nil
+	return out
 }
 
 const weekLines = 4
 
 // dueInWeek adds what falls due on each day, the same item once with its number.
-func dueInWeek(out []weekDay, first civil.Day, rows []book.Row) {
+func dueInWeek(out []weekDay, first civil.Day, rows []*book.Row) {
 	type spot struct {
 		day  int
 		item string
@@ -356,12 +395,12 @@ func shortened(s string, most int) string {
 }
 
 // firstSteps leads an empty site to its first morning.
-func (v *visit) firstSteps(st book.Standings) []stepLine {
+func (v *visit) firstSteps(st short) []stepLine {
 	steps := []stepLine{
 		{len(st.Site.Program.Items) > 0, "Choose the checklist", "Adopt a group of the starter at a time, then put your own numbers in.", v.url("groups")},
 		{st.Site.People > 0, "Bring in the people", "A table of people with their levels, crews and the day they joined.", with(v.url("import"), "table", "people")},
 		{st.Site.Fixtures > 0, "Bring in the fixtures", "Doors, vents, monitors, detectors, magnets: what gets inspected.", with(v.url("import"), "table", "fixtures")},
-		{anyProved(st), "Bring in the history", "Trainings, screenings and inspections of the last years, as CSV or XLSX.", with(v.url("import"), "table", "records")},
+		{st.Proved, "Bring in the history", "Trainings, screenings and inspections of the last years, as CSV or XLSX.", with(v.url("import"), "table", "records")},
 	}
 	for _, s := range steps {
 		if !s.Done {
@@ -369,10 +408,6 @@ func (v *visit) firstSteps(st book.Standings) []stepLine {
 		}
 	}
 	return nil
-}
-
-func anyProved(st book.Standings) bool {
-	return slices.ContainsFunc(st.Rows, func(r book.Row) bool { return r.Record != "" })
 }
 
 // weekLeaf is the week on one printable page: due, who, where.
@@ -385,6 +420,7 @@ type weekLeaf struct {
 
 type weekPart struct {
 	Day   string
+	Count int
 	Lines []weekLine
 }
 
@@ -392,42 +428,60 @@ type weekLine struct{ What, Who, Where, Word string }
 
 var weekSheet = leafOf[weekLeaf]("week")
 
+// weekFew is how many lines of one item in one standing a part of the week has before it counts the rest.
+const weekFew = 12
+
 func weekPage(v *visit) error {
-	st, err := v.b.Standings(v.ctx(), v.actor, book.StandingQuery{Site: v.site.Code, On: v.on})
+	st, err := v.short()
 	if err != nil {
 		return err
 	}
 	week := civil.PeriodOf(civil.ByWeek, v.day())
 	p := &weekLeaf{page: page{Title: "The week", Section: secToday}, Head: "Week of " + shortDay(week.First, v.today())}
-	byDay := map[civil.Day][]weekLine{}
-	var over []weekLine
+	byDay := map[civil.Day][]*book.Row{}
+	var over []*book.Row
 	for _, r := range v.forRole(st.Rows) {
-		l := weekLine{What: r.Title, Who: r.SubjectName, Where: r.SubjectNote, Word: word(r.Word)}
 		switch {
 		case r.Word.IsGap():
-			over = append(over, l)
+			over = append(over, r)
 		case r.Due != nil && *r.Due >= week.First && *r.Due <= week.Last && r.Word != standing.Met:
-			byDay[*r.Due] = append(byDay[*r.Due], l)
+			byDay[*r.Due] = append(byDay[*r.Due], r)
 		}
 	}
 	for d := week.First; d <= week.Last; d++ {
-		if len(byDay[d]) > 0 {
-			p.Days = append(p.Days, weekPart{longDay(d, v.today()), byDay[d]})
-		}
-	}
-	if len(over) > 0 {
-		p.Days = append(p.Days, weekPart{"Run out before", over})
-	}
-	if v.may(book.SeeSite) {
-		x, err := v.b.Drills(v.ctx(), v.actor, v.site.Code, v.on)
-		if err != nil {
+		if err := p.add(v, longDay(d, v.today()), byDay[d]); err != nil {
 			return err
 		}
-		for _, pl := range x.Plans {
-			if pl.Day >= week.First && pl.Day <= week.Last && !pl.Done {
-				p.Plans = append(p.Plans, v.planLine(pl))
-			}
+	}
+	if err := p.add(v, "Run out before", over); err != nil {
+		return err
+	}
+	for _, pl := range st.Plans {
+		if pl.Day >= week.First && pl.Day <= week.Last && !pl.Done {
+			p.Plans = append(p.Plans, v.planLine(pl))
 		}
 	}
 	return weekSheet.show(v, 200, p)
+}
+
+// add puts a part with its rows on the page, if there are any.
+func (p *weekLeaf) add(v *visit, head string, rows []*book.Row) error {
+	if len(rows) == 0 {
+		return nil
+	}
+	all := bunches(rows, false)
+	if err := v.nameFirst(all, weekFew); err != nil {
+		return err
+	}
+	part := weekPart{Day: head, Count: len(rows)}
+	for _, b := range all {
+		for _, r := range b[:min(weekFew, len(b))] {
+			part.Lines = append(part.Lines, weekLine{What: r.Title, Who: r.SubjectName, Where: r.SubjectNote, Word: word(r.Word)})
+		}
+		if more := len(b) - weekFew; more > 0 {
+			part.Lines = append(part.Lines, weekLine{What: b[0].Title, Who: "and " + number(more) + " more", Word: word(b[0].Word)})
+		}
+	}
+	p.Days = append(p.Days, part)
+	return nil
 }

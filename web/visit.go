@@ -18,6 +18,7 @@ type visit struct {
 	actor book.Actor
 	site  book.SiteView // zero on pages outside a site
 	on    *civil.Day    // the day asked for with ?on=; nil: today
+	proof *proof        // takes the page that is shown, where it is to be held; nil: it is sent at once
 }
 
 func (v *visit) ctx() context.Context { return v.c.Request.Context() }
