@@ -11,6 +11,7 @@ import (
 	"encoding/hex"
 	"errors"
 	"fmt"
+	"slices"
 
 	"golang.org/x/mod/sumdb/tlog"
 )
@@ -137,6 +138,13 @@ func NewBuilder(size int64, r Reader) *Builder {
 
 // Size is the number of leaves so far.
 func (b *Builder) Size() int64 { return b.size }
+
+// Clone is a builder that goes on from the same tree by itself.
+func (b *Builder) Clone() *Builder {
+	c := *b
+	c.latest = slices.Clone(b.latest)
+	return &c
+}
 
 // Add appends a leaf and gives the hashes to store, of which the first belongs at index
 // StoredCount(Size() before) and the others follow it without a hole.

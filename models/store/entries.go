@@ -93,6 +93,12 @@ func (t *Tx) append(entries []Entry, veils [][]Veil) (first int64, err error) {
 }
 
 func (t *Tx) insertEntries(rows []entryRow, hashes []treeRow, veils []veilRow) error {
+	if t.part != nil && !t.flushing {
+		t.pending.entries = append(t.pending.entries, rows...)
+		t.pending.tree = append(t.pending.tree, hashes...)
+		t.pending.veils = append(t.pending.veils, veils...)
+		return nil
+	}
 	err := clash(insert(t, "entries", rows))
 	if err != nil {
 		return err
@@ -156,6 +162,12 @@ func insert[R any](t *Tx, table string, rows []R) error {
 	if len(rows) == 0 {
 		return nil
 	}
+	if t.bulk != nil {
+		done, err := insertBulk(t.bulk, table, rows)
+		if done || err != nil {
+			return t.fail(err)
+		}
+	}
 	return t.fail(t.db.Table(table).CreateInBatches(rows, batchRows).Error)
 }
 
@@ -189,17 +201,26 @@ func (t *Tx) ReadHashes(indexes []int64) ([]ledger.Hash, error) {
 
 // EntryByID gives the entry of an identifier, and whether there is one.
 func (t *Tx) EntryByID(id string) (Entry, bool, error) {
+	if e, ok := t.pending.find(func(r *entryRow) bool { return r.ID == id }); ok {
+		return e, true, nil
+	}
 	return only(t.entries().Where("id = ?", id))
 }
 
 // SupersededBy gives the entry that superseded or withdrew the one of that identifier, and whether
 // there is one.
 func (t *Tx) SupersededBy(id string) (Entry, bool, error) {
+	if e, ok := t.pending.find(func(r *entryRow) bool { return r.Supersedes == id && id != "" }); ok {
+		return e, true, nil
+	}
 	return only(t.entries().Where("supersedes = ? AND supersedes <> ''", id))
 }
 
 // EntryAt gives the entry of a sequence number; ErrMissing if there is none.
 func (t *Tx) EntryAt(seq int64) (Entry, error) {
+	if e, ok := t.pending.find(func(r *entryRow) bool { return r.Seq == seq }); ok {
+		return e, nil
+	}
 	e, ok, err := only(t.entries().Where("seq = ?", seq))
 	if err == nil && !ok {
 		err = fmt.Errorf("%w: there is no entry %d", ErrMissing, seq)
@@ -220,6 +241,11 @@ func only(q *gorm.DB) (Entry, bool, error) {
 // EntryIDs tells which of the identifiers are in the book, and at which sequence number.
 func (t *Tx) EntryIDs(ids []string) (map[string]int64, error) {
 	found := make(map[string]int64)
+	for i := range t.pending.entries {
+		if r := &t.pending.entries[i]; slices.Contains(ids, r.ID) {
+			found[r.ID] = r.Seq
+		}
+	}
 	for len(ids) > 0 {
 		n := min(len(ids), batchRows)
 		rows, err := find[entryRow](t.entries().Select("seq", "id").Where("id IN ?", ids[:n]))
@@ -245,6 +271,10 @@ type EntryFilter struct {
 
 // Entries gives the entries that the filter chooses, newest first.
 func (t *Tx) Entries(f EntryFilter) ([]Entry, error) {
+	err := t.settle()
+	if err != nil {
+		return nil, err
+	}
 	q, err := t.chosen(f)
 	if err != nil {
 		return nil, err
@@ -320,6 +350,10 @@ func entriesOf(rows []entryRow) []Entry {
 // EachEntry calls fn with every entry from a sequence number on, in order, and its erasable values
 // in order of path. fn may read and write in the same transaction.
 func (t *Tx) EachEntry(from int64, fn func(Entry, []Veil) error) error {
+	err := t.settle()
+	if err != nil {
+		return err
+	}
 	for {
 		rows, err := find[entryRow](t.entries().Where("seq >= ?", from).Order("seq").Limit(batchRows))
 		if err != nil || len(rows) == 0 {

@@ -121,7 +121,7 @@ func (p table[T, R]) hold(t *Tx, rows any) (bool, error) {
 		h.rows = append(h.rows, r)
 	}
 	if len(h.rows) >= batchRows {
-		return true, h.flush(t)
+		return true, t.settle()
 	}
 	return true, nil
 }
@@ -150,7 +150,7 @@ func (h *held[R]) number(t *Tx, c *lineColumns) error {
 	case c.Seq > h.top:
 		h.next = 0
 	default:
-		err := h.flush(t)
+		err := t.settle()
 		if err != nil {
 			return err
 		}
@@ -170,6 +170,34 @@ func (h *held[R]) flush(t *Tx) error {
 	h.rows = h.rows[:0]
 	return err
 }
+
+// mark remembers what is held; back comes back to it, as long as none of it has been written.
+func (h *held[R]) mark() (back func()) {
+	was := *h
+	return func() { *h = was }
+}
+
+// splitAt leaves what was held at the mark (nil: nothing) to be written; restore takes up again what
+// came after it.
+func (h *held[R]) splitAt(back func()) (restore func() error) {
+	now := *h
+	if back == nil {
+		h.rows = nil
+	} else {
+		back()
+	}
+	n := len(h.rows)
+	return func() error {
+		if len(now.rows) < n {
+			return fmt.Errorf("rows of %s went away while they were held back", h.name)
+		}
+		now.rows = slices.Clone(now.rows[n:])
+		*h = now
+		return nil
+	}
+}
+
+func (h *held[R]) drop() { h.rows = h.rows[:0] }
 
 // Changed gives the rows that entries after the sequence number since have written, ended or
 // blanked, in order of their entry (records in their order of recording). Since -1 is everything.
@@ -279,6 +307,7 @@ func (t *Tx) EndBatch(batch string, by int64) error {
 }
 
 func (t *Tx) end(by int64, which string, arg any) error {
+	t.ends()
 	if by <= 0 {
 		return fmt.Errorf("entry %d cannot end a row", by)
 	}
@@ -313,7 +342,15 @@ func (t *Tx) BlankFacts(seq, by int64, facts ...string) error {
 	return t.blank("UPDATE facts SET value = 'null', touched = ? WHERE seq = ? AND fact IN ?", by, seq, facts)
 }
 
+// ends notes that the part under way, if any, ends or blanks rows.
+func (t *Tx) ends() {
+	if t.part != nil {
+		t.part.ended = true
+	}
+}
+
 func (t *Tx) blank(statement string, args ...any) error {
+	t.ends()
 	err := t.settle()
 	if err != nil {
 		return err

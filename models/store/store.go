@@ -5,6 +5,7 @@ package store
 
 import (
 	"context"
+	"database/sql"
 	"errors"
 
 	"gorm.io/gorm"
@@ -33,17 +34,25 @@ func (s *Store) Close() error {
 
 // Tx is one transaction. It is for one goroutine and ends with the function that it was given to.
 type Tx struct {
-	db      *gorm.DB
-	builder *ledger.Builder    // the tree that Append grows; nil until it does
-	last    string             // recorded-at of the last entry, as stored; set with builder
-	held    map[string]holding // projection rows that are not in the database yet, by table
-	failed  error              // of an insert: what it was to write is in part forgotten
-	bulk    *bulkWriter        // writes many rows at once; nil but in WriteBulk
+	db       *gorm.DB
+	builder  *ledger.Builder    // the tree that Append grows; nil until it does
+	last     string             // recorded-at of the last entry, as stored; set with builder
+	held     map[string]holding // projection rows that are not in the database yet, by table
+	pending  pending            // rows of entries that parts hold back
+	part     *part              // the part under way, or nil
+	flushing bool               // rows held back are being written
+	failed   error              // of an insert: what it was to write is in part forgotten
+	bulk     *bulkWriter        // writes many rows at once; nil but in WriteBulk
 }
 
 // holding is what a transaction holds back of one table, so that rows put one by one are written
 // in batches.
-type holding interface{ flush(t *Tx) error }
+type holding interface {
+	flush(t *Tx) error
+	mark() (back func())
+	splitAt(back func()) (restore func() error)
+	drop()
+}
 
 // Write runs fn in a transaction that has the write lock from its first moment. If fn gives an
 // error or panics, nothing of it is kept. When Write returns nil, what fn wrote is on the disk.
@@ -61,6 +70,9 @@ func (s *Store) Write(ctx context.Context, fn func(*Tx) error) error {
 		}
 	}()
 	t := &Tx{db: db}
+	if tx, ok := db.Statement.ConnPool.(*sql.Tx); ok {
+		db.Statement.ConnPool = &watched{tx, t}
+	}
 	err := fn(t)
 	if err == nil {
 		err = t.settle()
@@ -96,13 +108,10 @@ func (t *Tx) settle() error {
 	if t.failed != nil {
 		return t.failed
 	}
-	for _, h := range t.held {
-		err := h.flush(t)
-		if err != nil {
-			return err
-		}
+	if err := t.save(); err != nil {
+		return err
 	}
-	return nil
+	return t.flush()
 }
 
 // MetaBookID is the name under which a book's identity stands in its meta values.

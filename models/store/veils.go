@@ -2,6 +2,7 @@ package store
 
 import (
 	"fmt"
+	"slices"
 
 	"gorm.io/gorm"
 
@@ -37,6 +38,11 @@ func appendVeils(to []veilRow, seq int64, veils []Veil) ([]veilRow, error) {
 // Veils gives the erasable values of the entries of those sequence numbers, in order of path.
 func (t *Tx) Veils(seqs ...int64) (map[int64][]Veil, error) {
 	out := make(map[int64][]Veil)
+	for _, r := range t.pending.veils {
+		if slices.Contains(seqs, r.Seq) {
+			out[r.Seq] = append(out[r.Seq], Veil(r))
+		}
+	}
 	for len(seqs) > 0 {
 		n := min(len(seqs), batchRows)
 		err := t.collect(out, t.db.Where("seq IN ?", seqs[:n]))
@@ -64,6 +70,10 @@ func (t *Tx) collect(to map[int64][]Veil, q *gorm.DB) error {
 
 // VeilsOfPerson gives every erasable value that is about a person, erased ones included.
 func (t *Tx) VeilsOfPerson(code string) ([]Veil, error) {
+	err := t.settle()
+	if err != nil {
+		return nil, err
+	}
 	rows, err := find[veilRow](t.db.Table("veils").Where("person = ? AND person <> ''", code).Order("seq, path"))
 	out := make([]Veil, len(rows))
 	for i, r := range rows {
