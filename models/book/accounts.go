@@ -42,7 +42,7 @@ func (b *Book) Accounts(ctx context.Context, actor Actor) ([]AccountView, error)
 	}
 	var out []AccountView
 	err := b.read(ctx, func(m *model) error {
-		for _, id := range sortedKeys(m.accounts) {
+		for _, id := range m.accountIDs() {
 			if a, ok := m.account(id); ok {
 				out = append(out, accountView(a))
 			}
@@ -174,18 +174,4 @@ func (b *Book) NewLink(ctx context.Context, actor Actor, account string) (string
 		return tx.PutLink(store.LinkRow{Hash: hash, Account: a.ID, Expires: b.Now().Add(linkLife)})
 	})
 	return secret, err
-}
-
-// operate writes what is no part of the book: secrets, sessions, flags, runs.
-func (b *Book) operate(ctx context.Context, fn func(tx *store.Tx, m *model) error) error {
-	if err := b.sync(ctx); err != nil {
-		return err
-	}
-	b.writing.Lock()
-	defer b.writing.Unlock()
-	return b.st.Write(ctx, func(tx *store.Tx) error {
-		b.mu.RLock()
-		defer b.mu.RUnlock()
-		return fn(tx, b.m)
-	})
 }

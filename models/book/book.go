@@ -5,6 +5,7 @@ import (
 	"errors"
 	"io"
 	"sync"
+	"sync/atomic"
 	"time"
 
 	"github.com/google/uuid"
@@ -25,11 +26,14 @@ type Book struct {
 	clock  func() time.Time
 	random io.Reader
 
-	door door // who is signed in
+	m       atomic.Pointer[model]  // what is known; never changed again
+	seen    atomic.Pointer[string] // a stamp of the store since which m has been all there is
+	growing chan struct{}          // holds a token while the model is being taken further
+	news    news                   // tells that m was replaced
+	queue   queue                  // writes that wait to be done
+	leading chan struct{}          // holds a token while writes are being done
 
-	writing sync.Mutex   // one write of this process at a time; the store's lock keeps other processes out
-	mu      sync.RWMutex // guards m
-	m       *model
+	door door // who is signed in
 }
 
 // Create makes a new, empty book. It refuses a path that exists.
@@ -59,8 +63,9 @@ func Open(ctx context.Context, path string, o Options) (*Book, error) {
 }
 
 func start(ctx context.Context, st *store.Store, o Options) (*Book, error) {
-	b := &Book{st: st, clock: o.Clock, random: o.Random, m: newModel()}
-	if err := b.sync(ctx); err != nil {
+	b := &Book{st: st, clock: o.Clock, random: o.Random, growing: make(chan struct{}, 1), leading: make(chan struct{}, 1)}
+	b.m.Store(b.emptyModel())
+	if _, err := b.current(ctx); err != nil {
 		return nil, errors.Join(err, st.Close())
 	}
 	return b, nil
@@ -72,43 +77,134 @@ func (b *Book) Close() error { return b.st.Close() }
 // Now is the book's clock.
 func (b *Book) Now() time.Time { return b.clock().UTC().Truncate(time.Microsecond) }
 
-// sync takes in what this or another process has written since.
-func (b *Book) sync(ctx context.Context) error {
-	size, err := b.st.Size(ctx)
-	if err != nil {
-		return err
-	}
-	b.mu.RLock()
-	current := b.m.head == size
-	b.mu.RUnlock()
-	if current {
-		return nil
-	}
-	b.mu.Lock()
-	defer b.mu.Unlock()
-	return b.st.Read(ctx, func(tx *store.Tx) error { return b.catchUp(tx) })
+// emptyModel knows nothing yet.
+func (b *Book) emptyModel() *model {
+	m := newModel()
+	m.st = b.st
+	return m
 }
 
-// catchUp brings the model to the state that the transaction sees. The caller holds mu.
+// current gives the model with all that this or another process has written. It waits for no write that is
+// under way: of such a write nothing is there yet.
+func (b *Book) current(ctx context.Context) (*model, error) {
+	stamp, err := b.st.Stamp(ctx)
+	if err != nil {
+		return nil, err
+	}
+	if seen := b.seen.Load(); seen != nil && *seen == stamp {
+		return b.m.Load(), nil
+	}
+	size, err := b.st.Size(ctx)
+	if err != nil {
+		return nil, err
+	}
+	m, err := b.reach(ctx, size)
+	if err == nil {
+		b.seen.Store(&stamp)
+	}
+	return m, err
+}
+
+// reach gives a model that has taken in so many entries, at the least. Whoever wrote them publishes it; of
+// what another process wrote, the first who asks takes it in.
+func (b *Book) reach(ctx context.Context, size int64) (*model, error) {
+	for {
+		published := b.news.next()
+		if m := b.m.Load(); m.head >= size {
+			return m, nil
+		}
+		select {
+		case b.growing <- struct{}{}:
+			err := b.st.Read(ctx, b.catchUp)
+			<-b.growing
+			if err != nil {
+				return nil, err
+			}
+		case <-published:
+		case <-ctx.Done():
+			return nil, ctx.Err()
+		}
+	}
+}
+
+// catchUp publishes the state that the transaction sees, if there is more in it than is known. The caller
+// holds growing.
 func (b *Book) catchUp(tx *store.Tx) error {
+	m := b.m.Load()
 	size, err := tx.Size()
+	if err != nil || size == m.head {
+		return err
+	}
+	next := m.fork()
+	if err := next.takeAfter(tx, size); err != nil {
+		return err
+	}
+	b.publish(next)
+	return nil
+}
+
+// takeAfter takes in what the transaction sees behind the model's head.
+func (m *model) takeAfter(tx *store.Tx, size int64) error {
+	if err := knownKinds(tx, m.head-1); err != nil {
+		return err
+	}
+	delta, err := tx.Changed(m.head - 1)
 	if err != nil {
 		return err
 	}
-	if size == b.m.head {
-		return nil
-	}
-	if err := knownKinds(tx, b.m.head-1); err != nil {
+	if err := m.take(delta); err != nil {
 		return err
 	}
-	delta, err := tx.Changed(b.m.head - 1)
-	if err != nil {
+	m.head = size
+	return nil
+}
+
+// publish makes a model the one that readers are given.
+func (b *Book) publish(m *model) {
+	b.m.Store(m)
+	b.news.tell()
+}
+
+// news tells those who wait that something has happened.
+type news struct {
+	mu sync.Mutex
+	ch chan struct{}
+}
+
+// next is closed when news come after the call.
+func (n *news) next() <-chan struct{} {
+	n.mu.Lock()
+	defer n.mu.Unlock()
+	if n.ch == nil {
+		n.ch = make(chan struct{})
+	}
+	return n.ch
+}
+
+func (n *news) tell() {
+	n.mu.Lock()
+	defer n.mu.Unlock()
+	if n.ch != nil {
+		close(n.ch)
+		n.ch = nil
+	}
+}
+
+// Turn makes today the present day of every site, so that what stands today is kept at hand. It is for a
+// process that stays: the first time it makes all that standings are counted from.
+func (b *Book) Turn(ctx context.Context) error {
+	if _, err := b.current(ctx); err != nil {
 		return err
 	}
-	if err := b.m.take(delta); err != nil {
-		return err
+	b.growing <- struct{}{}
+	defer func() { <-b.growing }()
+	next := b.m.Load().fork()
+	next.engine.Build()
+	now := b.Now()
+	for code := range next.sites {
+		next.engine.Turn(code, civil.DayOf(now, next.zone(code)))
 	}
-	b.m.head = size
+	b.publish(next)
 	return nil
 }
 
@@ -128,12 +224,11 @@ func knownKinds(tx *store.Tx, after int64) error {
 
 // read runs a query against one consistent state of the model.
 func (b *Book) read(ctx context.Context, fn func(m *model) error) error {
-	if err := b.sync(ctx); err != nil {
+	m, err := b.current(ctx)
+	if err != nil {
 		return err
 	}
-	b.mu.RLock()
-	defer b.mu.RUnlock()
-	return fn(b.m)
+	return fn(m)
 }
 
 // Today is the civil day at the site now.

@@ -159,8 +159,18 @@ func blankRows(tx *store.Tx, person string, seq int64) error {
 
 // reload makes the model anew from the store, so that nothing erased stays in memory.
 func (b *Book) reload(ctx context.Context) error {
-	b.mu.Lock()
-	b.m = newModel()
-	b.mu.Unlock()
-	return b.sync(ctx)
+	b.growing <- struct{}{}
+	defer func() { <-b.growing }()
+	m := b.emptyModel()
+	err := b.st.Read(ctx, func(tx *store.Tx) error {
+		size, err := tx.Size()
+		if err != nil {
+			return err
+		}
+		return m.takeAfter(tx, size)
+	})
+	if err == nil {
+		b.publish(m)
+	}
+	return err
 }

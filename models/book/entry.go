@@ -162,9 +162,15 @@ func (b *Book) encode(d draft, actor Actor, at time.Time) (store.Entry, []store.
 	if err != nil {
 		return store.Entry{}, nil, err
 	}
+	e, err := d.encode(actor, at)
+	return e, veils, err
+}
+
+// encode gives the stored form, without Seq, of a draft whose body is sealed.
+func (d *draft) encode(actor Actor, at time.Time) (store.Entry, error) {
 	content, err := json.Marshal(d.body)
 	if err != nil {
-		return store.Entry{}, nil, err
+		return store.Entry{}, err
 	}
 	env := envelope{
 		Actor: actor.id(), At: at.UTC().Format(instantLayout), Batch: d.batch, Body: content, ID: d.id,
@@ -172,13 +178,12 @@ func (b *Book) encode(d draft, actor Actor, at time.Time) (store.Entry, []store.
 	}
 	bytes, err := ledger.Canonical(env)
 	if err != nil {
-		return store.Entry{}, nil, err
+		return store.Entry{}, err
 	}
-	e := store.Entry{
+	return store.Entry{
 		ID: d.id, Kind: env.Kind, V: env.V, Site: d.site, Batch: d.batch, Supersedes: d.supersedes,
 		Actor: env.Actor, RecordedAt: at, Bytes: bytes,
-	}
-	return e, veils, nil
+	}, nil
 }
 
 // newID makes a UUIDv7 from the clock and randomness that were passed in.

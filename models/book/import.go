@@ -109,7 +109,7 @@ func (b *Book) Import(ctx context.Context, actor Actor, o ImportOptions) (Import
 	if err := actor.may(ImportTables, o.Site); err != nil {
 		return report, err
 	}
-	_, err := b.write(ctx, actor, func(s *session) error {
+	_, err := b.writeAlone(ctx, actor, func(s *session) error {
 		in, err := s.startImport(o, &report)
 		if err != nil {
 			return err
@@ -136,7 +136,6 @@ func (s *session) startImport(o ImportOptions, report *ImportReport) (*importing
 	if s.m.site(o.Site) == nil {
 		return nil, &NotFound{"site", o.Site}
 	}
-	s.m = s.m.overlay()
 	id, _, err := s.tx.Meta(store.MetaBookID)
 	if err != nil {
 		return nil, err
@@ -254,11 +253,14 @@ func (in *importing) identify(d *rowDraft, line int) (string, bool, error) {
 		if !ok {
 			return id.String(), false, nil
 		}
-		if in.undone(d, seq) {
+		again, err := in.undone(seq)
+		if err != nil {
+			return "", false, err
+		}
+		if again {
 			continue
 		}
-		in.keepCorrected(d, seq, line)
-		return id.String(), true, nil
+		return id.String(), true, in.keepCorrected(d, seq, line)
 	}
 }
 
@@ -287,25 +289,35 @@ func contentID(hash uuid.UUID, n, again int) uuid.UUID {
 
 // undone tells whether the entry was taken back with the whole of its import: then the row may be
 // imported anew.
-func (in *importing) undone(d *rowDraft, seq int64) bool {
-	l, ok := in.m.lineOf(in.o.Table, d.key, seq)
-	if !ok || l.Ended == 0 {
-		return false
+func (in *importing) undone(seq int64) (bool, error) {
+	l, ok, err := in.lineOf(seq)
+	if err != nil || !ok || l.Ended == 0 {
+		return false, err
 	}
 	for _, b := range in.m.batches {
 		if b.ID == l.Batch {
-			return b.Ended == l.Ended
+			return b.Ended == l.Ended, nil
 		}
 	}
-	return false
+	return false, nil
+}
+
+// lineOf is the projected row that an entry of the table made.
+func (in *importing) lineOf(seq int64) (store.Line, bool, error) {
+	name := in.o.Table
+	if name == "pauses" {
+		name = "excusals"
+	}
+	return in.tx.LineAt(name, seq)
 }
 
 // keepCorrected lists a row whose entry was corrected or withdrawn by hand since.
-func (in *importing) keepCorrected(d *rowDraft, seq int64, line int) {
-	l, ok := in.m.lineOf(in.o.Table, d.key, seq)
+func (in *importing) keepCorrected(d *rowDraft, seq int64, line int) error {
+	l, ok, err := in.lineOf(seq)
 	if ok && l.Ended != 0 && d.undoes == nil {
 		d.undoes = &table.Fault{Line: line, Problem: "was imported before and has been corrected or withdrawn since", Accepted: "the later entry stands; change it on its page"}
 	}
+	return err
 }
 
 // take adds an entry to the chunk that is written next.
@@ -351,39 +363,6 @@ func (in *importing) finish() error {
 		return err
 	}
 	return in.session.append([]store.Entry{e}, [][]store.Veil{v}, []draft{{id: in.batch, site: in.o.Site, body: head}})
-}
-
-// lineOf finds the projected row that an entry of a table made.
-func (m *model) lineOf(name string, k store.SubjectKey, seq int64) (store.Line, bool) {
-	find := func(n int, at func(int) store.Line) (store.Line, bool) {
-		for i := n - 1; i >= 0; i-- {
-			if l := at(i); l.Seq == seq {
-				return l, true
-			}
-		}
-		return store.Line{}, false
-	}
-	switch name {
-	case "people":
-		rows := m.people[k.Code]
-		return find(len(rows), func(i int) store.Line { return rows[i].Line })
-	case "fixtures":
-		rows := m.fixtures[siteCode{k.Site, k.Code}]
-		return find(len(rows), func(i int) store.Line { return rows[i].Line })
-	case "records":
-		rows := m.records[k]
-		i, ok := slices.BinarySearchFunc(rows, seq, func(r store.RecordRow, s int64) int { return int(r.Seq - s) })
-		if !ok {
-			return store.Line{}, false
-		}
-		return rows[i].Line, true
-	case "events":
-		rows := m.events[k]
-		return find(len(rows), func(i int) store.Line { return rows[i].Line })
-	default:
-		rows := m.excusals[k]
-		return find(len(rows), func(i int) store.Line { return rows[i].Line })
-	}
 }
 
 // answers tells whether some item of some version asks for the record.

@@ -50,7 +50,7 @@ func (in *importing) personUndoes(f PersonForm, line int) *table.Fault {
 		{"badge", f.Badge, func(r store.PersonRow) string { return r.Badge }},
 	} {
 		var lines []said
-		for _, r := range in.m.people[f.Code] {
+		for _, r := range in.m.people.get(f.Code) {
 			if v := field.of(r); r.Ended == 0 && v != "" {
 				lines = append(lines, said{v, r.Batch != ""})
 			}
@@ -68,7 +68,7 @@ func (in *importing) personUndoes(f PersonForm, line int) *table.Fault {
 
 func (in *importing) fixtureUndoes(f FixtureForm, line int) *table.Fault {
 	var lines []said
-	for _, r := range in.m.fixtures[siteCode{in.o.Site, f.Code}] {
+	for _, r := range in.m.fixtures.get(siteCode{in.o.Site, f.Code}) {
 		if r.Ended == 0 && r.Name != "" {
 			lines = append(lines, said{r.Name, r.Batch != ""})
 		}
@@ -86,7 +86,7 @@ func (in *importing) fixtureUndoes(f FixtureForm, line int) *table.Fault {
 // stintUndoes compares the end of the span that begins on the row's day.
 func (in *importing) stintUndoes(asks program.Asks, code string, f stintForm, line int) *table.Fault {
 	var lines []said
-	for _, r := range in.m.stints[factKey(in.o.Site, asks, code)] {
+	for _, r := range in.m.stints.get(factKey(in.o.Site, asks, code)) {
 		if r.Ended == 0 && dayOr(r.First, "") == f.first {
 			lines = append(lines, said{dayOr(r.Last, "no end"), r.Batch != ""})
 		}
@@ -105,7 +105,7 @@ func (in *importing) factsUndo(asks program.Asks, code string, values map[string
 	}
 	for _, k := range sortedKeys(values) {
 		var lines []said
-		for _, r := range in.m.facts[factKey(in.o.Site, asks, code)] {
+		for _, r := range in.m.facts.get(factKey(in.o.Site, asks, code)) {
 			if r.Ended == 0 && r.Fact == k && r.From <= limit {
 				lines = append(lines, said{r.Value, r.Batch != ""})
 			}

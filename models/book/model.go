@@ -2,8 +2,10 @@ package book
 
 import (
 	"cmp"
+	"context"
 	"encoding/json"
 	"fmt"
+	"maps"
 	"slices"
 	"strings"
 	"time"
@@ -15,38 +17,54 @@ import (
 )
 
 // model is what the book keeps in memory: the evaluator and what pages look up. It is fed from the
-// projected rows, at open and after every write of this or another process.
+// projected rows, at open and after every write of this or another process. Once it is published it is
+// only read; what comes after goes into a fork.
 type model struct {
-	head     int64 // number of entries taken in
+	own      *owner
+	st       *store.Store // where the records are, of which it only keeps what standings need
+	head     int64        // number of entries taken in
 	engine   *standing.Engine
 	sites    map[string]*siteModel
-	people   map[string][]store.PersonRow
-	fixtures map[siteCode][]store.FixtureRow
-	stints   map[store.SubjectKey][]store.StintRow
-	facts    map[store.SubjectKey][]store.FactRow
-	records  map[store.SubjectKey][]store.RecordRow
-	events   map[store.SubjectKey][]store.EventRow
-	excusals map[store.SubjectKey][]store.ExcusalRow
+	people   shelf[string, []store.PersonRow]
+	fixtures shelf[siteCode, []store.FixtureRow]
+	stints   shelf[store.SubjectKey, []store.StintRow]
+	facts    shelf[store.SubjectKey, []store.FactRow]
+	events   shelf[store.SubjectKey, []store.EventRow]
+	excusals shelf[store.SubjectKey, []store.ExcusalRow]
 	plans    []store.PlanRow
-	accounts map[string][]store.AccountRow
+	done     shelf[string, []int64] // the records that stand of each planned session
+	accounts shelf[string, []store.AccountRow]
 	batches  []store.BatchRow
-	sessions map[string]map[int64]bool // records that stand, by session: whether a plan is done
 }
 
 type siteCode struct{ site, code string }
 
 func newModel() *model {
-	return &model{
-		engine: standing.New(), sites: map[string]*siteModel{}, people: map[string][]store.PersonRow{},
-		fixtures: map[siteCode][]store.FixtureRow{}, stints: map[store.SubjectKey][]store.StintRow{},
-		facts: map[store.SubjectKey][]store.FactRow{}, records: map[store.SubjectKey][]store.RecordRow{},
-		events: map[store.SubjectKey][]store.EventRow{}, excusals: map[store.SubjectKey][]store.ExcusalRow{},
-		accounts: map[string][]store.AccountRow{}, sessions: map[string]map[int64]bool{},
-	}
+	m := &model{own: &owner{}, engine: standing.New(), sites: map[string]*siteModel{}}
+	m.people, m.fixtures = newShelf[string, []store.PersonRow](m.own), newShelf[siteCode, []store.FixtureRow](m.own)
+	m.stints, m.facts = newShelf[store.SubjectKey, []store.StintRow](m.own), newShelf[store.SubjectKey, []store.FactRow](m.own)
+	m.events, m.excusals = newShelf[store.SubjectKey, []store.EventRow](m.own), newShelf[store.SubjectKey, []store.ExcusalRow](m.own)
+	m.done, m.accounts = newShelf[string, []int64](m.own), newShelf[string, []store.AccountRow](m.own)
+	return m
+}
+
+// fork gives a model with the same content to take more in; m itself is only read from then on. A fork
+// that is not published is thrown away; only one may be under way at a time.
+func (m *model) fork() *model {
+	f := *m
+	f.own = &owner{}
+	f.engine = m.engine.Fork()
+	f.sites = maps.Clone(m.sites)
+	f.people, f.fixtures = m.people.fork(f.own), m.fixtures.fork(f.own)
+	f.stints, f.facts = m.stints.fork(f.own), m.facts.fork(f.own)
+	f.events, f.excusals = m.events.fork(f.own), m.excusals.fork(f.own)
+	f.done, f.accounts = m.done.fork(f.own), m.accounts.fork(f.own)
+	return &f
 }
 
 // upsert puts a row into a list kept in order of sequence number; a row of the same entry (and, by
-// same, of the same part of it) is replaced.
+// same, of the same part of it) is replaced. A list that others may read is not changed but behind
+// its end.
 func upsert[T any](list []T, row T, seq func(T) int64, same func(a, b T) bool) []T {
 	i := len(list)
 	for i > 0 && seq(list[i-1]) > seq(row) {
@@ -54,14 +72,23 @@ func upsert[T any](list []T, row T, seq func(T) int64, same func(a, b T) bool) [
 	}
 	for j := i - 1; j >= 0 && seq(list[j]) == seq(row); j-- {
 		if same(list[j], row) {
+			list = slices.Clone(list)
 			list[j] = row
 			return list
 		}
 	}
-	return slices.Insert(list, i, row)
+	if i == len(list) {
+		return append(list, row)
+	}
+	return slices.Insert(list[:len(list):len(list)], i, row)
 }
 
 func always[T any](_, _ T) bool { return true }
+
+// put upserts a row into the list of a key on a shelf.
+func put[K comparable, T any](s *shelf[K, []T], k K, row T, seq func(T) int64, same func(a, b T) bool) {
+	s.set(k, upsert(s.get(k), row, seq, same))
+}
 
 // take brings the model up to date with the rows that changed.
 func (m *model) take(d store.Delta) error {
@@ -71,33 +98,31 @@ func (m *model) take(d store.Delta) error {
 		}
 	}
 	for _, r := range d.People {
-		m.people[r.Code] = upsert(m.people[r.Code], r, func(r store.PersonRow) int64 { return r.Seq }, always)
+		put(&m.people, r.Code, r, func(r store.PersonRow) int64 { return r.Seq }, always)
 	}
 	for _, r := range d.Fixtures {
-		k := siteCode{r.Site, r.Code}
-		m.fixtures[k] = upsert(m.fixtures[k], r, func(r store.FixtureRow) int64 { return r.Seq }, always)
-		if m.engine != nil {
-			m.engine.PutFact(r.Site, standing.Fact{Line: known(r.Line), Subject: subjectOf(string(program.AsksFixture), r.Code), Code: factKind, From: civil.FirstDay, Value: r.Kind})
-		}
+		put(&m.fixtures, siteCode{r.Site, r.Code}, r, func(r store.FixtureRow) int64 { return r.Seq }, always)
+		m.engine.PutFact(r.Site, standing.Fact{Line: known(r.Line), Subject: subjectOf(string(program.AsksFixture), r.Code), Code: factKind, From: civil.FirstDay, Value: r.Kind})
 	}
 	for _, r := range d.Stints {
 		k := store.SubjectKey{Site: r.Site, Kind: r.Kind, Code: r.Code}
-		m.stints[k] = upsert(m.stints[k], r, func(r store.StintRow) int64 { return r.Seq }, always)
-		if m.engine != nil {
-			m.engine.PutStint(r.Site, standing.Stint{Line: known(r.Line), Subject: subjectOf(r.Kind, r.Code), First: r.First, Last: r.Last})
-		}
+		put(&m.stints, k, r, func(r store.StintRow) int64 { return r.Seq }, always)
+		m.engine.PutStint(r.Site, standing.Stint{Line: known(r.Line), Subject: subjectOf(r.Kind, r.Code), First: r.First, Last: r.Last})
 	}
 	for _, r := range d.Facts {
 		if err := m.takeFact(r); err != nil {
 			return err
 		}
 	}
-	m.takeHappenings(d)
 	for _, r := range d.Plans {
 		m.plans = upsert(m.plans, r, func(r store.PlanRow) int64 { return r.Seq }, always)
+		if _, known := m.planned(r.ID); !known {
+			m.done.set(r.ID, []int64{})
+		}
 	}
+	m.takeHappenings(d)
 	for _, r := range d.Accounts {
-		m.accounts[r.ID] = upsert(m.accounts[r.ID], r, func(r store.AccountRow) int64 { return r.Seq }, always)
+		put(&m.accounts, r.ID, r, func(r store.AccountRow) int64 { return r.Seq }, always)
 	}
 	for _, r := range d.Batches {
 		m.batches = upsert(m.batches, r, func(r store.BatchRow) int64 { return r.Seq }, always)
@@ -107,36 +132,42 @@ func (m *model) take(d store.Delta) error {
 
 func (m *model) takeHappenings(d store.Delta) {
 	for _, r := range d.Records {
-		m.records[r.Subject] = upsert(m.records[r.Subject], r, func(r store.RecordRow) int64 { return r.Seq }, always)
 		m.engine.PutRecord(standing.Record{
-			Line: known(r.Line), Order: r.Order, Site: r.Site, Subject: subjectOf(r.Subject.Kind, r.Subject.Code), What: r.What,
+			Line: known(r.Line), Site: r.Site, Subject: subjectOf(r.Subject.Kind, r.Subject.Code), What: r.What,
 			Day: r.Day, Time: r.Time, Passed: r.Passed, Until: r.Until, Limit: strings.Fields(r.Limit),
 		})
 		m.takeSession(r)
 	}
 	for _, r := range d.Events {
-		m.events[r.Subject] = upsert(m.events[r.Subject], r, func(r store.EventRow) int64 { return r.Seq }, always)
+		put(&m.events, r.Subject, r, func(r store.EventRow) int64 { return r.Seq }, always)
 		m.engine.PutEvent(r.Site, standing.Event{Line: known(r.Line), Subject: subjectOf(r.Subject.Kind, r.Subject.Code), Code: r.Event, Day: r.Day, Time: r.Time})
 	}
 	for _, r := range d.Excusals {
-		m.excusals[r.Subject] = upsert(m.excusals[r.Subject], r, func(r store.ExcusalRow) int64 { return r.Seq }, always)
+		put(&m.excusals, r.Subject, r, func(r store.ExcusalRow) int64 { return r.Seq }, always)
 		m.engine.PutExcusal(r.Site, standing.Excusal{Line: known(r.Line), Subject: subjectOf(r.Subject.Kind, r.Subject.Code), Item: r.Item, From: r.From, To: r.To, Opens: r.Opens})
 	}
 }
 
-// takeSession counts the record to its session while it stands.
+// takeSession counts the record to its session while it stands, if the session was planned.
 func (m *model) takeSession(r store.RecordRow) {
-	if r.Session == "" {
+	list, planned := m.planned(r.Session)
+	if !planned {
 		return
 	}
-	if m.sessions[r.Session] == nil {
-		m.sessions[r.Session] = map[int64]bool{}
-	}
+	list = slices.DeleteFunc(slices.Clone(list), func(seq int64) bool { return seq == r.Seq })
 	if r.Ended == 0 {
-		m.sessions[r.Session][r.Seq] = true
-	} else {
-		delete(m.sessions[r.Session], r.Seq)
+		list = append(list, r.Seq)
 	}
+	m.done.set(r.Session, list)
+}
+
+// planned gives the records that stand of a session, and whether it is one that was planned.
+func (m *model) planned(session string) ([]int64, bool) {
+	if session == "" || m.done.parts == nil {
+		return nil, false
+	}
+	list := m.done.get(session)
+	return list, list != nil
 }
 
 func (m *model) takeFact(r store.FactRow) error {
@@ -145,19 +176,17 @@ func (m *model) takeFact(r store.FactRow) error {
 		return fmt.Errorf("the fact %s of %s %s is not readable: %w", r.Fact, r.Kind, r.Code, err)
 	}
 	k := store.SubjectKey{Site: r.Site, Kind: r.Kind, Code: r.Code}
-	m.facts[k] = upsert(m.facts[k], r, func(r store.FactRow) int64 { return r.Seq }, func(a, b store.FactRow) bool { return a.Fact == b.Fact })
-	if m.engine != nil {
-		m.engine.PutFact(r.Site, standing.Fact{Line: known(r.Line), Subject: subjectOf(r.Kind, r.Code), Code: r.Fact, From: r.From, Value: value})
-	}
+	put(&m.facts, k, r, func(r store.FactRow) int64 { return r.Seq }, func(a, b store.FactRow) bool { return a.Fact == b.Fact })
+	m.engine.PutFact(r.Site, standing.Fact{Line: known(r.Line), Subject: subjectOf(r.Kind, r.Code), Code: r.Fact, From: r.From, Value: value})
 	return nil
 }
 
 func (m *model) takeVersion(v store.VersionRow) error {
-	s := m.sites[v.Site]
-	if s == nil {
-		s = &siteModel{code: v.Site}
-		m.sites[v.Site] = s
+	s := &siteModel{code: v.Site}
+	if old := m.sites[v.Site]; old != nil {
+		s.versions = old.versions
 	}
+	m.sites[v.Site] = s
 	p, err := program.Parse(v.Source)
 	if err != nil {
 		return fmt.Errorf("version %d of the program of site %s is not readable by this program: %w", v.Number, v.Site, err)
@@ -200,11 +229,29 @@ func (m *model) newestVersion(site string) (store.VersionRow, bool) {
 	return best, true
 }
 
+// recordsOf reads the records of a subject, as far as they are known, in order of recording.
+func (m *model) recordsOf(site string, s standing.Subject) ([]store.RecordRow, error) {
+	var rows []store.RecordRow
+	err := m.st.Read(context.Background(), func(tx *store.Tx) error {
+		var err error
+		rows, err = tx.RecordsAt(m.engine.Lines(site, s))
+		return err
+	})
+	key := subjectBody{string(s.Asks), s.Code}.key(site)
+	rows = slices.DeleteFunc(rows, func(r store.RecordRow) bool { return r.Subject != key })
+	for i := range rows {
+		if rows[i].Ended >= m.head {
+			rows[i].Ended = 0 // by what is not known yet
+		}
+	}
+	return rows, err
+}
+
 // person merges what the standing lines say of a person; of each field the last that says it.
 func (m *model) person(code string) (store.PersonRow, bool) {
 	var out store.PersonRow
 	found := false
-	for _, r := range m.people[code] {
+	for _, r := range m.people.get(code) {
 		if r.Ended != 0 {
 			continue
 		}
@@ -221,7 +268,7 @@ func (m *model) person(code string) (store.PersonRow, bool) {
 func (m *model) fixture(site, code string) (store.FixtureRow, bool) {
 	var out store.FixtureRow
 	found := false
-	for _, r := range m.fixtures[siteCode{site, code}] {
+	for _, r := range m.fixtures.get(siteCode{site, code}) {
 		if r.Ended != 0 {
 			continue
 		}
@@ -237,7 +284,7 @@ func (m *model) fixture(site, code string) (store.FixtureRow, bool) {
 // last recorded.
 func (m *model) stintsAt(site, kind, code string) []store.StintRow {
 	var out []store.StintRow
-	for _, r := range m.stints[store.SubjectKey{Site: site, Kind: kind, Code: code}] {
+	for _, r := range m.stints.get(store.SubjectKey{Site: site, Kind: kind, Code: code}) {
 		if r.Ended != 0 {
 			continue
 		}
@@ -275,9 +322,19 @@ func covers(first, last *civil.Day, d civil.Day) bool {
 	return (first == nil || *first <= d) && (last == nil || d <= *last)
 }
 
+// accountIDs lists the accounts in order of their identifier.
+func (m *model) accountIDs() []string {
+	var ids []string
+	for id := range m.accounts.all() {
+		ids = append(ids, id)
+	}
+	slices.Sort(ids)
+	return ids
+}
+
 // account gives the account as its last standing line says.
 func (m *model) account(id string) (store.AccountRow, bool) {
-	rows := m.accounts[id]
+	rows := m.accounts.get(id)
 	for i := len(rows) - 1; i >= 0; i-- {
 		if rows[i].Ended == 0 {
 			return rows[i], true
@@ -288,12 +345,13 @@ func (m *model) account(id string) (store.AccountRow, bool) {
 
 // accountNamed finds the account that bears a name now.
 func (m *model) accountNamed(name string) (store.AccountRow, bool) {
-	for _, id := range sortedKeys(m.accounts) {
-		if a, ok := m.account(id); ok && strings.EqualFold(a.Name, name) && name != "" {
-			return a, true
+	var found store.AccountRow
+	for id := range m.accounts.all() {
+		if a, ok := m.account(id); ok && strings.EqualFold(a.Name, name) && name != "" && (found.ID == "" || id < found.ID) {
+			found = a
 		}
 	}
-	return store.AccountRow{}, false
+	return found, found.ID != ""
 }
 
 // hasSubject tells whether the subject is on record at the site (a person: in the book).

@@ -98,7 +98,8 @@ func boolOrder(a, b bool) int {
 // peopleOfSite are the codes of everybody with a stint at the site.
 func (v *siteOn) peopleOfSite() []string {
 	var out []string
-	for code := range v.m.people {
+	for _, known := range v.m.engine.Known(v.Code, program.AsksPerson) {
+		code := known.Code
 		if len(v.m.stintsAt(v.Code, string(program.AsksPerson), code)) > 0 {
 			out = append(out, code)
 		}
@@ -194,13 +195,17 @@ func (v *siteOn) subjectView(s standing.Subject) (SubjectView, []looseText, erro
 	}
 	out.Facts = v.factLines(s)
 	key := subjectBody{string(s.Asks), s.Code}.key(v.Code)
-	out.Records = v.recordLines(v.m.records[key])
-	for _, e := range v.m.events[key] {
+	records, err := v.m.recordsOf(v.Code, s)
+	if err != nil {
+		return out, nil, err
+	}
+	out.Records = v.recordLines(records)
+	for _, e := range v.m.events.get(key) {
 		out.Events = append(out.Events, v.eventLine(e))
 	}
 	slices.Reverse(out.Events)
 	var loose []looseText
-	for _, x := range v.m.excusals[key] {
+	for _, x := range v.m.excusals.get(key) {
 		if x.Item != "" && x.Site != v.Code {
 			continue
 		}
@@ -219,7 +224,7 @@ func (v *siteOn) factLines(s standing.Subject) []FactLine {
 		declared = c.fixtureFacts(f.Kind)
 	}
 	var out []FactLine
-	for _, r := range v.m.facts[factKey(v.Code, s.Asks, s.Code)] {
+	for _, r := range v.m.facts.get(factKey(v.Code, s.Asks, s.Code)) {
 		label := cmp.Or(labels[r.Fact], declared[r.Fact].Label, r.Fact)
 		out = append(out, FactLine{r.Fact, label, factShown(r.Value, declared[r.Fact].Unit), r.From, r.ID, r.Batch != "", r.Ended != 0})
 	}
@@ -352,7 +357,7 @@ func (b *Book) fillExcusals(ctx context.Context, out *SubjectView, loose []loose
 // personNamed gives the code of the one person who bears the name, or nothing.
 func (m *model) personNamed(name string) string {
 	found := ""
-	for code := range m.people {
+	for code := range m.people.all() {
 		if p, ok := m.person(code); ok && strings.EqualFold(p.Name, name) {
 			if found != "" {
 				return ""

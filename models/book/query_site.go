@@ -37,12 +37,11 @@ func (b *Book) Fixtures(ctx context.Context, actor Actor, site string, on *civil
 
 func (v *siteOn) fixtureCodes() []string {
 	var out []string
-	for k := range v.m.fixtures {
-		if _, ok := v.m.fixture(v.Code, k.code); ok && k.site == v.Code {
-			out = append(out, k.code)
+	for _, known := range v.m.engine.Known(v.Code, program.AsksFixture) {
+		if _, ok := v.m.fixture(v.Code, known.Code); ok {
+			out = append(out, known.Code)
 		}
 	}
-	slices.Sort(out)
 	return out
 }
 
@@ -216,8 +215,8 @@ func (b *Book) Drills(ctx context.Context, actor Actor, site string, on *civil.D
 			}
 		}
 		out.Plans = v.plans()
-		out.Held = v.heldDrills()
-		return nil
+		out.Held, err = v.heldDrills()
+		return err
 	})
 	return out, err
 }
@@ -232,21 +231,25 @@ func (v *siteOn) plans() []PlanLine {
 		}
 		out = append(out, PlanLine{
 			Entry: p.ID, What: p.What, Title: v.whatTitle(p.What), Crew: p.Crew, CrewName: cmp.Or(named(v.Program.Crew(p.Crew)), p.Crew),
-			Day: p.Day, At: p.At, Done: len(v.m.sessions[p.ID]) > 0,
+			Day: p.Day, At: p.At, Done: len(v.m.done.get(p.ID)) > 0,
 		})
 	}
 	slices.SortStableFunc(out, func(a, b PlanLine) int { return cmp.Compare(a.Day, b.Day) })
 	return out
 }
 
-func (v *siteOn) heldDrills() []RecordLine {
+func (v *siteOn) heldDrills() ([]RecordLine, error) {
 	var rows []store.RecordRow
 	for _, code := range v.m.site(v.Code).crewCodes() {
-		for _, r := range v.m.records[store.SubjectKey{Site: v.Code, Kind: string(program.AsksCrew), Code: code}] {
+		records, err := v.m.recordsOf(v.Code, standing.Subject{Asks: program.AsksCrew, Code: code})
+		if err != nil {
+			return nil, err
+		}
+		for _, r := range records {
 			if isDrill(r.What) && r.Ended == 0 && r.Day <= v.on {
 				rows = append(rows, r)
 			}
 		}
 	}
-	return v.recordLines(rows)
+	return v.recordLines(rows), nil
 }

@@ -17,7 +17,7 @@ func (b *Book) Writers(ctx context.Context, actor Actor, site string) ([]Writer,
 	}
 	var out []Writer
 	err := b.read(ctx, func(m *model) error {
-		for id := range m.accounts {
+		for id := range m.accounts.all() {
 			a, ok := m.account(id)
 			if ok && a.Name != "" && (len(a.Sites) == 0 || slices.Contains(a.Sites, site)) {
 				out = append(out, Writer{id, a.Name})

@@ -45,7 +45,7 @@ func (v *siteOn) heldEnds(person standing.Subject, held string, rows []Row) []ci
 	for _, s := range v.m.stintsAt(v.Code, string(program.AsksPerson), person.Code) {
 		add(s.Last)
 	}
-	for _, f := range v.m.facts[factKey(v.Code, person.Asks, person.Code)] {
+	for _, f := range v.m.facts.get(factKey(v.Code, person.Asks, person.Code)) {
 		add(dayPtr(f.From - 1))
 	}
 	for _, ver := range v.m.site(v.Code).versions {

@@ -50,7 +50,7 @@ func (b *Book) Attendees(ctx context.Context, actor Actor, site, record string) 
 
 // paused tells whether a pause of the subject covers the day.
 func (v *siteOn) paused(s standing.Subject) bool {
-	return slices.ContainsFunc(v.m.excusals[subjectBody{string(s.Asks), s.Code}.key(v.Code)], func(x store.ExcusalRow) bool {
+	return slices.ContainsFunc(v.m.excusals.get(subjectBody{string(s.Asks), s.Code}.key(v.Code)), func(x store.ExcusalRow) bool {
 		return x.Item == "" && x.Ended == 0 && x.From <= v.on && (x.To == nil || *x.To >= v.on)
 	})
 }

@@ -6,7 +6,6 @@ import (
 	"lodebook/models/civil"
 	"lodebook/models/program"
 	"lodebook/models/standing"
-	"lodebook/models/store"
 )
 
 // SheetHead is what stands over a sheet: the fixture, whether a phone may go into its zone, and when
@@ -41,11 +40,7 @@ func (b *Book) SheetHead(ctx context.Context, actor Actor, site, fixture, record
 		if z, ok := v.Program.Zone(out.Zone); ok {
 			out.Devices = z.Devices
 		}
-		for _, r := range m.records[store.SubjectKey{Site: site, Kind: string(program.AsksFixture), Code: fixture}] {
-			if r.What == record && r.Ended == 0 && (out.Last == nil || r.Day > *out.Last) {
-				out.Last = dayPtr(r.Day)
-			}
-		}
+		out.Last = m.engine.LastDay(site, s, record)
 		return nil
 	})
 	return out, err

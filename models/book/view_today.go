@@ -6,16 +6,19 @@ import (
 	"strings"
 
 	"lodebook/models/civil"
+	"lodebook/models/program"
 )
 
 // WaitingExcusals are those that ask to open zones, still run, and wait for a safety officer.
 func (b *Book) WaitingExcusals(ctx context.Context, actor Actor, site string) ([]ExcusalLine, error) {
 	var out []ExcusalLine
 	err := b.at(ctx, actor, site, nil, func(v *siteOn) error {
-		for _, rows := range v.m.excusals {
-			for _, x := range rows {
-				if x.Site == site && x.Waiting && x.Ended == 0 && (x.To == nil || *x.To >= v.Today) {
-					out = append(out, v.excusalLine(x))
+		for _, asks := range program.AllAsks {
+			for _, s := range v.m.engine.Known(site, asks) {
+				for _, x := range v.m.excusals.get(subjectBody{string(s.Asks), s.Code}.key(site)) {
+					if x.Site == site && x.Waiting && x.Ended == 0 && (x.To == nil || *x.To >= v.Today) {
+						out = append(out, v.excusalLine(x))
+					}
 				}
 			}
 		}

@@ -37,35 +37,25 @@ type session struct {
 	actor   Actor
 	now     time.Time // recorded-at: the later of the clock and the last recorded-at
 	receipt Receipt
+	alone   bool  // its rows are taken into m at once, so that those after them are checked against them
+	rows    []any // else they are kept until it is done
 }
 
-// write opens a transaction, brings the model up to date inside it, and lets fn add entries. When
-// fn fails nothing stays. The model takes the new rows in with the next read.
+// write lets fn add entries, in a transaction that it may share with other writes of this process. When
+// fn fails nothing of it stays. When write returns, what fn wrote is on the disk and the next read sees it.
 func (b *Book) write(ctx context.Context, actor Actor, fn func(s *session) error) (Receipt, error) {
-	b.writing.Lock()
-	defer b.writing.Unlock()
-	var s *session
-	err := b.st.Write(ctx, func(tx *store.Tx) error {
-		if err := b.lockedCatchUp(tx); err != nil {
-			return err
-		}
-		now, err := b.recordedAt(tx)
-		if err != nil {
-			return err
-		}
-		s = &session{b: b, m: b.m, tx: tx, actor: actor, now: now}
-		return fn(s)
-	})
-	if err != nil {
-		return Receipt{}, err
-	}
-	return s.receipt, nil
+	return b.submit(&request{ctx: ctx, actor: actor, fn: fn})
 }
 
-func (b *Book) lockedCatchUp(tx *store.Tx) error {
-	b.mu.Lock()
-	defer b.mu.Unlock()
-	return b.catchUp(tx)
+// writeAlone is write in a transaction of its own, for what is long.
+func (b *Book) writeAlone(ctx context.Context, actor Actor, fn func(s *session) error) (Receipt, error) {
+	return b.submit(&request{ctx: ctx, actor: actor, fn: fn, alone: true})
+}
+
+// operate writes what is no part of the book: secrets, sessions, flags, runs.
+func (b *Book) operate(ctx context.Context, fn func(tx *store.Tx, m *model) error) error {
+	_, err := b.submit(&request{ctx: ctx, fn: func(s *session) error { return fn(s.tx, s.m) }})
+	return err
 }
 
 func (b *Book) recordedAt(tx *store.Tx) (time.Time, error) {
@@ -256,10 +246,12 @@ func (s *session) append(entries []store.Entry, veils [][]store.Veil, drafts []d
 		rows = append(rows, d.body.apply(appliedOf(entries[i], seq, s.m.zone))...)
 		s.receipt.Written = append(s.receipt.Written, d.id)
 	}
-	if s.m != s.b.m {
+	if s.alone {
 		if err := s.m.takeRows(rows); err != nil {
 			return err
 		}
+	} else {
+		s.rows = append(s.rows, rows...)
 	}
 	return s.tx.Put(rows...)
 }
@@ -285,21 +277,16 @@ func (s *session) endSuperseded(d draft, seq int64) error {
 
 // Rebuild drops every projected row and makes them anew from the entries.
 func (b *Book) Rebuild(ctx context.Context) error {
-	b.writing.Lock()
-	defer b.writing.Unlock()
-	err := b.st.Write(ctx, func(tx *store.Tx) error {
-		if err := tx.DropProjections(); err != nil {
+	_, err := b.writeAlone(ctx, SystemOperator(""), func(s *session) error {
+		if err := s.tx.DropProjections(); err != nil {
 			return err
 		}
-		return replay(tx)
+		return replay(s.tx)
 	})
 	if err != nil {
 		return err
 	}
-	b.mu.Lock()
-	b.m = newModel()
-	b.mu.Unlock()
-	return b.sync(ctx)
+	return b.reload(ctx)
 }
 
 // replay applies every entry in order.

@@ -1,7 +1,9 @@
 package standing
 
 import (
+	"cmp"
 	"fmt"
+	"slices"
 
 	"lodebook/models/civil"
 	"lodebook/models/program"
@@ -88,6 +90,40 @@ func (e *Engine) Lines(site string, s Subject) []int64 {
 		}
 	}
 	return out
+}
+
+// Known lists the subjects of a kind of which anything is on record at a site, also those who have left or are
+// no longer declared, by code.
+func (e *Engine) Known(site string, asks program.Asks) []Subject {
+	s := e.site(site)
+	if s == nil {
+		return nil
+	}
+	out := make([]Subject, len(s.ofKind[asks]))
+	for i, no := range s.ofKind[asks] {
+		out[i] = s.locals[no].subject
+	}
+	slices.SortFunc(out, func(a, b Subject) int { return cmp.Compare(a.Code, b.Code) })
+	return out
+}
+
+// LastDay is the day of the last record of a kind and code that stands, nil where there is none.
+func (e *Engine) LastDay(site string, s Subject, what string) *civil.Day {
+	kind, ok := e.kinds.number[what]
+	p := e.pastOf(site, s)
+	if !ok || p == nil {
+		return nil
+	}
+	i := p.find(kind)
+	if i < 0 {
+		return nil
+	}
+	for n := len(p.deeds[i].list) - 1; n >= 0; n-- {
+		if r := p.deeds[i].list[n]; r.ended == 0 {
+			return &r.day
+		}
+	}
+	return nil
 }
 
 func (e *Engine) pastOf(site string, s Subject) *past {

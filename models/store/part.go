@@ -192,3 +192,6 @@ func writes(query string) bool {
 	verb, _, _ := strings.Cut(strings.TrimSpace(query), " ")
 	return !strings.EqualFold(verb, "SELECT") && !strings.EqualFold(verb, "PRAGMA")
 }
+
+// Ended tells whether the transaction ended or blanked rows that were there.
+func (t *Tx) Ended() bool { return t.ended }

@@ -46,6 +46,7 @@ type projection interface {
 	conditions() []string
 	hold(t *Tx, rows any) (bool, error)
 	changed(t *Tx, since int64, to *Delta) error
+	add(to *Delta, rows any) bool
 }
 
 // projections are all tables that are made from the entries.
@@ -344,6 +345,7 @@ func (t *Tx) BlankFacts(seq, by int64, facts ...string) error {
 
 // ends notes that the part under way, if any, ends or blanks rows.
 func (t *Tx) ends() {
+	t.ended = true
 	if t.part != nil {
 		t.part.ended = true
 	}
@@ -428,4 +430,54 @@ func rowAsText(columns []string, cells []sql.NullString) string {
 		}
 	}
 	return strings.Join(parts, " ")
+}
+
+// Add adds a row, or a slice of rows, of any line type to the delta.
+func (d *Delta) Add(rows any) error {
+	for _, p := range projections {
+		if p.add(d, rows) {
+			return nil
+		}
+	}
+	return fmt.Errorf("%T is no row of a projection", rows)
+}
+
+func (p table[T, R]) add(to *Delta, rows any) bool {
+	switch r := rows.(type) {
+	case T:
+		*p.of(to) = append(*p.of(to), r)
+	case []T:
+		*p.of(to) = append(*p.of(to), r...)
+	default:
+		return false
+	}
+	return true
+}
+
+// LineAt gives what a projection has of the first row that an entry wrote in it, and whether there is one.
+func (t *Tx) LineAt(table string, seq int64) (Line, bool, error) {
+	rows, err := find[lineColumns](t.db.Table(table).Select("seq, n, ended, entry, batch").Where("seq = ?", seq).Order("n").Limit(1))
+	if err != nil || len(rows) == 0 {
+		return Line{}, false, err
+	}
+	return rows[0].out(), true, nil
+}
+
+// RecordsAt gives the rows of records that entries of those sequence numbers wrote, in order of
+// recording.
+func (t *Tx) RecordsAt(seqs []int64) ([]RecordRow, error) {
+	slices.Sort(seqs)
+	var out []RecordRow
+	for len(seqs) > 0 {
+		n := min(len(seqs), batchRows)
+		rows, err := find[recordLine](t.db.Table("records").Where("seq IN ?", seqs[:n]).Order("seq, n"))
+		if err != nil {
+			return nil, err
+		}
+		for _, r := range rows {
+			out = append(out, recordOut(r))
+		}
+		seqs = seqs[n:]
+	}
+	return out, nil
 }

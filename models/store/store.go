@@ -40,6 +40,7 @@ type Tx struct {
 	held     map[string]holding // projection rows that are not in the database yet, by table
 	pending  pending            // rows of entries that parts hold back
 	part     *part              // the part under way, or nil
+	ended    bool               // rows that were there have been ended or blanked
 	flushing bool               // rows held back are being written
 	failed   error              // of an insert: what it was to write is in part forgotten
 	bulk     *bulkWriter        // writes many rows at once; nil but in WriteBulk
