@@ -148,8 +148,8 @@ func (l load) ask(client *http.Client, url string, j *jar) error {
 	return nil
 }
 
-// BenchmarkFreshPages makes the pages anew each time, since the minute is another one.
-func BenchmarkFreshPages(b *testing.B) {
+// BenchmarkFresh makes the pages anew each time, since the minute is another one.
+func BenchmarkFresh(b *testing.B) {
 	h := crowded(b, 5000)
 	j, morning := h.as(book.SafetyOfficer), h.now
 	for _, path := range firstPages {
