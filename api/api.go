@@ -4,9 +4,12 @@ package api
 
 import (
 	"context"
+	"crypto/sha256"
+	"encoding/hex"
 	"encoding/json"
 	"errors"
 	"net/http"
+	"strings"
 	"time"
 
 	"github.com/gin-gonic/gin"
@@ -62,8 +65,43 @@ func (s *server) serve(r route) gin.HandlerFunc {
 			writeProblem(c, err)
 			return
 		}
-		c.JSON(http.StatusOK, answer)
+		if r.action == "" {
+			c.JSON(http.StatusOK, answer)
+			return
+		}
+		if err := writeTagged(c, answer); err != nil {
+			writeProblem(c, err)
+		}
 	}
+}
+
+// writeTagged writes an answer with a tag of its bytes; whoever names that tag has it already and is sent
+// nothing. It may be kept by whoever asked, who asks again each time.
+func writeTagged(c *gin.Context, answer any) error {
+	body, err := json.Marshal(answer)
+	if err != nil {
+		return err
+	}
+	sum := sha256.Sum256(body)
+	tag := `"` + hex.EncodeToString(sum[:16]) + `"`
+	c.Header("Cache-Control", "private, no-cache")
+	c.Header("ETag", tag)
+	if hasTag(c.GetHeader("If-None-Match"), tag) {
+		c.Status(http.StatusNotModified)
+		return nil
+	}
+	c.Data(http.StatusOK, "application/json; charset=utf-8", body)
+	return nil
+}
+
+// hasTag tells whether a list of tags, some of them marked as weak, names one.
+func hasTag(list, tag string) bool {
+	for t := range strings.SplitSeq(list, ",") {
+		if t = strings.TrimPrefix(strings.TrimSpace(t), "W/"); t == tag || t == "*" {
+			return true
+		}
+	}
+	return false
 }
 
 func (s *server) actor(c *gin.Context, r route) (book.Actor, error) {
@@ -106,12 +144,26 @@ func (s *server) sites(c *gin.Context, a book.Actor) (any, error) {
 }
 
 func (s *server) standings(c *gin.Context, a book.Actor) (any, error) {
-	st, err := s.ask(c, a)
+	q, err := question(c)
+	if err != nil {
+		return nil, err
+	}
+	st, err := s.b.Standings(context.WithoutCancel(c.Request.Context()), a, q)
 	return rowsJSON(st.Rows, false), err
 }
 
 func (s *server) gaps(c *gin.Context, a book.Actor) (any, error) {
-	st, err := s.ask(c, a)
+	q, err := question(c)
+	if err != nil {
+		return nil, err
+	}
+	ctx := context.WithoutCancel(c.Request.Context())
+	if q.KnownAt == nil && q.Item == "" && q.Subject == "" && !q.Why {
+		// What falls short is found without evaluating and naming all the rest.
+		st, err := s.b.Short(ctx, a, q.Site, q.On)
+		return rowsJSON(st.Gaps(), true), err
+	}
+	st, err := s.b.Standings(ctx, a, q)
 	return rowsJSON(st.Gaps(), true), err
 }
 
@@ -123,24 +175,24 @@ func rowsJSON(rows []book.Row, owner bool) []book.RowJSON {
 	return out
 }
 
-// ask reads the question from the query: on, known_at, item, subject, why.
-func (s *server) ask(c *gin.Context, a book.Actor) (book.Standings, error) {
+// question reads what is asked from the query: on, known_at, item, subject, why.
+func question(c *gin.Context) (book.StandingQuery, error) {
 	q := book.StandingQuery{Site: c.Param("site"), Item: c.Query("item"), Subject: c.Query("subject"), Why: c.Query("why") != ""}
 	if text := c.Query("on"); text != "" {
 		d, err := civil.ParseDay(text)
 		if err != nil {
-			return book.Standings{}, &book.Invalid{Faults: []book.Fault{{Field: "on", Value: text, Problem: "is not a day", Accepted: "write it as YYYY-MM-DD"}}}
+			return q, &book.Invalid{Faults: []book.Fault{{Field: "on", Value: text, Problem: "is not a day", Accepted: "write it as YYYY-MM-DD"}}}
 		}
 		q.On = &d
 	}
 	if text := c.Query("known_at"); text != "" {
 		t, err := time.Parse(time.RFC3339, text)
 		if err != nil {
-			return book.Standings{}, &book.Invalid{Faults: []book.Fault{{Field: "known_at", Value: text, Problem: "is not an instant", Accepted: "write it as 2026-03-01T08:30:00Z"}}}
+			return q, &book.Invalid{Faults: []book.Fault{{Field: "known_at", Value: text, Problem: "is not an instant", Accepted: "write it as 2026-03-01T08:30:00Z"}}}
 		}
 		q.KnownAt = &t
 	}
-	return s.b.Standings(context.WithoutCancel(c.Request.Context()), a, q)
+	return q, nil
 }
 
 // problem is an RFC 9457 problem; faults are those of an Invalid.

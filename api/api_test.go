@@ -100,6 +100,51 @@ func TestStandingsAreThoseOfTheCommand(t *testing.T) {
 	}
 }
 
+// TestGapsAreThoseOfTheStandings holds the short way to the gaps against the long one, on several days.
+func TestGapsAreThoseOfTheStandings(t *testing.T) {
+	h := served(t)
+	for _, role := range []book.Role{book.SafetyOfficer, book.Member} {
+		found := 0
+		for _, on := range []string{"2025-01-15", "2025-02-01", "2026-03-02", "2027-01-01"} {
+			short, long := ask(t, h, "/api/sites/QUAY/gaps?on="+on, role), ask(t, h, "/api/sites/QUAY/gaps?on="+on+"&known_at=2030-01-01T00:00:00Z", role)
+			if short.Code != http.StatusOK || short.Body.String() != long.Body.String() {
+				t.Errorf("on %s as %s: %s, want %s", on, role, short.Body, long.Body)
+			}
+			found += strings.Count(short.Body.String(), `"standing"`)
+		}
+		if found == 0 {
+			t.Errorf("%s was shown no gap", role)
+		}
+	}
+}
+
+// TestWhoHasTheAnswerIsSentNothing: an answer has a tag of its bytes, which is another when it is.
+func TestWhoHasTheAnswerIsSentNothing(t *testing.T) {
+	h := served(t)
+	const path = "/api/sites/QUAY/gaps"
+	first, other := ask(t, h, path, book.SafetyOfficer), ask(t, h, path, book.Member)
+	tag := first.Header().Get("ETag")
+	if tag == "" || first.Header().Get("Cache-Control") != "private, no-cache" || other.Header().Get("ETag") == tag {
+		t.Fatalf("headers %v, and of another answer %v", first.Header(), other.Header())
+	}
+	for _, c := range []struct {
+		has    string
+		status int
+	}{{tag, 304}, {"W/" + tag, 304}, {`"x", ` + tag, 304}, {"*", 304}, {`"x"`, 200}, {other.Header().Get("ETag"), 200}, {"", 200}} {
+		r := httptest.NewRequest(http.MethodGet, path, nil)
+		r.Header.Set("X-Role", string(book.SafetyOfficer))
+		r.Header.Set("If-None-Match", c.has)
+		w := httptest.NewRecorder()
+		h.ServeHTTP(w, r)
+		if w.Code != c.status || (w.Body.Len() == 0) != (c.status == 304) || w.Header().Get("ETag") != tag {
+			t.Errorf("with %s: %d and %d bytes, want %d", c.has, w.Code, w.Body.Len(), c.status)
+		}
+	}
+	if w := ask(t, h, "/api/sites/ELSEWHERE/gaps", book.SafetyOfficer); w.Header().Get("ETag") != "" || w.Header().Get("Cache-Control") != "no-store" {
+		t.Errorf("a problem may be kept: %v", w.Header())
+	}
+}
+
 func TestProblems(t *testing.T) {
 	h := served(t)
 	for path, want := range map[string]struct {

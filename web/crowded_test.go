@@ -24,6 +24,7 @@ func crowded(t testing.TB, people int) *house {
 	h.bring("people", "code,name,level,crew,joined,employer", crowdOf(people))
 	h.bring("fixtures", "code,kind,name,zone,since", thingsOf(people/25+3))
 	h.bring("records", "record,subject,on,result", h.deedsOf(people))
+	h.ok(h.b.Turn(h.Context())) // as the server does when it begins
 	_, err = h.b.RaiseFlags(h.Context(), book.JobActor(), fell, civil.DayOf(h.now, h.now.Location()))
 	h.ok(err)
 	return h

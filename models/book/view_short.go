@@ -182,20 +182,23 @@ func (m *model) names(code string, on *civil.Day, now time.Time) (*siteOn, error
 // briefly is nameAndNote with a look at the facts that the note says, where the rest of what selectors
 // read of a subject is dear to derive.
 func (v *siteOn) briefly(s standing.Subject) (name, note string) {
-	fact := func(s standing.Subject, code string) string {
-		text, _ := v.m.engine.Fact(v.Code, s, code, v.on, v.k).(string)
-		return text
+	texts := func(code string, of ...standing.Subject) []string {
+		out := make([]string, len(of))
+		for i, x := range v.m.engine.Facts(v.Code, code, of, v.on, v.k) {
+			out[i], _ = x.(string)
+		}
+		return out
 	}
 	switch s.Asks {
 	case program.AsksPerson:
-		crew := fact(s, "crew")
-		crew = cmp.Or(named(v.Program.Crew(crew)), crew)
-		return v.subjectName(s), strings.Join(slices.DeleteFunc([]string{fact(s, "employer"), crew}, func(x string) bool { return x == "" }), ", ")
+		crew := texts("crew", s)[0]
+		note := []string{texts("employer", s)[0], cmp.Or(named(v.Program.Crew(crew)), crew)}
+		return v.subjectName(s), strings.Join(slices.DeleteFunc(note, func(x string) bool { return x == "" }), ", ")
 	case program.AsksCrew:
 		if v.crews == nil {
 			v.crews = map[string]int{}
-			for _, x := range v.m.engine.Subjects(v.Code, program.AsksPerson, v.on, v.k) {
-				v.crews[fact(x, "crew")]++
+			for _, crew := range texts("crew", v.m.engine.Subjects(v.Code, program.AsksPerson, v.on, v.k)...) {
+				v.crews[crew]++
 			}
 		}
 	}

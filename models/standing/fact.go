@@ -2,12 +2,16 @@ package standing
 
 import "lodebook/models/civil"
 
-// Fact is the value of one fact of a subject that holds at the site on the day, as known at k; nil where
-// there is none. It costs a look, where Profile derives everything that selectors may read.
-func (e *Engine) Fact(site string, s Subject, code string, on civil.Day, k int64) any {
+// Facts are the values of one fact of subjects that hold at the site on the day, as known at k; nil where
+// there is none. Each costs a look, where Profile derives everything that selectors may read.
+func (e *Engine) Facts(site, code string, of []Subject, on civil.Day, k int64) []any {
+	out := make([]any, len(of))
 	v, err := e.view(site, k)
 	if err != nil {
-		return nil
+		return out
 	}
-	return v.fact(v.local(s), code, on)
+	for i, s := range of {
+		out[i] = v.fact(v.local(s), code, on)
+	}
+	return out
 }
