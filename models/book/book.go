@@ -14,10 +14,14 @@ import (
 	"lodebook/models/store"
 )
 
-// Options are what a book needs from outside: the clock and a source of random bytes.
+// Options are what a book needs from outside: the clock and a source of random bytes. The rest may be left out.
 type Options struct {
-	Clock  func() time.Time
-	Random io.Reader
+	Clock     func() time.Time
+	Random    io.Reader
+	Snapshots string                    // the folder that snapshots are kept in; default: a file's own folder, and none of an address
+	Tell      func(sentence string)     // is told why a snapshot is not used
+	Progress  func(rows, entries int64) // how many rows have been read of a book of so many entries, while it is read without a snapshot
+	Site      string                    // narrows what is read to what answers about this site need; such a book is for reading
 }
 
 // Book is an open book. It may be used by many goroutines at once.
@@ -25,6 +29,7 @@ type Book struct {
 	st     *store.Store
 	clock  func() time.Time
 	random io.Reader
+	site   string // the only one of which is read; empty: all
 
 	m       atomic.Pointer[model]  // what is known; never changed again
 	seen    atomic.Pointer[string] // a stamp of the store since which m has been all there is
@@ -33,7 +38,9 @@ type Book struct {
 	queue   queue                  // writes that wait to be done
 	leading chan struct{}          // holds a token while writes are being done
 
-	door door // who is signed in
+	door      door // who is signed in
+	snapshots snapshots
+	progress  func(rows, entries int64)
 }
 
 // Create makes a new, empty book. It refuses a path that exists.
@@ -63,12 +70,29 @@ func Open(ctx context.Context, path string, o Options) (*Book, error) {
 }
 
 func start(ctx context.Context, st *store.Store, o Options) (*Book, error) {
-	b := &Book{st: st, clock: o.Clock, random: o.Random, growing: make(chan struct{}, 1), leading: make(chan struct{}, 1)}
-	b.m.Store(b.emptyModel())
-	if _, err := b.current(ctx); err != nil {
-		return nil, errors.Join(err, st.Close())
+	b := &Book{st: st, clock: o.Clock, random: o.Random, site: o.Site, growing: make(chan struct{}, 1), leading: make(chan struct{}, 1)}
+	b.progress = o.Progress
+	if err := b.firstModel(ctx, o); err != nil {
+		return nil, errors.Join(err, b.Close())
 	}
 	return b, nil
+}
+
+// firstModel makes the first model: from the snapshot if there is one that fits, else from the rows.
+func (b *Book) firstModel(ctx context.Context, o Options) error {
+	if err := b.placeSnapshots(ctx, o); err != nil {
+		return err
+	}
+	m, err := b.fromSnapshot(ctx)
+	if err != nil {
+		return err
+	}
+	if m == nil {
+		m = b.emptyModel()
+	}
+	b.m.Store(m)
+	_, err = b.current(ctx)
+	return err
 }
 
 // Close closes the book's file.
@@ -80,7 +104,7 @@ func (b *Book) Now() time.Time { return b.clock().UTC().Truncate(time.Microsecon
 // emptyModel knows nothing yet.
 func (b *Book) emptyModel() *model {
 	m := newModel()
-	m.st = b.st
+	m.st, m.only, m.progress = b.st, b.site, b.progress
 	return m
 }
 
@@ -148,6 +172,9 @@ func (m *model) takeAfter(tx *store.Tx, size int64) error {
 	if err := knownKinds(tx, m.head-1); err != nil {
 		return err
 	}
+	if m.head == 0 {
+		return m.takeAll(tx, size)
+	}
 	delta, err := tx.Changed(m.head - 1)
 	if err != nil {
 		return err
@@ -157,6 +184,22 @@ func (m *model) takeAfter(tx *store.Tx, size int64) error {
 	}
 	m.head = size
 	return nil
+}
+
+// takeAll takes in all that the transaction sees, a part of it at a time.
+func (m *model) takeAll(tx *store.Tx, size int64) error {
+	done := int64(0)
+	err := tx.Stream(m.only, func(d *store.Delta) error {
+		done += int64(d.Len())
+		if m.progress != nil {
+			m.progress(done, size)
+		}
+		return m.take(*d)
+	})
+	if err == nil {
+		m.head = size
+	}
+	return err
 }
 
 // publish makes a model the one that readers are given.

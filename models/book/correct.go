@@ -2,6 +2,7 @@ package book
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"strings"
 
@@ -90,7 +91,8 @@ func (s *session) batchUndone(batch string) (string, bool, error) {
 }
 
 // ErasePerson makes a person's names and the free text about them unreadable for good. The entries
-// and their hashes stay. The file is scrubbed so that no byte of what was erased remains in it.
+// and their hashes stay. The file is scrubbed and its snapshot removed, so that no byte of what was erased
+// remains in them.
 func (b *Book) ErasePerson(ctx context.Context, actor Actor, person string) (Receipt, error) {
 	if err := actor.may(Erase, ""); err != nil {
 		return Receipt{}, err
@@ -109,7 +111,7 @@ func (b *Book) ErasePerson(ctx context.Context, actor Actor, person string) (Rec
 	if err != nil {
 		return Receipt{}, err
 	}
-	if err := b.st.Scrub(ctx); err != nil {
+	if err := errors.Join(b.removeSnapshots(), b.st.Scrub(ctx)); err != nil {
 		return receipt, fmt.Errorf("the person is erased, but the file could not be scrubbed; erase again once nobody else has it open: %w", err)
 	}
 	return receipt, b.reload(ctx)

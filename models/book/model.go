@@ -21,8 +21,10 @@ import (
 // only read; what comes after goes into a fork.
 type model struct {
 	own      *owner
-	st       *store.Store // where the records are, of which it only keeps what standings need
-	head     int64        // number of entries taken in
+	st       *store.Store              // where the records are, of which it only keeps what standings need
+	progress func(rows, entries int64) // is told how far reading everything is; may be nil
+	only     string                    // the site of which alone it is; empty: all
+	head     int64                     // number of entries taken in
 	engine   *standing.Engine
 	sites    map[string]*siteModel
 	people   shelf[string, []store.PersonRow]

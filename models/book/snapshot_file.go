@@ -114,28 +114,33 @@ func (b *Book) fromSnapshot(ctx context.Context) (*model, error) {
 	}
 	m := b.emptyModel()
 	erased := false
+	size := int64(0) // of the snapshot
 	err = b.st.Read(ctx, func(tx *store.Tx) error {
 		if err := readSnapshotFile(f, tx, m); err != nil {
 			return err
 		}
-		b.snapshots.size = m.head
-		kinds, err := tx.KindVersions(m.head - 1)
+		size = m.head
+		kinds, err := tx.KindVersions(size - 1)
 		if err != nil {
 			return err
 		}
 		_, erased = kinds[kindErasure]
-		size, err := tx.Size()
-		if err != nil {
+		now, err := tx.Size()
+		if err != nil || now == size {
 			return err
 		}
-		return m.takeAfter(tx, size)
+		return m.takeAfter(tx, now)
 	})
 	_ = f.Close() // it was only read
 	if why := (*unfit)(nil); errors.As(err, &why) {
 		b.snapshots.tell(fmt.Sprintf("The book is read from its rows: %v.", why))
 		return nil, nil
 	}
-	if err == nil && erased {
+	if err != nil {
+		return nil, err
+	}
+	b.snapshots.size = size
+	if erased {
 		err = b.removeSnapshots() // it has the names of somebody who was erased since
 	}
 	return m, err

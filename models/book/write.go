@@ -283,6 +283,9 @@ func (b *Book) Rebuild(ctx context.Context) error {
 		}
 		return replay(s.tx)
 	})
+	if err == nil {
+		err = b.removeSnapshots()
+	}
 	if err != nil {
 		return err
 	}
