@@ -71,6 +71,9 @@ func (q *queue) next() []*request {
 // submit has a request done. Of all that wait, one leads: it does the writes of the others with its own,
 // in one transaction, and so all of them wait for the disk once.
 func (b *Book) submit(r *request) (Receipt, error) {
+	if b.site != "" {
+		return Receipt{}, errReadOnly
+	}
 	r.done = make(chan struct{})
 	b.queue.add(r)
 	cancelled := r.ctx.Done()
@@ -98,6 +101,9 @@ func (r *request) answer() (Receipt, error) {
 	}
 	return r.receipt, r.err
 }
+
+// errReadOnly tells of a mistake of the program: a book of which one site was read is not written to.
+var errReadOnly = errors.New("the book was opened to read one site")
 
 // errNothingWritten ends a transaction in which every write was refused.
 var errNothingWritten = errors.New("nothing was written")

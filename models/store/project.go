@@ -47,6 +47,8 @@ type projection interface {
 	hold(t *Tx, rows any) (bool, error)
 	changed(t *Tx, since int64, to *Delta) error
 	add(to *Delta, rows any) bool
+	count(d *Delta) int
+	stream(t *Tx, site string, fn func(*Delta) error) error
 }
 
 // projections are all tables that are made from the entries.
@@ -481,3 +483,14 @@ func (t *Tx) RecordsAt(seqs []int64) ([]RecordRow, error) {
 	}
 	return out, nil
 }
+
+// Len is how many rows there are in the delta.
+func (d *Delta) Len() int {
+	n := 0
+	for _, p := range projections {
+		n += p.count(d)
+	}
+	return n
+}
+
+func (p table[T, R]) count(d *Delta) int { return len(*p.of(d)) }
