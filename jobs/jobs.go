@@ -24,7 +24,7 @@ type Job struct {
 }
 
 // All are the jobs.
-var All = []Job{morning}
+var All = []Job{morning, snapshot}
 
 // Named finds a job.
 func Named(name string) (Job, error) {
@@ -136,7 +136,11 @@ func (r *Runner) turn(ctx context.Context, j Job, site book.SiteView) error {
 // Start turns once, then every minute, until the context ends; it returns when the last turn is over.
 func (r *Runner) Start(ctx context.Context) {
 	turn := func() {
-		if err := r.Turn(ctx); err != nil && ctx.Err() == nil {
+		err := r.b.Turn(ctx) // before the jobs ask, what stands today is made ready
+		if err == nil {
+			err = r.Turn(ctx)
+		}
+		if err != nil && ctx.Err() == nil {
 			r.log.Error("a job failed", "error", err)
 		}
 	}

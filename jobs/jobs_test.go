@@ -6,6 +6,7 @@ import (
 	"errors"
 	"log/slog"
 	"path/filepath"
+	"slices"
 	"strings"
 	"testing"
 	"time"
@@ -79,11 +80,14 @@ func (x *bench) flags() []book.FlagView {
 	return list
 }
 
-func (x *bench) runs() []book.RunView {
+// runs are those of the morning job.
+func (x *bench) runs() []book.RunView { return x.runsOf("morning") }
+
+func (x *bench) runsOf(job string) []book.RunView {
 	x.Helper()
 	list, err := x.b.Runs(x.Context(), book.SystemOperator("ops"), 100)
 	x.ok(err)
-	return list
+	return slices.DeleteFunc(list, func(r book.RunView) bool { return r.Job != job })
 }
 
 func TestMissedRunsAreCaughtUpOnce(t *testing.T) {

@@ -15,7 +15,7 @@ type gapsCommand struct {
 
 // Run lists the gaps.
 func (c *gapsCommand) Run(a *app) error {
-	return a.open(c.bookFlag, func(b *book.Book) error {
+	return a.openSite(c.bookFlag, c.Site, func(b *book.Book) error {
 		st, err := a.standings(b, c.asFlag, book.StandingQuery{Site: c.Site}, c.On, "")
 		if err != nil {
 			return err

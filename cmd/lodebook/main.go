@@ -158,14 +158,45 @@ type formatFlag struct {
 	Format string `enum:"table,json,csv" default:"table" help:"table, json or csv."`
 }
 
-func (a *app) options() book.Options { return book.Options{Clock: a.clock, Random: rand.Reader} }
+func (a *app) options() book.Options {
+	return book.Options{
+		Clock: a.clock, Random: rand.Reader,
+		Tell: func(sentence string) { a.say("%s", sentence) }, Progress: a.reading(),
+	}
+}
+
+// reading tells of every million rows how many have been read.
+func (a *app) reading() func(rows, entries int64) {
+	const step = 1_000_000
+	said := int64(0)
+	return func(rows, entries int64) {
+		if rows/step > said {
+			said = rows / step
+			a.say("Reading the book without a snapshot: %d million rows of %d entries so far.", said, entries)
+		}
+	}
+}
 
 // open opens the book and gives it to fn.
 func (a *app) open(f bookFlag, fn func(b *book.Book) error) error {
 	if err := pathOnly(f.Book); err != nil {
 		return err
 	}
-	b, err := book.Open(a.ctx, f.Book, a.options())
+	return a.openWith(f, a.options(), fn)
+}
+
+// openSite opens of a book what answers about one site need, to read it.
+func (a *app) openSite(f bookFlag, site string, fn func(b *book.Book) error) error {
+	if err := pathOnly(f.Book); err != nil {
+		return err
+	}
+	o := a.options()
+	o.Site = site
+	return a.openWith(f, o, fn)
+}
+
+func (a *app) openWith(f bookFlag, o book.Options, fn func(b *book.Book) error) error {
+	b, err := book.Open(a.ctx, f.Book, o)
 	if err != nil {
 		return err
 	}

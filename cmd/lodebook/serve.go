@@ -104,6 +104,10 @@ func (f *serveFlags) run(a *app, b *book.Book, l net.Listener, handler http.Hand
 	}
 	stop()
 	wg.Wait()
+	if _, unkept := b.KeepSnapshot(context.WithoutCancel(a.ctx), 1); unkept != nil {
+		// The book is whole without it; the next start only takes longer.
+		log.Error("no snapshot was written", "error", unkept)
+	}
 	if errors.Is(err, http.ErrServerClosed) {
 		return nil
 	}

@@ -22,7 +22,7 @@ type standingCommand struct {
 
 // Run lists standings.
 func (c *standingCommand) Run(a *app) error {
-	return a.open(c.bookFlag, func(b *book.Book) error {
+	return a.openSite(c.bookFlag, c.Site, func(b *book.Book) error {
 		q := book.StandingQuery{Site: c.Site, Item: c.Item, Subject: c.Subject, Why: c.Why}
 		st, err := a.standings(b, c.asFlag, q, c.On, c.KnownAt)
 		if err != nil {

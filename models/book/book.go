@@ -239,11 +239,14 @@ func (b *Book) Turn(ctx context.Context) error {
 	if _, err := b.current(ctx); err != nil {
 		return err
 	}
+	now := b.Now()
+	if b.m.Load().turned(now) {
+		return nil
+	}
 	b.growing <- struct{}{}
 	defer func() { <-b.growing }()
 	next := b.m.Load().fork()
 	next.engine.Build()
-	now := b.Now()
 	for code := range next.sites {
 		next.engine.Turn(code, civil.DayOf(now, next.zone(code)))
 	}
@@ -263,6 +266,16 @@ func knownKinds(tx *store.Tx, after int64) error {
 		}
 	}
 	return nil
+}
+
+// turned tells whether the present day of every site is that of the moment.
+func (m *model) turned(now time.Time) bool {
+	for code := range m.sites {
+		if day, ok := m.engine.Present(code); !ok || day != civil.DayOf(now, m.zone(code)) {
+			return false
+		}
+	}
+	return true
 }
 
 // read runs a query against one consistent state of the model.

@@ -189,13 +189,14 @@ func asUnfit(err error) error {
 }
 
 // KeepSnapshot writes a snapshot beside the book, if there is none or if as many entries as behind have come
-// since it. It gives the number of entries in what it wrote; 0 if it wrote none.
+// since it. It gives the number of entries in what it wrote; 0 if it wrote none. Of a book of which only a site is
+// read there is nothing to write.
 func (b *Book) KeepSnapshot(ctx context.Context, behind int64) (int64, error) {
 	s := &b.snapshots
 	s.keep.Lock()
 	defer s.keep.Unlock()
 	size, err := b.st.Size(ctx)
-	if err != nil || s.path == "" || size == 0 || s.size > 0 && size-s.size < behind {
+	if err != nil || s.path == "" || b.site != "" || size == 0 || s.size > 0 && size-s.size < behind {
 		return 0, err
 	}
 	// Whoever starts from it finds all that standings are counted from.

@@ -299,3 +299,13 @@ func (b *board) turnAll(own *owner, to civil.Day) {
 		}
 	}
 }
+
+// Present is the present day of a site (see Turn); false where it has none yet.
+func (e *Engine) Present(site string) (civil.Day, bool) {
+	if s := e.site(site); s != nil {
+		if b := s.made.Load(); b != nil && b.present != noDay {
+			return b.present, true
+		}
+	}
+	return 0, false
+}
