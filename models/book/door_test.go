@@ -36,10 +36,18 @@ func (d *desk) lastSeen() []string {
 	d.Helper()
 	db, err := sql.Open("sqlite3", d.path)
 	d.ok(err)
-	defer db.Close()
+	defer func() {
+		if err := db.Close(); err != nil {
+			t.Error(err)
+		}
+	}()
 	rows, err := db.Query("SELECT last_seen FROM sessions ORDER BY last_seen")
 	d.ok(err)
-	defer rows.Close()
+	defer func() {
+		if err := rows.Close(); err != nil {
+			t.Error(err)
+		}
+	}()
 	var out []string
 	for rows.Next() {
 		var at string
@@ -177,7 +185,11 @@ func TestManyAtTheDoor(t *testing.T) {
 		return now
 	}})
 	d.ok(err)
-	defer b.Close()
+	defer func() {
+		if err := b.Close(); err != nil {
+			t.Error(err)
+		}
+	}()
 	secrets := make([]string, 6)
 	for i := range secrets {
 		secrets[i] = d.signIn("olga")
