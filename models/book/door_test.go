@@ -38,14 +38,14 @@ func (d *desk) lastSeen() []string {
 	d.ok(err)
 	defer func() {
 		if err := db.Close(); err != nil {
-			t.Error(err)
+			d.Error(err)
 		}
 	}()
 	rows, err := db.Query("SELECT last_seen FROM sessions ORDER BY last_seen")
 	d.ok(err)
 	defer func() {
 		if err := rows.Close(); err != nil {
-			t.Error(err)
+			d.Error(err)
 		}
 	}()
 	var out []string

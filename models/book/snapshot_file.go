@@ -230,6 +230,9 @@ func (b *Book) writeSnapshotFile(ctx context.Context) (int64, error) {
 	err = errors.Join(err, f.Close())
 	if err == nil {
 		err = os.Rename(beside, b.snapshots.path)
+		if errors.Is(err, fs.ErrNotExist) {
+			return 0, nil // an erasure, or another program that writes one, has removed it
+		}
 	}
 	if err != nil {
 		if gone := os.Remove(beside); !errors.Is(gone, fs.ErrNotExist) {
