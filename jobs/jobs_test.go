@@ -185,7 +185,7 @@ func TestFailedRunIsRecorded(t *testing.T) {
 	if _, err := bad.RunNow(t.Context(), x.b, "QUAY", x.now); err == nil {
 		t.Fatal("no error")
 	}
-	if r := x.runs()[0]; r.Outcome != "failed" || r.Message != "the roof fell in" || r.Ended == nil {
+	if r := x.runsOf("bad")[0]; r.Outcome != "failed" || r.Message != "the roof fell in" || r.Ended == nil {
 		t.Errorf("%+v", r)
 	}
 	bad.Run = func(context.Context, *book.Book, string, time.Time) (string, error) { return "mended", nil }
