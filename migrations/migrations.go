@@ -7,12 +7,18 @@ import (
 	"io/fs"
 )
 
-//go:embed sqlite/*.sql
+//go:embed sqlite/*.sql postgres/*.sql
 var files embed.FS
 
 // SQLite is the folder of numbered files for SQLite, as goose reads them: 00001_name.sql and on.
-func SQLite() fs.FS {
-	sub, err := fs.Sub(files, "sqlite")
+func SQLite() fs.FS { return folder("sqlite") }
+
+// Postgres is the folder of numbered files for PostgreSQL. Its files have the numbers of SQLite's and
+// make the same tables.
+func Postgres() fs.FS { return folder("postgres") }
+
+func folder(name string) fs.FS {
+	sub, err := fs.Sub(files, name)
 	if err != nil {
 		panic(err) // the embedded folder is there or the program does not compile
 	}
