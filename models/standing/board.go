@@ -71,11 +71,12 @@ type row struct {
 func (r row) length() int { return int(r.size >> wordBits) }
 func (r row) now() uint8  { return uint8(r.size & wordMask) }
 
-// asking says of whom the row is asked and, where it is asked in one segment only, when.
+// asking says of whom the row is asked and, by its last segment, since when.
 type asking struct {
 	local              int32
 	first, last, start civil.Day
-	reign              int16     // -1 where there are several segments, or a faulty one
+	reign              int16     // -1 where the last segment is faulty
+	before             bool      // there are segments before the last
 	due                civil.Day // of an item with every: what all its deeds made; noDay where they have to be asked
 }
 
@@ -129,9 +130,9 @@ func (e *Engine) newBoard(s *site) *board {
 // askingOf says what is known of a row by its segments.
 func (v *view) askingOf(local int32, segments []segment) asking {
 	a := asking{local: local, reign: -1, due: v.due}
-	if len(segments) == 1 && !segments[0].faulty {
-		s := segments[0]
-		a.first, a.last, a.start, a.reign = s.first, s.last, s.start, s.reign
+	if n := len(segments); n > 0 && !segments[n-1].faulty {
+		s := segments[n-1]
+		a.first, a.last, a.start, a.reign, a.before = s.first, s.last, s.start, s.reign, n > 1
 	}
 	return a
 }

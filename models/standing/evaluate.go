@@ -83,7 +83,7 @@ func (v *view) look(item *program.Item, track int32, p presence, ed *edition, q 
 		return nil, finding{}, false
 	}
 	a := &t.asked[no]
-	if a.reign < 0 || q.Why {
+	if a.reign < 0 || q.On < a.first || q.On > a.last || q.Why {
 		return v.verdict(item, p, ed, q.On)
 	}
 	return v.asks(item, p, ed, q.On, &a.start)

@@ -1,6 +1,7 @@
 package standing
 
 import (
+	"cmp"
 	"slices"
 
 	"lodebook/models/civil"
@@ -104,7 +105,7 @@ func (e *Engine) writing(s *site, b *board) *view {
 func (e *Engine) refresh(b *board, v *view, i int32, l *local, c *change) {
 	no := b.row(i, l.no)
 	written := false
-	if no >= 0 && c.done && b.plan.plain[i] && b.tracks[i].asked[no].reign >= 0 {
+	if no >= 0 && c.done && b.plan.plain[i] && v.within(&b.tracks[i].asked[no], c) {
 		written = e.goOn(b, v, i, no, l, c)
 	} else {
 		no, written = e.anew(b, v, i, no, l)
@@ -112,6 +113,12 @@ func (e *Engine) refresh(b *board, v *view, i int32, l *local, c *change) {
 	if written {
 		b.follow(i, no)
 	}
+}
+
+// within tells whether the record bears on no day before the last segment of the row. The zone of another
+// version may give it another day, by one at most.
+func (v *view) within(a *asking, c *change) bool {
+	return a.reign >= 0 && (!a.before || c.record.in(v.reigns[a.reign].loc)-1 >= a.first)
 }
 
 // anew makes the whole course, and a row for it where there is none yet.
@@ -151,8 +158,19 @@ func (e *Engine) goOn(b *board, v *view, i, no int32, l *local, c *change) bool 
 	ob := &v.obligation
 	*ob = obligation{view: v, edition: ed, item: item, subject: presence{local: l}, start: a.start, started: true}
 	s := segment{first: a.first, last: a.last, start: a.start, reign: a.reign}
-	m.course = v.walk(ob, v.deciding(ob, l, &a, c), &s, from, 0, m.course)
-	if a.last < civil.LastDay {
+	deeds := v.deciding(ob, l, &a, c)
+	same := v.unchangedFrom(item, deeds, from)
+	s.last = min(s.last, same-1)
+	m.course = v.walk(ob, deeds, &s, from, 0, m.course)
+	if same <= a.last {
+		m.course = turnTo(m.course, 0, same, wordOn(old, same))
+		for _, p := range old {
+			if p.day() > same {
+				m.course = append(m.course, p)
+			}
+		}
+		v.due = a.due
+	} else if a.last < civil.LastDay {
 		m.course = turnTo(m.course, 0, a.last+1, uint8(none))
 	}
 	if v.due != a.due {
@@ -163,6 +181,21 @@ func (e *Engine) goOn(b *board, v *view, i, no int32, l *local, c *change) bool 
 	}
 	b.ownedTrack(e.own, i).rewrite(no, m.course)
 	return true
+}
+
+// unchangedFrom is the day of the first accepted record after the day, of an item that goes by the last one
+// alone: from it on nothing hangs on what was before. Else it is after all days.
+func (v *view) unchangedFrom(item *program.Item, deeds []deed, after civil.Day) civil.Day {
+	if item.Cadence.Rule != program.Each && item.Cadence.Rule != program.Once {
+		return noDay
+	}
+	i, _ := slices.BinarySearchFunc(deeds, after+1, func(d deed, day civil.Day) int { return cmp.Compare(d.on, day) })
+	for ; i < len(deeds); i++ {
+		if deeds[i].passed {
+			return deeds[i].on
+		}
+	}
+	return noDay
 }
 
 // deciding lists the deeds that decide the item's standings from the changed record on. For most rules
