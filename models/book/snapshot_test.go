@@ -9,6 +9,7 @@ import (
 	"slices"
 	"strings"
 	"testing"
+	"time"
 
 	"lodebook/models/book"
 	"lodebook/models/civil"
@@ -51,10 +52,12 @@ func (d *desk) tells() string {
 		b.Write(append(text, '\n'))
 	}
 	for _, on := range []civil.Day{civil.Of(2025, 7, 1), civil.Of(2026, 2, 20), civil.Of(2026, 3, 2), civil.Of(2027, 1, 1)} {
-		st, err := d.Standings(ctx, d.op, book.StandingQuery{Site: site, On: &on})
-		d.ok(err)
-		for _, r := range st.Rows {
-			show(r)
+		for _, known := range []*time.Time{nil, new(time.Date(2026, 3, 3, 0, 0, 0, 0, time.UTC))} {
+			st, err := d.Standings(ctx, d.op, book.StandingQuery{Site: site, On: &on, KnownAt: known})
+			d.ok(err)
+			for _, r := range st.Rows {
+				show(r)
+			}
 		}
 	}
 	_, people, err := d.People(ctx, d.officer, site, nil)
@@ -68,6 +71,12 @@ func (d *desk) tells() string {
 	list, err := d.Checklist(ctx, d.officer, site, nil)
 	d.ok(err)
 	show(list)
+	drills, err := d.Drills(ctx, d.officer, site, nil)
+	d.ok(err)
+	show(drills)
+	accounts, err := d.Accounts(ctx, d.op)
+	d.ok(err)
+	show(accounts)
 	page, err := d.Entries(ctx, d.officer, book.EntryQuery{Site: site, Limit: 1000})
 	d.ok(err)
 	for _, e := range page {
