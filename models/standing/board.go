@@ -36,8 +36,8 @@ type board struct {
 	memo    *memo
 }
 
-// counter counts rows by the number of their word.
-type counter [none + 1]int32
+// counter counts rows by their state.
+type counter [wordMask + 1]int32
 
 // memo is what only the writers of a line of forks share, one after the other.
 type memo struct {
@@ -62,10 +62,10 @@ type track struct {
 	waste  int     // points of courses that were written anew
 }
 
-// row is where a course lies in the points, and its word on the present day.
+// row is where a course lies in the points, and its state on the present day.
 type row struct {
 	at   uint32
-	size uint32 // number of points, with the word in the low bits
+	size uint32 // number of points, with the state in the low bits
 }
 
 func (r row) length() int { return int(r.size >> wordBits) }
@@ -112,14 +112,22 @@ func (e *Engine) newBoard(s *site) *board {
 	}
 	var segments []segment
 	var course []point
-	for no, l := range s.locals { // by subject first, since what is on record about one lies together
-		for _, i := range b.plan.ofKind[l.subject.Asks] {
-			code := b.plan.items[i]
-			segments = v.segments(code, l, segments[:0])
-			if course = v.course(code, l, segments, course[:0]); len(course) > 0 {
-				b.addRow(e.own, i, v.askingOf(int32(no), segments), course)
+	// What confers levels comes first, since the rest may hang on the levels held; then by subject, since what
+	// is on record about one lies together.
+	for _, confers := range [2]bool{true, false} {
+		for no, l := range s.locals {
+			for _, i := range b.plan.ofKind[l.subject.Asks] {
+				code := b.plan.items[i]
+				if b.plan.confers[i] != confers {
+					continue
+				}
+				segments = v.segments(code, l, segments[:0])
+				if course = v.course(code, l, segments, course[:0]); len(course) > 0 {
+					b.addRow(e.own, i, v.askingOf(int32(no), segments), course)
+				}
 			}
 		}
+		v.board = b
 	}
 	for _, t := range b.tracks {
 		t.rows, t.asked, t.points = slices.Clip(t.rows), slices.Clip(t.asked), slices.Clip(t.points)

@@ -96,7 +96,10 @@ func (b *board) counts(site string, on civil.Day) SiteCount {
 }
 
 func (c *SiteCount) add(item string, n *counter) {
-	if of := Tally(n[:len(Words)]); of != (Tally{}) {
+	of := Tally(n[:len(Words)])
+	of[codeOf(Closing)] += n[closingOpen]
+	of[codeOf(Excused)] += n[excusedOpen]
+	if of != (Tally{}) {
 		c.Items = append(c.Items, ItemCount{item, of})
 	}
 }
@@ -119,13 +122,13 @@ func (e *Engine) Recount() []SiteCount {
 	return slices.DeleteFunc(all, func(c SiteCount) bool { return c.Items == nil })
 }
 
-// now counts the words of the present day. Two counters take turns, so that none waits for itself.
+// now counts the states of the present day. Two counters take turns, so that none waits for itself.
 func (t *track) now() counter {
 	var even, odd counter
 	rows := t.rows
 	for len(rows) > 1 {
-		even[rows[0].now()]++
-		odd[rows[1].now()]++
+		even[rows[0].now()&wordMask]++
+		odd[rows[1].now()&wordMask]++
 		rows = rows[2:]
 	}
 	for _, r := range rows {
@@ -137,7 +140,7 @@ func (t *track) now() counter {
 	return even
 }
 
-// asOf counts the words of a day.
+// asOf counts the states of a day.
 func (t *track) asOf(on civil.Day) counter {
 	var n counter
 	key := pointOf(on, wordMask)
@@ -146,23 +149,23 @@ func (t *track) asOf(on civil.Day) counter {
 		r := &t.rows[i]
 		course := points[r.at : int(r.at)+r.length()]
 		if len(course) > 8 {
-			n[wordIn(course, key)]++
+			n[stateIn(course, key)&wordMask]++
 			continue
 		}
-		word := uint8(none)
+		state := uint8(none)
 		for j := len(course) - 1; j >= 0; j-- {
 			if course[j] <= key {
-				word = course[j].word()
+				state = course[j].state()
 				break
 			}
 		}
-		n[word]++
+		n[state&wordMask]++
 	}
 	return n
 }
 
-// wordIn is the number of the word of the last point that is not above the key.
-func wordIn(course []point, key point) uint8 {
+// stateIn is the state of the last point that is not above the key.
+func stateIn(course []point, key point) uint8 {
 	lo, hi := 0, len(course)
 	for lo < hi {
 		if mid := int(uint(lo+hi) >> 1); course[mid] <= key {
@@ -174,7 +177,7 @@ func wordIn(course []point, key point) uint8 {
 	if lo == 0 {
 		return uint8(none)
 	}
-	return course[lo-1].word()
+	return course[lo-1].state()
 }
 
 // ItemCourse is how the counts of an item went over a period: First counts its first day; Days are

@@ -7,22 +7,48 @@ import (
 	"lodebook/models/program"
 )
 
-// A course is an obligation's standings over all days: points in order of day, each with the word
+// A course is an obligation's standings over all days: points in order of day, each with the state
 // that begins on its day. Before the first point, and from a point of none on, there is no obligation.
 type point int32
 
-// Words by number: the places in Words, and one for no obligation.
+// States by number: those of the words that open nothing, or that always open (met), at the places of
+// Words; no obligation; and closing and excused where they open reach.
 const (
-	none      = len(Words)
+	none = len(Words) + iota
+	closingOpen
+	excusedOpen
+)
+
+const (
 	wordBits  = 4
 	wordMask  = 1<<wordBits - 1
 	dayBefore = civil.FirstDay - 1
 )
 
-func pointOf(d civil.Day, word uint8) point { return point(d)<<wordBits | point(word) }
+func pointOf(d civil.Day, state uint8) point { return point(d)<<wordBits | point(state) }
 
 func (p point) day() civil.Day { return civil.Day(p >> wordBits) }
-func (p point) word() uint8    { return uint8(p & wordMask) }
+func (p point) state() uint8   { return uint8(p & wordMask) }
+func (p point) word() uint8    { return wordOf[p.state()] }
+
+// wordOf is the number of a state's word.
+var wordOf = [wordMask + 1]uint8{0, 1, 2, 3, 4, 5, 6, 7, uint8(none), 1, 5}
+
+// stateOf numbers what a finding says.
+func stateOf(f *finding) uint8 {
+	switch {
+	case f.open && f.word == Closing:
+		return uint8(closingOpen)
+	case f.open && f.word == Excused:
+		return uint8(excusedOpen)
+	}
+	return codeOf(f.word)
+}
+
+// opens tells whether an obligation in the state is open in the sense of reach.
+func opens(state uint8) bool {
+	return state == codeOf(Met) || state == uint8(closingOpen) || state == uint8(excusedOpen)
+}
 
 // codeOf numbers a word by its place in Words.
 func codeOf(w Word) uint8 {
@@ -45,18 +71,21 @@ func codeOf(w Word) uint8 {
 	return 7
 }
 
-// wordOn is the number of the word on the day.
-func wordOn(course []point, on civil.Day) uint8 {
+// stateOn is the state on the day.
+func stateOn(course []point, on civil.Day) uint8 {
 	key := pointOf(on, wordMask)
 	for i := len(course) - 1; i >= 0; i-- {
 		if course[i] <= key {
-			return course[i].word()
+			return course[i].state()
 		}
 	}
 	return uint8(none)
 }
 
-// nextTurn is the day after the given one on which the word changes, noDay where none does.
+// wordOn is the number of the word on the day.
+func wordOn(course []point, on civil.Day) uint8 { return wordOf[stateOn(course, on)] }
+
+// nextTurn is the day after the given one on which the state changes, noDay where none does.
 func nextTurn(course []point, after civil.Day) civil.Day {
 	key := pointOf(after, wordMask)
 	next := noDay
@@ -175,12 +204,12 @@ func (v *view) course(code string, l *local, segments []segment, to []point) []p
 	return to
 }
 
-// turnTo appends a point unless the word goes on. The course begins at the place at.
-func turnTo(to []point, at int, d civil.Day, word uint8) []point {
-	if n := len(to); n > at && to[n-1].word() == word || n == at && word == uint8(none) {
+// turnTo appends a point unless the state goes on. The course begins at the place at.
+func turnTo(to []point, at int, d civil.Day, state uint8) []point {
+	if n := len(to); n > at && to[n-1].state() == state || n == at && state == uint8(none) {
 		return to
 	}
-	return append(to, pointOf(d, word))
+	return append(to, pointOf(d, state))
 }
 
 // stretch appends the points of a segment from a day of it on.
@@ -216,7 +245,7 @@ func (v *view) walk(ob *obligation, deeds []deed, s *segment, from civil.Day, at
 		f, asked := ob.judge()
 		next := civil.LastDay
 		if asked {
-			to = turnTo(to, at, d, codeOf(f.word))
+			to = turnTo(to, at, d, stateOf(&f))
 			next = f.stays
 		} else {
 			to = turnTo(to, at, d, uint8(none))
@@ -244,7 +273,11 @@ func (v *view) walk(ob *obligation, deeds []deed, s *segment, from civil.Day, at
 // runsOut appends what follows a finding that goes by a due day when nothing more happens.
 func (ob *obligation) runsOut(f finding, s *segment, at int, to []point) []point {
 	if ob.on < f.closes && f.closes <= s.last {
-		to = turnTo(to, at, f.closes, codeOf(Closing))
+		state := codeOf(Closing)
+		if f.open && ob.item.Cadence.Rule != program.Within {
+			state = uint8(closingOpen)
+		}
+		to = turnTo(to, at, f.closes, state)
 	}
 	if ob.on < f.ends && f.ends <= s.last {
 		to = turnTo(to, at, f.ends, codeOf(ob.gap()))

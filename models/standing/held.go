@@ -39,6 +39,9 @@ func (v *view) heldLevel(person *local, on civil.Day) string {
 	if known, ok := v.ladders[person.no]; ok && known.upTo >= on {
 		return known.on(on)
 	}
+	if v.board != nil && person.no >= 0 {
+		return v.heldByCourses(person, on)
+	}
 	level, _ := v.beneath.deriveHeld(person, on)
 	return level
 }
@@ -111,6 +114,9 @@ func (v *view) heldTurns(t *turns, person *local) {
 func (v *view) ladder(person *local, upTo civil.Day) []holding {
 	if known, ok := v.ladders[person.no]; ok && known.upTo >= upTo {
 		return known.holdings
+	}
+	if v.board != nil && person.no >= 0 {
+		return v.ladderByCourses(person)
 	}
 	var out []holding
 	outer := v.beneath.conferTurns(person, upTo)

@@ -54,7 +54,11 @@ func spansOf(course []point) []Span {
 		if i+1 < len(course) {
 			s.Last = course[i+1].day() - 1
 		}
-		out = append(out, s)
+		if n := len(out); n > 0 && out[n-1].Word == s.Word && out[n-1].Last+1 == s.First {
+			out[n-1].Last = s.Last // only whether it opens has changed
+		} else {
+			out = append(out, s)
+		}
 	}
 	return out
 }

@@ -34,7 +34,14 @@ func (e *Engine) changed(s *site, l *local, c change) {
 	from := len(b.memo.tracks) // changes may come inside changes
 	b.memo.tracks = b.plan.touched(&c, l, b.memo.tracks)
 	for _, i := range b.memo.tracks[from:] {
-		e.refresh(b, v, i, l, &c)
+		if b.plan.confers[i] {
+			e.refresh(b, v, i, l, &c)
+		}
+	}
+	for _, i := range b.memo.tracks[from:] { // which may hang on the level held
+		if !b.plan.confers[i] {
+			e.refresh(b, v, i, l, &c)
+		}
 	}
 	b.memo.tracks = b.memo.tracks[:from]
 	if l.subject.Asks == program.AsksPerson && (c.stint || c.post != "") {
@@ -163,7 +170,7 @@ func (e *Engine) goOn(b *board, v *view, i, no int32, l *local, c *change) bool 
 	s.last = min(s.last, same-1)
 	m.course = v.walk(ob, deeds, &s, from, 0, m.course)
 	if same <= a.last {
-		m.course = turnTo(m.course, 0, same, wordOn(old, same))
+		m.course = turnTo(m.course, 0, same, stateOn(old, same))
 		for _, p := range old {
 			if p.day() > same {
 				m.course = append(m.course, p)
@@ -269,7 +276,7 @@ func (v *view) lastDeeds(item *program.Item, l *local, ed *edition, wants int, b
 	return out
 }
 
-// follow counts a row whose course was written under its word of the present day, and puts its next
+// follow counts a row whose course was written under its state of the present day, and puts its next
 // turn in the calendar.
 func (b *board) follow(i, no int32) {
 	if b.present == noDay {
@@ -278,7 +285,7 @@ func (b *board) follow(i, no int32) {
 	t := b.tracks[i]
 	course := t.course(no)
 	r := &t.rows[no]
-	if now := wordOn(course, b.present); now != r.now() {
+	if now := stateOn(course, b.present); now != r.now() {
 		b.tallies[i][r.now()]--
 		b.tallies[i][now]++
 		r.size = r.size&^wordMask | uint32(now)

@@ -18,7 +18,7 @@ import (
 // read. It is for the same program on the same kind of machine, beside a database that has it all.
 
 // snapshotForm changes whenever the layout of a column does.
-const snapshotForm = 2
+const snapshotForm = 3
 
 var snapshotMagic = []byte("LODEBOOK")
 
