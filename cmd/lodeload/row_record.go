@@ -56,14 +56,33 @@ func (b *bench) putting(w *world) func() (float64, error) {
 func (w *world) mix(r *rand.Rand, size int) []standing.Record {
 	out := make([]standing.Record, size)
 	for i := range out {
-		like := w.sample[r.IntN(len(w.sample))]
+		like := w.unlike(r)
 		if r.IntN(10) > 0 {
 			like.record.Day = w.today()
 		}
-		like.record.Time, like.record.Failed = time.Time{}, r.IntN(50) == 0
+		if !like.record.Time.IsZero() { // of the day, what is written down comes last
+			like.record.Time = like.record.Day.Midnight(time.UTC).Add(20*time.Hour + time.Duration(i)*time.Millisecond)
+		}
+		like.record.Failed = r.IntN(50) == 0
 		out[i] = w.record(like.site, &like.record)
 	}
 	return out
+}
+
+// unlike draws one of the records, of a subject that has had no new one of its kind yet: nobody does the same
+// thing again and again on one day. When most have, any will do.
+func (w *world) unlike(r *rand.Rand) sampled {
+	if w.renewed == nil {
+		w.renewed = map[string]bool{}
+	}
+	for try := 0; ; try++ {
+		like := w.sample[r.IntN(len(w.sample))]
+		key := like.site + " " + string(like.record.Subject.Asks) + " " + like.record.Subject.Code + " " + like.record.What
+		if !w.renewed[key] || try > 20 {
+			w.renewed[key] = true
+			return like
+		}
+	}
 }
 
 // checkPut asserts that the counts that are kept current are those that an evaluation gives.

@@ -21,6 +21,7 @@ type world struct {
 	items       []string
 	obligations []obligation
 	points      []point
+	renewed     map[string]bool // what new records were drawn for
 }
 
 type obligation struct {
