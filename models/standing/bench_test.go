@@ -50,7 +50,7 @@ func largeSite(people int) *standing.Engine {
 		for _, it := range p.Items {
 			for y := 0; it.Asks == program.AsksPerson && y < 5; y++ {
 				r := standing.Record{Line: line(), Site: "S", Subject: sub, What: it.Records[0], Passed: true}
-				r.Order, r.Day = r.Seq, first+civil.Day(y*360+i%90)
+				r.Day = first+civil.Day(y*360+i%90)
 				e.PutRecord(r)
 			}
 		}
@@ -62,7 +62,6 @@ func largeSite(people int) *standing.Engine {
 		for d := range 1800 {
 			at := (first + civil.Day(d)).Midnight(time.UTC).Add(8 * time.Hour)
 			r := standing.Record{Line: line(), Site: "S", Subject: sub, What: p.Items[2].Records[0], Day: first + civil.Day(d), Time: &at, Passed: true}
-			r.Order = r.Seq
 			e.PutRecord(r)
 		}
 	}

@@ -74,7 +74,6 @@ func (b *book) fact(sub standing.Subject, code, from string, value any) int64 {
 func (b *book) record(when string, more ...string) standing.Record {
 	b.t.Helper()
 	r := standing.Record{Line: b.line(), Site: "S", Subject: ann, What: "training/a", Passed: true}
-	r.Order = r.Seq
 	r.Day, r.Time = moment(b.t, when)
 	for _, m := range more {
 		word, rest, _ := strings.Cut(m, " ")
@@ -97,7 +96,6 @@ func (b *book) record(when string, more ...string) standing.Record {
 
 func (b *book) about(sub standing.Subject, what, when string, passed bool) {
 	r := standing.Record{Line: b.line(), Site: "S", Subject: sub, What: what, Passed: passed}
-	r.Order = r.Seq
 	r.Day, r.Time = moment(b.t, when)
 	b.PutRecord(r)
 }

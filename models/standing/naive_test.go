@@ -209,9 +209,9 @@ func (n *naive) answering(sub standing.Subject, kinds []string, local bool, v *s
 	}
 	key := func(r dayed) string {
 		if r.Time == nil {
-			return fmt.Sprintf("%010d|0|%020d", r.day, r.Order)
+			return fmt.Sprintf("%010d|0|%020d", r.day, r.Seq)
 		}
-		return fmt.Sprintf("%010d|1|%020d|%020d", r.day, r.Time.UnixNano(), r.Order)
+		return fmt.Sprintf("%010d|1|%020d|%020d", r.day, r.Time.UnixNano(), r.Seq)
 	}
 	sort.Slice(out, func(i, j int) bool { return key(out[i]) < key(out[j]) })
 	return out

@@ -281,7 +281,7 @@ func (w *world) record() {
 	if r.Subject.Asks == program.AsksPerson && w.chance(25) {
 		r.What = "appointment/" + oneOf(w, testPosts...)
 	}
-	r.Order, r.Time = r.Seq*10, w.instant(r.Day)
+	r.Time = w.instant(r.Day)
 	if w.chance(25) {
 		r.Until = ptr(r.Day + civil.Day(w.pick(1+w.spread/3)))
 	}

@@ -130,7 +130,7 @@ func (n *network) put(code string, sub standing.Subject, what string, d civil.Da
 	if !n.records {
 		return
 	}
-	n.e.PutRecord(standing.Record{Line: l, Order: l.Seq, Site: code, Subject: sub, What: what, Day: d, Passed: passed})
+	n.e.PutRecord(standing.Record{Line: l, Site: code, Subject: sub, What: what, Day: d, Passed: passed})
 }
 
 func heap() uint64 {

@@ -77,11 +77,10 @@ type Fact struct {
 	Value   any // string, float64, bool or nil
 }
 
-// Record is something done. Time is nil where only the day is known; a record with a time falls on
+// Record is something done. Of those of one moment the one of the later entry is the later. Time is nil where only the day is known; a record with a time falls on
 // the day that the judging site's zone gives it. Site is where it was recorded (for local items).
 type Record struct {
 	Line
-	Order   int64 // order of recording; ascending with Seq, and by row within an import
 	Site    string
 	Subject Subject
 	What    string // kind/code
