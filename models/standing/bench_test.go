@@ -50,7 +50,7 @@ func largeSite(people int) *standing.Engine {
 		for _, it := range p.Items {
 			for y := 0; it.Asks == program.AsksPerson && y < 5; y++ {
 				r := standing.Record{Line: line(), Site: "S", Subject: sub, What: it.Records[0], Passed: true}
-				r.Day = first+civil.Day(y*360+i%90)
+				r.Day = first + civil.Day(y*360+i%90)
 				e.PutRecord(r)
 			}
 		}
