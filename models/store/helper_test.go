@@ -55,9 +55,12 @@ var (
 )
 
 // quick are the usual settings, with little patience.
-func quick() settings { return settings{busy: 100 * time.Millisecond, schema: migrations.SQLite()} }
+func quick() settings {
+	return settings{busy: 100 * time.Millisecond, schema: migrations.SQLite(), onServer: migrations.Postgres()}
+}
 
-func somewhere(t *testing.T) string { return filepath.Join(t.TempDir(), "site.book") }
+// somefile is a path where there is no file yet, for what is tested of files only.
+func somefile(t testing.TB) string { return filepath.Join(t.TempDir(), "site.book") }
 
 func newBook(t *testing.T) *Store {
 	t.Helper()

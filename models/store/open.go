@@ -25,18 +25,29 @@ const waits = 15 * time.Second
 
 // settings are what tests vary.
 type settings struct {
-	busy    time.Duration
-	schema  fs.FS
-	options map[string]string // added to the options of every connection
+	busy     time.Duration
+	schema   fs.FS             // of a file
+	onServer fs.FS             // of a database
+	options  map[string]string // added to the options of every connection to a file
+	address  string            // of the database, with its password; empty: the book is a file
 }
 
-func usual() settings { return settings{busy: waits, schema: migrations.SQLite()} }
+func usual() settings {
+	return settings{busy: waits, schema: migrations.SQLite(), onServer: migrations.Postgres()}
+}
 
-// Create makes a new book at path, for its user's eyes only. It refuses a path where there is
-// something already.
-func Create(ctx context.Context, path string) (*Store, error) { return create(ctx, path, usual()) }
+// Create makes a new book at an address: a path, where it is for its user's eyes only, or in the
+// PostgreSQL database of an address that begins with postgres:// or postgresql://. It refuses a path where
+// there is something already, and a database that has a table.
+func Create(ctx context.Context, address string) (*Store, error) {
+	return create(ctx, address, usual())
+}
 
 func create(ctx context.Context, path string, set settings) (*Store, error) {
+	if OnServer(path) {
+		set.address = path
+		return createServer(ctx, set)
+	}
 	err := reserve(path)
 	if err != nil {
 		return nil, err
@@ -77,7 +88,7 @@ func reserve(path string) error {
 }
 
 func begin(ctx context.Context, path string, set settings) (*Store, error) {
-	return connectBoth(ctx, path, set, func(w *gorm.DB) error {
+	return connectFile(ctx, path, set, func(w *gorm.DB) error {
 		err := w.WithContext(ctx).Exec(fmt.Sprintf("PRAGMA application_id = %d", applicationID)).Error
 		if err != nil {
 			return err
@@ -98,20 +109,12 @@ func removeBook(path string) error {
 	return errors.Join(errs...)
 }
 
-// Open opens the book at path and brings an older known schema up to date. Whatever stands in the
-// way is told as a *Refusal.
-func Open(ctx context.Context, path string) (*Store, error) { return open(ctx, path, usual()) }
+// Open opens the book at an address, as Create takes it, and brings an older known schema up to date.
+// Whatever stands in the way is told as a *Refusal.
+func Open(ctx context.Context, address string) (*Store, error) { return open(ctx, address, usual()) }
 
 func open(ctx context.Context, path string, set settings) (*Store, error) {
-	err := lookAt(path)
-	if err != nil {
-		return nil, err
-	}
-	err = recognise(ctx, path, set)
-	if err != nil {
-		return nil, err
-	}
-	s, err := connectBoth(ctx, path, set, func(w *gorm.DB) error { return migrate(ctx, path, w, set.schema) })
+	s, err := connectBook(ctx, path, set)
 	if err != nil {
 		return nil, err
 	}
@@ -120,6 +123,23 @@ func open(ctx context.Context, path string, set settings) (*Store, error) {
 		return nil, errors.Join(s.doubt(ctx, err), s.Close())
 	}
 	return s, nil
+}
+
+// connectBook recognises a book and connects to it.
+func connectBook(ctx context.Context, path string, set settings) (*Store, error) {
+	if OnServer(path) {
+		set.address = path
+		return openServer(ctx, set)
+	}
+	err := lookAt(path)
+	if err != nil {
+		return nil, err
+	}
+	err = recognise(ctx, path, set)
+	if err != nil {
+		return nil, err
+	}
+	return connectFile(ctx, path, set, func(w *gorm.DB) error { return migrate(ctx, path, w, set.schema) })
 }
 
 // lookAt refuses what needs no database to refuse.
@@ -220,6 +240,11 @@ func isBook(ctx context.Context, path string, g *gorm.DB, schema fs.FS) error {
 	if id != applicationID {
 		return refuse(nil, "%s is a database of another program, not a book.", path)
 	}
+	return knownSchema(ctx, path, g, schema)
+}
+
+// knownSchema refuses a book that a newer version of this program has written.
+func knownSchema(ctx context.Context, path string, g *gorm.DB, schema fs.FS) error {
 	have, err := schemaVersion(ctx, g)
 	if err != nil {
 		return explain(path, err)
@@ -241,9 +266,16 @@ func (s settings) pool(p pool) pool {
 	return p
 }
 
+// connectFile opens both pools over a file; prepare has the writing one in between.
+func connectFile(ctx context.Context, path string, set settings, prepare func(*gorm.DB) error) (*Store, error) {
+	return connectBoth(path, set,
+		func() (*gorm.DB, error) { return set.pool(writing(set.busy)).connect(ctx, path) },
+		func() (*gorm.DB, error) { return set.pool(reading(set.busy)).connect(ctx, path) }, prepare)
+}
+
 // connectBoth opens the writing pool, lets prepare have it, and then opens the reading one.
-func connectBoth(ctx context.Context, path string, set settings, prepare func(*gorm.DB) error) (*Store, error) {
-	w, err := set.pool(writing(set.busy)).connect(ctx, path)
+func connectBoth(path string, set settings, writing, reading func() (*gorm.DB, error), prepare func(*gorm.DB) error) (*Store, error) {
+	w, err := writing()
 	if err != nil {
 		return nil, err
 	}
@@ -251,7 +283,7 @@ func connectBoth(ctx context.Context, path string, set settings, prepare func(*g
 	if err != nil {
 		return nil, errors.Join(explain(path, err), disconnect(w))
 	}
-	r, err := set.pool(reading(set.busy)).connect(ctx, path)
+	r, err := reading()
 	if err != nil {
 		return nil, errors.Join(err, disconnect(w))
 	}
@@ -273,7 +305,11 @@ func provider(g *gorm.DB, schema fs.FS) (*goose.Provider, error) {
 	if err != nil {
 		return nil, err
 	}
-	return goose.NewProvider(goose.DialectSQLite3, db, schema, goose.WithDisableGlobalRegistry(true))
+	dialect := goose.DialectSQLite3
+	if g.Name() == "postgres" {
+		dialect = goose.DialectPostgres
+	}
+	return goose.NewProvider(dialect, db, schema, goose.WithDisableGlobalRegistry(true))
 }
 
 func newestVersion(g *gorm.DB, schema fs.FS) (int64, error) {
@@ -326,6 +362,9 @@ func (s *Store) doubt(ctx context.Context, err error) error {
 	err = explain(s.path, err)
 	if !errors.Is(err, ErrCorrupt) {
 		return err
+	}
+	if s.set.address != "" {
+		return refuse(err, "%s is damaged; restore it from a backup.", s.path)
 	}
 	var found string
 	worse := s.r.WithContext(ctx).Raw("PRAGMA quick_check(1)").Scan(&found).Error

@@ -265,11 +265,11 @@ func (p table[T, R]) changed(t *Tx, since int64, to *Delta) error {
 
 // conditions ask for new, ended and (of a table that has them) blanked rows, each by its index:
 // SQLite would answer them in one condition, or in order, by reading the whole table. The indexes
-// on ended and touched hold only what is above 0; the plus keeps SQLite from choosing another.
+// on ended and touched hold only what is above 0; the plus 0 keeps the database from choosing another.
 func (p table[T, R]) conditions() []string {
-	c := []string{"seq > @since", "ended > 0 AND ended > @since AND +seq <= @since"}
+	c := []string{"seq > @since", "ended > 0 AND ended > @since AND seq + 0 <= @since"}
 	if p.blanks {
-		c = append(c, "touched > 0 AND touched > @since AND +seq <= @since AND +ended <= @since")
+		c = append(c, "touched > 0 AND touched > @since AND seq + 0 <= @since AND ended + 0 <= @since")
 	}
 	return c
 }

@@ -38,7 +38,7 @@ func refuse(err error, format string, args ...any) *Refusal {
 	return &Refusal{Reason: fmt.Sprintf(format, args...), Err: err}
 }
 
-// explain turns what SQLite says of the file into a refusal; any other error passes as it is.
+// explain turns what the database says of the book into a refusal; any other error passes as it is.
 func explain(path string, err error) error {
 	var done *Refusal
 	if err == nil || errors.As(err, &done) {
@@ -46,7 +46,7 @@ func explain(path string, err error) error {
 	}
 	var e sqlite3.Error
 	if !errors.As(err, &e) {
-		return err
+		return explainServer(path, err)
 	}
 	switch e.Code {
 	case sqlite3.ErrBusy, sqlite3.ErrLocked:
@@ -71,7 +71,7 @@ func explain(path string, err error) error {
 func clash(err error) error {
 	var e sqlite3.Error
 	if !errors.As(err, &e) || e.ExtendedCode != sqlite3.ErrConstraintUnique {
-		return err
+		return serverClash(err)
 	}
 	switch e.Error() {
 	case "UNIQUE constraint failed: entries.id":

@@ -1,4 +1,4 @@
-// Package store keeps a book in a SQLite file: its entries with their tree and erasable values,
+// Package store keeps a book in a SQLite file or a PostgreSQL database: its entries with their tree and erasable values,
 // the projections made from them, and what the program needs to run. It is the only room that
 // knows SQL; the row types of rows.go are its contract.
 package store
@@ -70,6 +70,9 @@ func (s *Store) Write(ctx context.Context, fn func(*Tx) error) error {
 			db.Rollback() // its error could only be that the transaction has ended already
 		}
 	}()
+	if err := lock(db); err != nil {
+		return explain(s.path, err)
+	}
 	t := &Tx{db: db}
 	if tx, ok := db.Statement.ConnPool.(*sql.Tx); ok {
 		db.Statement.ConnPool = &watched{tx, t}

@@ -97,7 +97,7 @@ func TestVerifyFindsTampering(t *testing.T) {
 // Verify can.
 func reopenedAnyway(t *testing.T, path string) *Store {
 	t.Helper()
-	s, err := connectBoth(background, path, quick(), func(*gorm.DB) error { return nil })
+	s, err := connectFile(background, path, quick(), func(*gorm.DB) error { return nil })
 	must(t, err)
 	t.Cleanup(func() { must(t, s.Close()) })
 	return s
