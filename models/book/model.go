@@ -173,8 +173,8 @@ func (m *model) planned(session string) ([]int64, bool) {
 }
 
 func (m *model) takeFact(r store.FactRow) error {
-	var value any
-	if err := json.Unmarshal([]byte(r.Value), &value); err != nil {
+	value, err := factValueOf(r.Value)
+	if err != nil {
 		return fmt.Errorf("the fact %s of %s %s is not readable: %w", r.Fact, r.Kind, r.Code, err)
 	}
 	k := store.SubjectKey{Site: r.Site, Kind: r.Kind, Code: r.Code}
@@ -183,19 +183,43 @@ func (m *model) takeFact(r store.FactRow) error {
 	return nil
 }
 
+// factValueOf reads the value of a fact, which is JSON. Most are plain texts, which need no looking into.
+func factValueOf(text string) (any, error) {
+	if n := len(text) - 1; n > 0 && text[0] == '"' && strings.IndexFunc(text[1:n], notPlain) < 0 && text[n] == '"' {
+		return text[1:n], nil
+	}
+	var value any
+	err := json.Unmarshal([]byte(text), &value)
+	return value, err
+}
+
+// notPlain tells whether a character may stand for another in JSON, or may not stand in it.
+func notPlain(r rune) bool { return r < ' ' || r >= 0x7f || r == '"' || r == '\\' }
+
 func (m *model) takeVersion(v store.VersionRow) error {
+	p, err := programOf(v)
+	if err == nil {
+		m.putVersion(v, p)
+	}
+	return err
+}
+
+func programOf(v store.VersionRow) (*program.Program, error) {
+	p, err := program.Parse(v.Source)
+	if err != nil {
+		return nil, fmt.Errorf("version %d of the program of site %s is not readable by this program: %w", v.Number, v.Site, err)
+	}
+	return p, nil
+}
+
+func (m *model) putVersion(v store.VersionRow, p *program.Program) {
 	s := &siteModel{code: v.Site}
 	if old := m.sites[v.Site]; old != nil {
 		s.versions = old.versions
 	}
 	m.sites[v.Site] = s
-	p, err := program.Parse(v.Source)
-	if err != nil {
-		return fmt.Errorf("version %d of the program of site %s is not readable by this program: %w", v.Number, v.Site, err)
-	}
 	s.versions = upsert(s.versions, versionModel{v, p}, func(v versionModel) int64 { return v.row.Seq }, always)
 	m.engine.PutVersion(v.Site, standing.Version{Line: known(v.Line), Number: v.Number, InForceFrom: v.InForceFrom, Program: p})
-	return nil
 }
 
 func known(l store.Line) standing.Line { return standing.Line{Seq: l.Seq, Ended: l.Ended, ID: l.ID} }

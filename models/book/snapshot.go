@@ -7,12 +7,16 @@ import (
 	"fmt"
 	"hash/crc32"
 	"io"
+	"runtime"
 	"slices"
+	"sync"
+	"sync/atomic"
 	"unsafe"
 
 	"github.com/google/uuid"
 
 	"lodebook/models/ledger"
+	"lodebook/models/program"
 	"lodebook/models/store"
 )
 
@@ -150,33 +154,54 @@ func readSnapshotHead(r io.Reader, size int64) (snapshotHead, error) {
 
 // readSnapshot takes what follows the head into an empty model. After an error the model is of no use.
 func readSnapshot(r io.Reader, h snapshotHead, m *model) error {
-	rows, err := section(r, h.Sections[0])
-	if err != nil {
-		return err
+	var sections [len(h.Sections)][]byte
+	for i := range sections {
+		var err error
+		if sections[i], err = section(r, h.Sections[i]); err != nil {
+			return err
+		}
 	}
 	// The texts of the rows are parts of the section: nothing writes into it any more.
+	rows := sections[0]
 	d, err := store.ReadDelta(unsafe.String(unsafe.SliceData(rows), len(rows)))
+	if err == nil {
+		err = m.takeParsed(d)
+	}
+	if err == nil {
+		err = m.readSessions(sections[1])
+	}
+	if err == nil {
+		err = m.engine.ReadSnapshot(sections[2])
+	}
 	if err != nil {
-		return unfitf("does not fit: %v", err)
-	}
-	if err := m.take(d); err != nil {
-		return unfitf("does not fit: %v", err)
-	}
-	sessions, err := section(r, h.Sections[1])
-	if err != nil {
-		return err
-	}
-	if err := m.readSessions(sessions); err != nil {
-		return err
-	}
-	engine, err := section(r, h.Sections[2])
-	if err != nil {
-		return err
-	}
-	if err := m.engine.ReadSnapshot(engine); err != nil {
 		return unfitf("does not fit: %v", err)
 	}
 	m.head = h.Size
+	return nil
+}
+
+// takeParsed is take of many rows at once: the programs among them are read on all cores meanwhile.
+func (m *model) takeParsed(d store.Delta) error {
+	versions := d.Versions
+	d.Versions = nil
+	programs, errs := make([]*program.Program, len(versions)), make([]error, len(versions)+1)
+	var next atomic.Int64
+	var workers sync.WaitGroup
+	for range min(runtime.GOMAXPROCS(0), len(versions)) {
+		workers.Go(func() {
+			for i := int(next.Add(1)) - 1; i < len(versions); i = int(next.Add(1)) - 1 {
+				programs[i], errs[i] = programOf(versions[i])
+			}
+		})
+	}
+	errs[len(versions)] = m.take(d)
+	workers.Wait()
+	if err := errors.Join(errs...); err != nil {
+		return err
+	}
+	for i, v := range versions {
+		m.putVersion(v, programs[i])
+	}
 	return nil
 }
 

@@ -38,10 +38,13 @@ func (b *Book) placeSnapshots(ctx context.Context, o Options) error {
 		b.snapshots.tell = func(string) {}
 	}
 	if o.Snapshots == "" {
-		if !strings.Contains(b.st.Path(), "://") {
-			b.snapshots.path = b.st.Path() + snapshotEnd
+		if strings.Contains(b.st.Path(), "://") {
+			return nil
 		}
-		return nil
+		// Whoever erases somebody by another name of the same file looks in the same place.
+		path, err := filepath.EvalSymlinks(b.st.Path())
+		b.snapshots.path = path + snapshotEnd
+		return err
 	}
 	return b.st.Read(ctx, func(tx *store.Tx) error {
 		id, err := bookID(tx)
@@ -120,15 +123,15 @@ func (b *Book) fromSnapshot(ctx context.Context) (*model, error) {
 			return err
 		}
 		size = m.head
+		now, err := tx.Size()
+		if err != nil || now == size {
+			return err
+		}
 		kinds, err := tx.KindVersions(size - 1)
 		if err != nil {
 			return err
 		}
 		_, erased = kinds[kindErasure]
-		now, err := tx.Size()
-		if err != nil || now == size {
-			return err
-		}
 		return m.takeAfter(tx, now)
 	})
 	_ = f.Close() // it was only read
@@ -272,25 +275,36 @@ func (b *Book) removeSnapshots() error {
 	return b.removeSnapshotFiles(false)
 }
 
-// removeSnapshotFiles removes the files that begin like the snapshot's, or only those beside it.
+// removeSnapshotFiles removes the files that begin like the snapshot's, or only those beside it. The snapshot is
+// the last: until those beside it are gone, another program may put one of them in its place.
 func (b *Book) removeSnapshotFiles(beside bool) error {
 	folder, name := filepath.Split(b.snapshots.path)
 	if folder == "" {
 		folder = "."
 	}
 	files, err := os.ReadDir(folder)
+	if errors.Is(err, fs.ErrNotExist) {
+		return nil // no folder, no snapshot
+	}
 	if err != nil {
 		return err
 	}
-	gone := false
+	var paths []string
 	for _, f := range files {
-		if !strings.HasPrefix(f.Name(), name+".") && (beside || f.Name() != name) {
-			continue
+		if strings.HasPrefix(f.Name(), name+".") {
+			paths = append(paths, filepath.Join(folder, f.Name()))
 		}
-		gone = true
-		if err := os.Remove(filepath.Join(folder, f.Name())); err != nil && !errors.Is(err, fs.ErrNotExist) {
+	}
+	if !beside {
+		paths = append(paths, b.snapshots.path)
+	}
+	gone := false
+	for _, path := range paths {
+		err := os.Remove(path)
+		if err != nil && !errors.Is(err, fs.ErrNotExist) {
 			return err
 		}
+		gone = gone || err == nil
 	}
 	if !gone {
 		return nil
