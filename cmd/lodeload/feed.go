@@ -26,7 +26,7 @@ type sampled struct {
 }
 
 // sampleEvery is how many records there are to one that is kept as a sample.
-const sampleEvery = 50
+const sampleEvery = 10
 
 // line is the line of the next entry.
 func (f *feeder) line() standing.Line {
@@ -122,7 +122,7 @@ func (f *feeder) fixture(site string, x *network.Fixture) error {
 // record is a record as the evaluator takes it, on the next line.
 func (f *feeder) record(site string, r *network.Record) standing.Record {
 	line := f.line()
-	out := standing.Record{Line: line, Order: line.Seq, Site: site, Subject: subjectOf(r.Subject), What: r.What, Day: r.Day, Passed: !r.Failed, Until: dayOrNil(r.Until)}
+	out := standing.Record{Line: line, Site: site, Subject: subjectOf(r.Subject), What: r.What, Day: r.Day, Passed: !r.Failed, Until: dayOrNil(r.Until)}
 	if r.Limit != "" {
 		out.Limit = []string{r.Limit}
 	}
@@ -133,13 +133,14 @@ func (f *feeder) record(site string, r *network.Record) standing.Record {
 	return out
 }
 
-// happenings puts events, excusals and pauses. What was imported opens nothing until it is confirmed.
+// happenings puts events, excusals and pauses. A safety officer brought them in, so that excusals open what
+// they say.
 func (f *feeder) happenings(s *network.Site) {
 	for _, e := range s.Events {
 		f.engine.PutEvent(s.Code, standing.Event{Line: f.line(), Subject: subjectOf(e.Subject), Code: e.Code, Day: e.Day})
 	}
 	for _, x := range s.Excusals {
-		f.engine.PutExcusal(s.Code, standing.Excusal{Line: f.line(), Subject: subjectOf(x.Subject), Item: x.Item, From: x.From, To: &x.To})
+		f.engine.PutExcusal(s.Code, standing.Excusal{Line: f.line(), Subject: subjectOf(x.Subject), Item: x.Item, From: x.From, To: &x.To, Opens: x.Opens})
 	}
 	for _, p := range s.Pauses {
 		f.engine.PutExcusal(s.Code, standing.Excusal{Line: f.line(), Subject: subjectOf(p.Subject), From: p.From, To: dayOrNil(p.To)})

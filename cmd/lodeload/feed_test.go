@@ -27,10 +27,15 @@ func networkOf(t *testing.T, s network.Size) *network.Network {
 	return n
 }
 
-// bookOf is a book of the network, made by the public import path or by the bulk path.
-func bookOf(t *testing.T, n *network.Network, put func(*app, *book.Book, *network.Site) error) *book.Book {
+// loader is one of the two ways into a book.
+type loader func(*app, *book.Book, *network.Network, book.Actor, func(*network.Site) error) error
+
+// bookOf is a book of the network, and the officer who brought it in. As the operator, each entry says
+// who that was.
+func bookOf(t *testing.T, n *network.Network, load loader, operator bool) (*book.Book, string) {
 	t.Helper()
-	b, err := book.Create(t.Context(), filepath.Join(t.TempDir(), "net.book"), syntheticOptions(n.Size))
+	path := filepath.Join(t.TempDir(), "net.book")
+	b, err := book.Create(t.Context(), path, syntheticOptions(n.Size))
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -39,19 +44,24 @@ func bookOf(t *testing.T, n *network.Network, put func(*app, *book.Book, *networ
 			t.Error(err)
 		}
 	})
-	for s := range n.Each() {
-		if err := put(testApp(t), b, s); err != nil {
-			t.Fatal(err)
-		}
+	actor, err := openNetwork(testApp(t), b, n)
+	if err != nil {
+		t.Fatal(err)
 	}
-	return b
+	if operator {
+		actor = maker
+	}
+	if err := load(testApp(t), b, n, actor, func(*network.Site) error { return nil }); err != nil {
+		t.Fatal(err)
+	}
+	return b, path
 }
 
 // TestFeedIsWhatTheBookSays holds that an evaluator that is fed directly judges as the book does after
 // an import of the same rows.
 func TestFeedIsWhatTheBookSays(t *testing.T) {
 	n := networkOf(t, tiny)
-	b := bookOf(t, n, importSite)
+	b, _ := bookOf(t, n, importNetwork, false)
 	f, err := feed(n)
 	if err != nil {
 		t.Fatal(err)

@@ -56,16 +56,18 @@ func (c *makeCommand) fill(a *app, b *book.Book, n *network.Network) (records in
 	if err != nil {
 		return 0, err
 	}
-	put := importSite
-	if c.Bulk {
-		put = bulkSite
+	actor, err := openNetwork(a, b, n)
+	if err != nil {
+		return 0, err
 	}
-	for s := range n.Each() {
-		err = errors.Join(put(a, b, s), c.files(s), c.pass(passages, s, s.Code == "N0001"))
-		if err != nil {
-			break
-		}
+	also := func(s *network.Site) error {
 		records += len(s.Records)
+		return errors.Join(c.files(s), c.pass(passages, s, s.Code == network.SiteCode(0)))
+	}
+	if c.Bulk {
+		err = bulkNetwork(a, b, n, actor, also)
+	} else {
+		err = importNetwork(a, b, n, actor, also)
 	}
 	if passages != nil {
 		err = errors.Join(err, passages.Close())
@@ -118,39 +120,56 @@ func seeded(seed uint64) io.Reader {
 	return rand.NewChaCha8(key)
 }
 
-// importSite opens the site and imports its tables, as a user would.
-func importSite(a *app, b *book.Book, s *network.Site) error {
-	if err := openPrograms(a, b, s); err != nil {
-		return err
+// maker opens the sites of a synthetic book.
+var maker = book.SystemOperator("lodeload")
+
+// openNetwork records the programs of all sites and gives a safety officer of all of them, who brings in the rest.
+func openNetwork(a *app, b *book.Book, n *network.Network) (book.Actor, error) {
+	var codes []string
+	for i := range n.Sites {
+		s := n.Outline(i)
+		codes = append(codes, s.Code)
+		for _, v := range s.Versions {
+			if _, err := b.OpenProgram(a.ctx, maker, v.Source, ""); err != nil {
+				return book.Actor{}, fmt.Errorf("the program of site %s: %w", s.Code, err)
+			}
+		}
 	}
-	for _, table := range network.Tables {
-		if s.Rows(table) == 0 {
-			continue // a table without rows is none
+	if _, err := b.AddAccount(a.ctx, maker, book.AccountForm{Name: "loader", Role: book.SafetyOfficer, Sites: codes}); err != nil {
+		return book.Actor{}, err
+	}
+	return b.ActorNamed(a.ctx, "loader")
+}
+
+// importNetwork imports the tables of every site, as a user would.
+func importNetwork(a *app, b *book.Book, n *network.Network, actor book.Actor, also func(*network.Site) error) error {
+	for s := range n.Each() {
+		for _, table := range network.Tables {
+			if err := importTable(a, b, s, actor, table); err != nil {
+				return err
+			}
 		}
-		var csv bytes.Buffer
-		if err := s.WriteCSV(&csv, table); err != nil {
+		if err := also(s); err != nil {
 			return err
-		}
-		report, err := b.Import(a.ctx, maker, book.ImportOptions{Table: table, Site: s.Code, File: bytes.NewReader(csv.Bytes()), Size: int64(csv.Len()), FileName: table + ".csv"})
-		if err != nil {
-			return err
-		}
-		if len(report.Faults) > 0 {
-			return fmt.Errorf("%s of site %s: %w", table, s.Code, &report.Faults[0])
 		}
 	}
 	return nil
 }
 
-// maker is who writes a synthetic book.
-var maker = book.SystemOperator("lodeload")
-
-// openPrograms records the versions of the site's program.
-func openPrograms(a *app, b *book.Book, s *network.Site) error {
-	for _, v := range s.Versions {
-		if _, err := b.OpenProgram(a.ctx, maker, v.Source, ""); err != nil {
-			return fmt.Errorf("the program of site %s: %w", s.Code, err)
-		}
+func importTable(a *app, b *book.Book, s *network.Site, actor book.Actor, table string) error {
+	if s.Rows(table) == 0 {
+		return nil // a table without rows is none
+	}
+	var csv bytes.Buffer
+	if err := s.WriteCSV(&csv, table); err != nil {
+		return err
+	}
+	report, err := b.Import(a.ctx, actor, book.ImportOptions{Table: table, Site: s.Code, File: bytes.NewReader(csv.Bytes()), Size: int64(csv.Len()), FileName: table + ".csv"})
+	if err != nil {
+		return err
+	}
+	if len(report.Faults) > 0 {
+		return fmt.Errorf("%s of site %s: %w", table, s.Code, &report.Faults[0])
 	}
 	return nil
 }

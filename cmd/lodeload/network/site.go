@@ -8,8 +8,8 @@ import (
 	"lodebook/models/program"
 )
 
-// Site makes site number i, from 0.
-func (n *Network) Site(i int) *Site {
+// Outline makes site number i, from 0, with its versions only.
+func (n *Network) Outline(i int) *Site {
 	s := &Site{n: n, no: i, Code: SiteCode(i), TimeZone: zones[i%len(zones)]}
 	s.Name = placeHeads[i%len(placeHeads)] + placeTails[i/len(placeHeads)%len(placeTails)]
 	if i >= len(placeHeads)*len(placeTails) {
@@ -21,6 +21,12 @@ func (n *Network) Site(i int) *Site {
 	}
 	s.Location = loc
 	s.Versions = s.programs()
+	return s
+}
+
+// Site makes site number i, from 0.
+func (n *Network) Site(i int) *Site {
+	s := n.Outline(i)
 	h := &history{Site: s, away: map[Subject][]Pause{}}
 	people := s.staff()
 	fixtures := s.things()
