@@ -87,7 +87,7 @@ func TestBackupWhileWritesGoOn(t *testing.T) {
 }
 
 func TestBackupIsOneFileForItsUserOnly(t *testing.T) {
-	s := veiledBook(t, 20)
+	s := veiledFile(t, 20)
 	folder := t.TempDir()
 	out := filepath.Join(folder, "copy")
 	must(t, s.Backup(background, out))
@@ -99,7 +99,7 @@ func TestBackupIsOneFileForItsUserOnly(t *testing.T) {
 	}
 	// It can be restored from a medium that cannot be written.
 	must(t, errors.Join(os.Chmod(out, 0o400), os.Chmod(folder, 0o500)))
-	back := somewhere(t)
+	back := somefile(t)
 	must(t, Restore(background, out, back))
 	folderHolds(t, filepath.Dir(back), "site.book")
 	must(t, os.Chmod(folder, 0o700))
@@ -179,9 +179,9 @@ func TestRestoreRefusesABackupWithAFault(t *testing.T) {
 	} {
 		t.Run(name, func(t *testing.T) {
 			out := filepath.Join(t.TempDir(), "copy")
-			must(t, filled(t, 500).Backup(background, out))
+			must(t, filledFile(t, 500).Backup(background, out))
 			must(t, c.spoil(out))
-			to := somewhere(t)
+			to := somefile(t)
 			refused(t, restore(background, out, to, quick()), c.words)
 			folderHolds(t, filepath.Dir(to))
 		})
@@ -189,7 +189,7 @@ func TestRestoreRefusesABackupWithAFault(t *testing.T) {
 }
 
 func TestABackupThatFailsLeavesNothing(t *testing.T) {
-	s := filled(t, 10)
+	s := filledFile(t, 10)
 	write(t, s, func(tx *Tx) error { return tx.db.Exec("UPDATE tree SET hash = zeroblob(32) WHERE idx = 0").Error })
 	folder := t.TempDir()
 	refused(t, s.Backup(background, filepath.Join(folder, "copy")), "is not whole and is not kept. Entry 0")
@@ -204,10 +204,10 @@ func TestABackupThatFailsLeavesNothing(t *testing.T) {
 
 func TestAnOlderBackupIsBroughtUp(t *testing.T) {
 	out := filepath.Join(t.TempDir(), "copy")
-	must(t, filled(t, 50).Backup(background, out))
+	must(t, filledFile(t, 50).Backup(background, out))
 	newer := quick()
 	newer.schema = nextSchema(t)
-	to := somewhere(t)
+	to := somefile(t)
 	must(t, restore(background, out, to, newer))
 	s, err := open(background, to, newer)
 	must(t, err)
@@ -222,7 +222,7 @@ func TestAnOlderBackupIsBroughtUp(t *testing.T) {
 
 // No byte of an erased value is left in any file of the book: not in its pages, not in its journal.
 func TestScrubLeavesNoByteOfWhatWasErased(t *testing.T) {
-	s := newBook(t)
+	s := newFile(t)
 	const secret, other = "Zzyzx Quillfeather", "Somebody Else"
 	write(t, s, func(tx *Tx) error {
 		for i := range 300 {
@@ -275,8 +275,8 @@ func leaves(t *testing.T, path, value string) bool {
 }
 
 func TestScrubSaysWhenItCannot(t *testing.T) {
-	s := filled(t, 10)
-	other := reopened(t, s.Path())
+	s := filledFile(t, 10)
+	other := reopened(t, address(s))
 	read(t, other, func(tx *Tx) error {
 		_, err := tx.Size()
 		must(t, err)

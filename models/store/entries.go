@@ -139,6 +139,9 @@ func (t *Tx) entryRow(e *Entry) (entryRow, error) {
 	if e.ID == "" || e.Kind == "" || len(e.Bytes) == 0 {
 		return entryRow{}, fmt.Errorf("entry %d lacks an identifier, a kind or its bytes", e.Seq)
 	}
+	if hasZero(e.Bytes) {
+		return entryRow{}, zeroByte(e)
+	}
 	return entryRow{
 		Seq: e.Seq, ID: e.ID, Kind: e.Kind, V: e.V, Site: e.Site, Batch: e.Batch,
 		Supersedes: e.Supersedes, Actor: e.Actor, RecordedAt: instant(e.RecordedAt), Bytes: e.Bytes,

@@ -62,14 +62,27 @@ func quick() settings {
 // somefile is a path where there is no file yet, for what is tested of files only.
 func somefile(t testing.TB) string { return filepath.Join(t.TempDir(), "site.book") }
 
-func newBook(t *testing.T) *Store {
+// newBook is an empty book on the home that is tested; newFile one in a file.
+func newBook(t *testing.T) *Store { return bookAt(t, somewhere(t)) }
+
+func newFile(t *testing.T) *Store { return bookAt(t, somefile(t)) }
+
+func bookAt(t *testing.T, address string) *Store {
 	t.Helper()
-	s, err := create(background, somewhere(t), quick())
+	s, err := create(background, address, quick())
 	if err != nil {
 		t.Fatal(err)
 	}
 	t.Cleanup(func() { must(t, s.Close()) })
 	return s
+}
+
+// address is what a book is opened by.
+func address(s *Store) string {
+	if s.set.address != "" {
+		return s.set.address
+	}
+	return s.path
 }
 
 func reopened(t *testing.T, path string) *Store {
@@ -116,10 +129,13 @@ func entriesUpTo(from, to int) []Entry {
 	return all
 }
 
-// filled appends n entries to a new book.
-func filled(t *testing.T, n int) *Store {
+// filled appends n entries to a new book, filledFile to one in a file.
+func filled(t *testing.T, n int) *Store { return withEntries(t, newBook(t), n) }
+
+func filledFile(t *testing.T, n int) *Store { return withEntries(t, newFile(t), n) }
+
+func withEntries(t *testing.T, s *Store, n int) *Store {
 	t.Helper()
-	s := newBook(t)
 	write(t, s, func(tx *Tx) error {
 		_, err := tx.Append(entriesUpTo(0, n), nil)
 		return err

@@ -29,7 +29,7 @@ func TestSQLiteIsNewEnough(t *testing.T) {
 }
 
 func TestCreateMakesABookForItsUserOnly(t *testing.T) {
-	path := somewhere(t)
+	path := somefile(t)
 	s, err := Create(background, path)
 	must(t, err)
 	for _, f := range []string{path, path + "-wal", path + "-shm"} {
@@ -65,7 +65,7 @@ func TestCreateMakesABookForItsUserOnly(t *testing.T) {
 
 func TestCreateLeavesWhatIsThere(t *testing.T) {
 	for _, end := range []string{"", "-wal", "-journal"} {
-		path := somewhere(t)
+		path := somefile(t)
 		must(t, os.WriteFile(path+end, []byte("mine"), 0o600))
 		_, err := Create(background, path)
 		refused(t, err, "exists already")
@@ -110,7 +110,7 @@ func TestOpenRefuses(t *testing.T) {
 		"part of a page":    {func(p string) error { return bookOf(p, -100) }, "is damaged"},
 	} {
 		t.Run(name, func(t *testing.T) {
-			path := somewhere(t)
+			path := somefile(t)
 			must(t, c.make(path))
 			s, err := open(background, path, quick())
 			if err == nil {
@@ -156,7 +156,7 @@ func bookOf(path string, size int64) error {
 
 // Looking at another program's database does not change it, not even its kind of journal.
 func TestOpenLeavesAnothersFileAlone(t *testing.T) {
-	path := somewhere(t)
+	path := somefile(t)
 	must(t, sqliteFile(path, "CREATE TABLE mine (x)"))
 	before, err := os.ReadFile(path)
 	must(t, err)
@@ -175,7 +175,7 @@ func TestOpenRefusesATreeThatDoesNotFit(t *testing.T) {
 		"DELETE FROM tree WHERE idx = 0; DELETE FROM tree WHERE idx = 2",
 		"UPDATE tree SET hash = x'00'",
 	} {
-		s := filled(t, 3)
+		s := filledFile(t, 3)
 		write(t, s, func(tx *Tx) error { return tx.db.Exec(statement).Error })
 		_, err := open(background, s.Path(), quick())
 		refused(t, err, "is damaged")
@@ -232,7 +232,7 @@ func helpOpen(args []string) error {
 }
 
 func TestOpenRefusesALockedBook(t *testing.T) {
-	book := filled(t, 3)
+	book := filledFile(t, 3)
 	path := book.Path()
 	must(t, book.Close())
 	// A lock of the write-ahead journal lets readers in, so the other program keeps the whole file.
@@ -254,7 +254,7 @@ func TestOpenRefusesALockedBook(t *testing.T) {
 
 // Beside a program that writes, a book can be opened and read; writing waits, and then says why not.
 func TestAWriterKeepsNoReaderOut(t *testing.T) {
-	path := filled(t, 3).Path()
+	path := filledFile(t, 3).Path()
 	other, err := sql.Open("sqlite3", "file:"+path)
 	must(t, err)
 	conn, err := other.Conn(background)
@@ -275,12 +275,12 @@ func TestAWriterKeepsNoReaderOut(t *testing.T) {
 }
 
 func TestPragmasHoldOnEveryConnection(t *testing.T) {
-	s := newBook(t)
+	s := newFile(t)
 	db, err := s.r.DB()
 	must(t, err)
 	checkConnections(t, "reading", db, 5, reading(s.set.busy).pragmas)
 	for i := range 3 {
-		db, err = reopened(t, s.Path()).w.DB()
+		db, err = reopened(t, address(s)).w.DB()
 		must(t, err)
 		checkConnections(t, fmt.Sprintf("writing %d", i), db, 1, writing(s.set.busy).pragmas)
 	}
@@ -307,9 +307,9 @@ func checkConnections(t *testing.T, name string, db *sql.DB, n int, pragmas map[
 }
 
 func TestABadReferenceIsRefusedOnEveryConnection(t *testing.T) {
-	s := newBook(t)
+	s := newFile(t)
 	for range 3 {
-		other := reopened(t, s.Path())
+		other := reopened(t, address(s))
 		for range 2 {
 			err := other.Write(background, func(tx *Tx) error { return tx.Put(SiteRow{Line: Line{Seq: 7}}) })
 			if err == nil || !strings.Contains(err.Error(), "FOREIGN KEY") {
@@ -323,7 +323,7 @@ func TestAJournalThatDoesNotTakeIsRefused(t *testing.T) {
 	set := quick()
 	// A file system without shared memory, as a network share is, has no write-ahead journal.
 	set.options = map[string]string{"vfs": "unix-dotfile"}
-	path := somewhere(t)
+	path := somefile(t)
 	_, err := create(background, path, set)
 	refused(t, err, `journal_mode is "delete" and must be "wal"`)
 	_, err = os.Stat(path)
@@ -349,7 +349,7 @@ func nextSchema(t *testing.T) fs.FS {
 }
 
 func TestAnOlderSchemaIsBroughtUpAndANewerRefused(t *testing.T) {
-	older := filled(t, 10)
+	older := filledFile(t, 10)
 	write(t, older, func(tx *Tx) error { return tx.SetMeta(MetaBookID, "b-1") })
 	newer := quick()
 	newer.schema = nextSchema(t)
@@ -369,7 +369,7 @@ func TestAnOlderSchemaIsBroughtUpAndANewerRefused(t *testing.T) {
 }
 
 func TestAMigrationThatFailsLeavesTheBookAsItWas(t *testing.T) {
-	s := filled(t, 3)
+	s := filledFile(t, 3)
 	bad := quick()
 	bad.schema = nextSchema(t)
 	for name, f := range bad.schema.(fstest.MapFS) {
@@ -381,11 +381,11 @@ func TestAMigrationThatFailsLeavesTheBookAsItWas(t *testing.T) {
 	if err == nil || !strings.Contains(err.Error(), "bringing the schema up to date") {
 		t.Errorf("opened with a migration that fails: %v", err)
 	}
-	sound(t, reopened(t, s.Path()))
+	sound(t, reopened(t, address(s)))
 }
 
 func TestWriteKeepsAllOrNothing(t *testing.T) {
-	s := newBook(t)
+	s := newFile(t)
 	no := errors.New("no")
 	err := s.Write(background, func(tx *Tx) error {
 		_, err := tx.Append([]Entry{entry(0)}, nil)
@@ -414,7 +414,7 @@ func TestWriteKeepsAllOrNothing(t *testing.T) {
 }
 
 func TestACancelledWriteKeepsNothing(t *testing.T) {
-	s := newBook(t)
+	s := newFile(t)
 	ctx, cancel := context.WithCancel(background)
 	err := s.Write(ctx, func(tx *Tx) error {
 		_, err := tx.Append([]Entry{entry(0)}, nil)
@@ -431,7 +431,7 @@ func TestACancelledWriteKeepsNothing(t *testing.T) {
 }
 
 func TestAReadSeesOneMomentAndWritesNothing(t *testing.T) {
-	s := filled(t, 3)
+	s := filledFile(t, 3)
 	read(t, s, func(tx *Tx) error {
 		before, err := tx.Size()
 		must(t, err)
@@ -453,7 +453,7 @@ func TestAReadSeesOneMomentAndWritesNothing(t *testing.T) {
 }
 
 func TestAFullDiskIsToldAndKeepsNothing(t *testing.T) {
-	s := filled(t, 3)
+	s := filledFile(t, 3)
 	must(t, s.w.Exec("PRAGMA max_page_count = 100").Error)
 	err := s.Write(background, func(tx *Tx) error { _, err := tx.Append(entriesUpTo(3, 5000), nil); return err })
 	refused(t, err, "no room left on the disk")

@@ -172,6 +172,9 @@ type watched struct {
 
 // ExecContext runs a statement that writes.
 func (w *watched) ExecContext(ctx context.Context, query string, args ...any) (sql.Result, error) {
+	if err := w.t.sendable(args); err != nil {
+		return nil, err
+	}
 	if err := w.t.save(); err != nil {
 		return nil, err
 	}
@@ -180,6 +183,9 @@ func (w *watched) ExecContext(ctx context.Context, query string, args ...any) (s
 
 // QueryContext runs a statement that gives rows; some write too.
 func (w *watched) QueryContext(ctx context.Context, query string, args ...any) (*sql.Rows, error) {
+	if err := w.t.sendable(args); err != nil {
+		return nil, err
+	}
 	if writes(query) {
 		if err := w.t.save(); err != nil {
 			return nil, err

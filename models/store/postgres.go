@@ -8,6 +8,7 @@ import (
 	"strconv"
 	"strings"
 	"time"
+	"unicode/utf8"
 
 	"github.com/jackc/pgx/v5"
 	"github.com/jackc/pgx/v5/pgconn"
@@ -156,6 +157,20 @@ func lock(db *gorm.DB) error {
 		return nil
 	}
 	return db.Exec("SELECT pg_advisory_xact_lock(?)", lockWrite).Error
+}
+
+// sendable refuses text that a server would refuse: after that nothing more could be done in the
+// transaction, which may be others' too.
+func (t *Tx) sendable(args []any) error {
+	if t.db.Name() != "postgres" {
+		return nil
+	}
+	for _, a := range args {
+		if s, ok := a.(string); ok && (strings.Contains(s, "\x00") || !utf8.ValidString(s)) {
+			return refuse(nil, "A text holds a zero byte or is not UTF-8, which no book keeps; leave it out.")
+		}
+	}
+	return nil
 }
 
 // createServer makes a new book in a database that has no table.

@@ -56,7 +56,7 @@ func TestTwoProcessesWriteAtOnce(t *testing.T) {
 	const each = 150
 	var writers []*exec.Cmd
 	for _, name := range []string{"first", "second"} {
-		c := process(t, "append", s.Path(), name, strconv.Itoa(each))
+		c := process(t, "append", address(s), name, strconv.Itoa(each))
 		must(t, c.Start())
 		writers = append(writers, c)
 	}
@@ -100,8 +100,8 @@ func TestKillLosesNothingAcknowledged(t *testing.T) {
 	for round := range 3 {
 		s := newBook(t)
 		must(t, s.Close())
-		acknowledged := killedAfter(t, s.Path(), 40+round*35)
-		again := reopened(t, s.Path())
+		acknowledged := killedAfter(t, address(s), 40+round*35)
+		again := reopened(t, address(s))
 		report := sound(t, again)
 		if report.Entries < int64(len(acknowledged)) || report.Entries > int64(len(acknowledged))+1 {
 			t.Errorf("%d entries are there, %d were acknowledged and one may have been under way", report.Entries, len(acknowledged))

@@ -161,7 +161,7 @@ func TestChangedGivesWhatIsNew(t *testing.T) {
 
 // A server asks for changes after every write, so it may not read whole tables for it.
 func TestChangedGoesByIndexes(t *testing.T) {
-	s := newBook(t)
+	s := newFile(t)
 	for _, p := range projections {
 		for _, c := range p.conditions() {
 			rows, err := s.r.Raw("EXPLAIN QUERY PLAN SELECT * FROM "+p.title()+" WHERE "+c, sql.Named("since", 7)).Rows()

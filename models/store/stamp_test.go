@@ -51,7 +51,8 @@ func TestStampTellsOfEveryCommit(t *testing.T) {
 	if failed == nil {
 		t.Fatal("nothing failed")
 	}
-	if now := stamp(); now != last {
+	// What others do on the same server may move the stamp of a book that stayed as it was.
+	if now := stamp(); now != last && s.set.address == "" {
 		t.Errorf("reading and rolling back moved the stamp from %s to %s", last, now)
 	}
 	if err := other.Close(); err != nil {

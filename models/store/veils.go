@@ -1,6 +1,7 @@
 package store
 
 import (
+	"bytes"
 	"fmt"
 	"slices"
 
@@ -25,6 +26,9 @@ func appendVeils(to []veilRow, seq int64, veils []Veil) ([]veilRow, error) {
 		v.Seq = seq
 		if v.Erased || len(v.Salt) != ledger.SaltSize || v.Path == "" {
 			return nil, fmt.Errorf("value %d of entry %d needs a path and a salt of %d bytes", i, seq, ledger.SaltSize)
+		}
+		if bytes.IndexByte(v.Value, 0) >= 0 || hasZero(v.Value) {
+			return nil, refuse(nil, "The text at %q holds a zero byte, which no book keeps; leave it out.", v.Path)
 		}
 		r := veilRow(*v)
 		if r.Value == nil {
@@ -95,4 +99,25 @@ func (t *Tx) EraseVeils(veils []Veil) error {
 		}
 	}
 	return nil
+}
+
+// hasZero tells whether a JSON text has a string with a zero byte, which PostgreSQL cannot keep as
+// text: no book takes one, so that every book can be moved.
+func hasZero(text []byte) bool {
+	for at := 0; ; {
+		i := bytes.Index(text[at:], []byte(`\u0000`))
+		if i < 0 {
+			return false
+		}
+		at += i
+		before := bytes.TrimRight(text[:at], `\`)
+		if (at-len(before))%2 == 0 {
+			return true // the backslash is not itself escaped
+		}
+		at++
+	}
+}
+
+func zeroByte(e *Entry) error {
+	return refuse(fmt.Errorf("entry %s", e.ID), "A text of this %s holds a zero byte, which no book keeps; leave it out.", e.Kind)
 }

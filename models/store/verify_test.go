@@ -13,9 +13,12 @@ import (
 )
 
 // veiledBook has n entries, each with an erasable value.
-func veiledBook(t *testing.T, n int) *Store {
+func veiledBook(t *testing.T, n int) *Store { return withVeils(t, newBook(t), n) }
+
+func veiledFile(t *testing.T, n int) *Store { return withVeils(t, newFile(t), n) }
+
+func withVeils(t *testing.T, s *Store, n int) *Store {
 	t.Helper()
-	s := newBook(t)
 	write(t, s, func(tx *Tx) error {
 		var all []Entry
 		var veils [][]Veil
@@ -79,7 +82,7 @@ func TestVerifyFindsTampering(t *testing.T) {
 		"an index that disagrees": {"PRAGMA writable_schema = ON; UPDATE sqlite_master SET sql = replace(sql, '(kind, seq)', '(actor, seq)') WHERE name = 'entries_kind'", "file is damaged"},
 	} {
 		t.Run(name, func(t *testing.T) {
-			s := veiledBook(t, 9)
+			s := veiledFile(t, 9)
 			db, err := s.w.DB()
 			must(t, err)
 			_, err = db.ExecContext(background, c.statement)
@@ -126,10 +129,10 @@ func TestVerifyCallsTheCallersChecks(t *testing.T) {
 
 // A bit that the disk turned is told as damage and not as an error.
 func TestVerifyFindsDamage(t *testing.T) {
-	s := filled(t, 2000)
+	s := filledFile(t, 2000)
 	must(t, s.Scrub(background)) // everything is in the file
 	flip(t, s.Path(), 40*4096)
-	report, err := reopened(t, s.Path()).Verify(background, nil)
+	report, err := reopened(t, address(s)).Verify(background, nil)
 	if err != nil || report.FirstFault == "" {
 		t.Errorf("found %+v, %v", report, err)
 	}
