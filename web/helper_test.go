@@ -24,6 +24,7 @@ type house struct {
 	b       *book.Book
 	path    string // of the book
 	handler http.Handler
+	blank   http.Handler // see forgetful
 	now     time.Time
 	op      book.Actor
 	actors  map[book.Role]book.Actor

@@ -47,6 +47,14 @@ type server struct {
 
 // New makes the handler of all pages. It fails when a template is not readable or an option cannot be.
 func New(b *book.Book, o Options) (http.Handler, error) {
+	s, err := newServer(b, o)
+	if err != nil {
+		return nil, err
+	}
+	return s.handler()
+}
+
+func newServer(b *book.Book, o Options) (*server, error) {
 	if o.Log == nil {
 		o.Log = slog.New(slog.DiscardHandler)
 	}
@@ -58,7 +66,18 @@ func New(b *book.Book, o Options) (http.Handler, error) {
 	if err != nil {
 		return nil, err
 	}
-	s := &server{b: b, o: o, leaves: leaves, files: files, pages: newMemo[proof](pageRoom), shorts: newMemo[short](shortRoom), flags: newMemo[map[string]int](flagRoom)}
+	s := &server{b: b, o: o, leaves: leaves, files: files}
+	s.remember(pageRoom, shortRoom, flagRoom)
+	return s, nil
+}
+
+// remember gives the server an empty memory with so much room.
+func (s *server) remember(pages, shorts, flags int) {
+	s.pages, s.shorts, s.flags = newMemo[proof](pages), newMemo[short](shorts), newMemo[map[string]int](flags)
+}
+
+// handler is the engine behind its guard.
+func (s *server) handler() (http.Handler, error) {
 	engine, err := s.engine()
 	if err != nil {
 		return nil, err
