@@ -75,7 +75,7 @@ func CompileSelector(p *Program, asks Asks, src string) (*Selector, error) {
 
 // compile is CompileSelector inside a program file.
 func (r *reader) compile(n *node, path string, asks Asks) *Selector {
-	sel, flaws := r.scope(asks).compile(n.text)
+	sel, flaws := r.scope(asks).remembered(n.text)
 	for _, f := range flaws {
 		line, col := r.inside(n, f.offset)
 		r.faults = append(r.faults, Fault{Line: line, Column: col, Path: path, Found: f.found, Problem: f.problem, Accepted: f.accepted})

@@ -217,7 +217,7 @@ func (r *reader) possible(o object, c Cadence) {
 	if c.Rule == Every && c.Early != nil && !c.Every.IsZero() && !shorter(*c.Early, c.Every) {
 		r.wrong(o.get("early"), o.at("early"), "it is not shorter than every on every day of the calendar", "write a duration shorter than "+c.Every.String())
 	}
-	if c.Rule != Within || c.Within.IsZero() || c.Count == 1 {
+	if c.Rule != Within || c.Within.IsZero() || c.Count <= max(1, atLeast(c.Within)) {
 		return
 	}
 	if most := longest(c.Within) + 1; c.Count > most {

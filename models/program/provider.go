@@ -17,6 +17,7 @@ type scope struct {
 	asks           Asks
 	fields, facts  map[string]*attribute
 	env            *cel.Env
+	print          []byte // of what can be read
 }
 
 // attribute is one field of a subject, or one fact.
