@@ -31,12 +31,12 @@ type scale struct {
 var (
 	fullScale = scale{
 		network: network.Full, book: network.Size{Seed: 1, Sites: 20, People: 8000, Fixtures: 800, Days: 1826},
-		page: 5000, loads: 2000, mix: 20_000,
+		page: 5000, loads: 4000, mix: 20_000,
 	}
 	quickScale = scale{
 		network: network.Size{Seed: 1, Sites: 25, People: 10_000, Fixtures: 1000, Days: 1826},
 		book:    network.Size{Seed: 1, Sites: 2, People: 400, Fixtures: 40, Days: 1826},
-		page:    1000, loads: 500, mix: 10_000,
+		page:    1000, loads: 500, mix: 1500,
 	}
 )
 
@@ -89,7 +89,7 @@ type contest struct {
 type rowMaker func(b *bench) ([]*contest, error)
 
 // contests are the rows in the order in which they are printed.
-var contests = []rowMaker{asOfRows, todayRows, overRows, recordRows}
+var contests = []rowMaker{memoryRows, asOfRows, todayRows, scanRows, overRows, recordRows, selectRows, bookRows, pageRows}
 
 // run makes, checks and times every row.
 func (b *bench) run(makers []rowMaker) (*result, error) {

@@ -26,7 +26,7 @@ type sampled struct {
 }
 
 // sampleEvery is how many records there are to one that is kept as a sample.
-const sampleEvery = 10
+const sampleEvery = 50
 
 // line is the line of the next entry.
 func (f *feeder) line() standing.Line {
