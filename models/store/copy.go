@@ -11,8 +11,16 @@ import (
 
 // Backup writes a copy of the book, as it is at one moment, to a new file at out. Others may go on
 // writing meanwhile. The copy is written under another name, read back whole, held against the head
-// of this book's tree, and only then gets its name. It refuses a path where there is something.
+// of this book's tree, and only then gets its name. It refuses a path where there is something. Of a book
+// in a PostgreSQL database the copy is what Move makes: a file, without sessions and links.
 func (s *Store) Backup(ctx context.Context, out string) error {
+	if OnServer(out) {
+		return refuse(nil, "A copy is a file; to put a book into a PostgreSQL database, move it there.")
+	}
+	if s.set.address != "" {
+		_, err := s.moveTo(ctx, out, nil)
+		return err
+	}
 	return withCopy(out, func(temporary string) error {
 		err := s.copyTo(ctx, temporary)
 		if err != nil {
@@ -55,7 +63,7 @@ func copyBook(ctx context.Context, from, to string, set settings) error {
 	return errors.Join(explain(from, err), disconnect(g))
 }
 
-// Restore puts the book in the backup file from at the path to, where there must be nothing. It is
+// Restore puts the book in the backup file from at the address to, where there must be nothing. It is
 // read whole first; a backup with a fault is refused. A backup of an older schema is brought up to
 // date.
 func Restore(ctx context.Context, from, to string) error { return restore(ctx, from, to, usual()) }
@@ -69,18 +77,41 @@ func restore(ctx context.Context, from, to string, set settings) error {
 	if err != nil {
 		return err
 	}
+	if OnServer(to) {
+		return restoreToServer(ctx, from, to, set)
+	}
 	return withCopy(to, func(temporary string) error {
-		err := copyBook(ctx, from, temporary, set)
-		if err != nil {
-			return err
-		}
-		s, err := open(ctx, temporary, set)
+		s, err := openCopied(ctx, from, temporary, set)
 		if err != nil {
 			return err
 		}
 		_, err = verifyAndClose(ctx, s)
 		return err
 	})
+}
+
+// openCopied copies a backup into an empty file and opens that.
+func openCopied(ctx context.Context, from, temporary string, set settings) (*Store, error) {
+	err := copyBook(ctx, from, temporary, set)
+	if err != nil {
+		return nil, err
+	}
+	return open(ctx, temporary, set)
+}
+
+// restoreToServer moves a copy of the backup into a database, since the backup itself may be of an older
+// schema and where nothing can be written.
+func restoreToServer(ctx context.Context, from, to string, set settings) error {
+	folder, err := os.MkdirTemp("", "lodebook-restore-")
+	if err != nil {
+		return err
+	}
+	s, err := openCopied(ctx, from, filepath.Join(folder, "copy"), set)
+	if err == nil {
+		_, err = s.moveTo(ctx, to, nil)
+		err = errors.Join(err, s.Close())
+	}
+	return errors.Join(err, os.RemoveAll(folder))
 }
 
 // verifyCopy verifies a copy as it is, without giving it a journal.
@@ -159,8 +190,13 @@ func flush(path string) error {
 
 // Scrub makes sure that no byte of what was erased is left in the book's files: it writes the file
 // anew and empties the journal. It needs the book to itself for a moment and is refused with
-// ErrBusy while another program reads or writes on and on.
+// ErrBusy while another program reads or writes on and on. In a PostgreSQL database it writes the tables
+// anew that held values; it cannot reach what the server keeps elsewhere: its write-ahead log until that
+// has been used again, archives of it, standbys, backups of the server, and freed blocks of its disk.
 func (s *Store) Scrub(ctx context.Context) error {
+	if s.set.address != "" {
+		return s.scrubServer(ctx)
+	}
 	err := s.emptyJournal(ctx)
 	if err != nil {
 		return err

@@ -296,6 +296,37 @@ func (s *Store) serverStamp(ctx context.Context) (string, error) {
 	return ended, explain(s.path, err)
 }
 
+// scrubServer writes the tables that held erased values anew, once no transaction is left that could
+// still see the old rows: PostgreSQL would keep those for it.
+func (s *Store) scrubServer(ctx context.Context) error {
+	w := s.w.WithContext(ctx)
+	var now string
+	err := w.Raw("SELECT pg_snapshot_xmax(pg_current_snapshot())::text").Row().Scan(&now)
+	if err != nil {
+		return explain(s.path, err)
+	}
+	const pause = 50 * time.Millisecond
+	for waited := time.Duration(0); ; waited += pause {
+		var older int64
+		err = w.Raw(`SELECT COUNT(*) FROM pg_stat_activity WHERE datname = current_database() AND pid <> pg_backend_pid()
+			AND age(backend_xmin) > age(CAST(CAST(? AS text) AS xid8)::xid)`, now).Scan(&older).Error
+		if err != nil {
+			return explain(s.path, err)
+		}
+		if older == 0 {
+			break
+		}
+		if waited >= s.set.busy {
+			return refuse(ErrBusy, "%s is being read by another program, so what was erased may still be in its tables; try again when that has finished.", s.path)
+		}
+		err = w.Exec("SELECT pg_sleep(?)", pause.Seconds()).Error
+		if err != nil {
+			return explain(s.path, err)
+		}
+	}
+	return explain(s.path, w.Exec("VACUUM (FULL) veils, people, accounts, facts").Error)
+}
+
 // explainServer turns what PostgreSQL says, or that it cannot be reached, into a refusal; any other
 // error passes as it is.
 func explainServer(name string, err error) error {
