@@ -16,6 +16,7 @@ import (
 
 	_ "github.com/mattn/go-sqlite3"
 
+	"lodebook/migrations/scratch"
 	"lodebook/models/book"
 	"lodebook/models/civil"
 	"lodebook/models/standing"
@@ -34,9 +35,14 @@ type desk struct {
 
 const site = "QUAY"
 
-func newDesk(t *testing.T) *desk {
+// newDesk's book is where books are tested; newFileDesk's is a file, for what is tested of files only.
+func newDesk(t *testing.T) *desk { return deskAt(t, scratch.Book(t)) }
+
+func newFileDesk(t *testing.T) *desk { return deskAt(t, filepath.Join(t.TempDir(), "site.book")) }
+
+func deskAt(t *testing.T, address string) *desk {
 	t.Helper()
-	d := &desk{T: t, path: filepath.Join(t.TempDir(), "site.book"), now: time.Date(2026, 3, 2, 8, 0, 0, 0, time.UTC), op: book.SystemOperator("ops")}
+	d := &desk{T: t, path: address, now: time.Date(2026, 3, 2, 8, 0, 0, 0, time.UTC), op: book.SystemOperator("ops")}
 	b, err := book.Create(t.Context(), d.path, d.options())
 	d.ok(err)
 	d.Book = b
@@ -440,7 +446,7 @@ func TestReopenedBookIsTheSame(t *testing.T) {
 // rawSQL changes the file behind the book's back.
 func (d *desk) rawSQL(statement string) {
 	d.Helper()
-	db, err := sql.Open("sqlite3", d.path)
+	db, err := sql.Open(driverOf(d.path), d.path)
 	d.ok(err)
 	_, err = db.ExecContext(d.Context(), statement)
 	d.ok(err)
@@ -448,3 +454,11 @@ func (d *desk) rawSQL(statement string) {
 }
 
 func bookQuery() book.StandingQuery { return book.StandingQuery{Site: site} }
+
+// driverOf is the database/sql driver for a book's address.
+func driverOf(address string) string {
+	if scratch.OnServer() && strings.HasPrefix(address, "postgres") {
+		return "pgx"
+	}
+	return "sqlite3"
+}

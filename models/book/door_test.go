@@ -34,7 +34,7 @@ func (d *desk) signIn(name string) string {
 // lastSeen gives what is written of sessions: when each was last seen, in order.
 func (d *desk) lastSeen() []string {
 	d.Helper()
-	db, err := sql.Open("sqlite3", d.path)
+	db, err := sql.Open(driverOf(d.path), d.path)
 	d.ok(err)
 	defer func() {
 		if err := db.Close(); err != nil {

@@ -10,6 +10,7 @@ import (
 	"testing"
 	"time"
 
+	"lodebook/migrations/scratch"
 	"lodebook/models/book"
 	"lodebook/models/ledger"
 	"lodebook/models/store"
@@ -31,7 +32,7 @@ func (c *counting) Read(p []byte) (int, error) {
 // TestGoldenBytes holds the stored form of every kind and version: entries last for decades, so what
 // stands in testdata/entries is never changed, only added to.
 func TestGoldenBytes(t *testing.T) {
-	d := &desk{T: t, path: filepath.Join(t.TempDir(), "site.book"), now: time.Date(2026, 3, 2, 8, 0, 0, 0, time.UTC), op: book.SystemOperator("ops")}
+	d := &desk{T: t, path: scratch.Book(t), now: time.Date(2026, 3, 2, 8, 0, 0, 0, time.UTC), op: book.SystemOperator("ops")}
 	b, err := book.Create(t.Context(), d.path, book.Options{Clock: func() time.Time { return d.now }, Random: &counting{}})
 	d.ok(err)
 	defer func() { d.ok(b.Close()) }()

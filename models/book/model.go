@@ -4,10 +4,14 @@ import (
 	"cmp"
 	"context"
 	"encoding/json"
+	"errors"
 	"fmt"
 	"maps"
+	"runtime"
 	"slices"
 	"strings"
+	"sync"
+	"sync/atomic"
 	"time"
 
 	"lodebook/models/civil"
@@ -94,22 +98,24 @@ func put[K comparable, T any](s *shelf[K, []T], k K, row T, seq func(T) int64, s
 
 // take brings the model up to date with the rows that changed.
 func (m *model) take(d store.Delta) error {
-	for _, v := range d.Versions {
-		if err := m.takeVersion(v); err != nil {
-			return err
-		}
+	programs, err := parseAll(d.Versions)
+	if err != nil {
+		return err
+	}
+	for i, v := range d.Versions {
+		m.takeVersion(v, programs[i])
 	}
 	for _, r := range d.People {
 		put(&m.people, r.Code, r, func(r store.PersonRow) int64 { return r.Seq }, always)
 	}
 	for _, r := range d.Fixtures {
 		put(&m.fixtures, siteCode{r.Site, r.Code}, r, func(r store.FixtureRow) int64 { return r.Seq }, always)
-		m.engine.PutFact(r.Site, standing.Fact{Line: known(r.Line), Subject: subjectOf(string(program.AsksFixture), r.Code), Code: factKind, From: civil.FirstDay, Value: r.Kind})
+		m.putFixture(r)
 	}
 	for _, r := range d.Stints {
 		k := store.SubjectKey{Site: r.Site, Kind: r.Kind, Code: r.Code}
 		put(&m.stints, k, r, func(r store.StintRow) int64 { return r.Seq }, always)
-		m.engine.PutStint(r.Site, standing.Stint{Line: known(r.Line), Subject: subjectOf(r.Kind, r.Code), First: r.First, Last: r.Last})
+		m.putStint(r)
 	}
 	for _, r := range d.Facts {
 		if err := m.takeFact(r); err != nil {
@@ -142,12 +148,39 @@ func (m *model) takeHappenings(d store.Delta) {
 	}
 	for _, r := range d.Events {
 		put(&m.events, r.Subject, r, func(r store.EventRow) int64 { return r.Seq }, always)
-		m.engine.PutEvent(r.Site, standing.Event{Line: known(r.Line), Subject: subjectOf(r.Subject.Kind, r.Subject.Code), Code: r.Event, Day: r.Day, Time: r.Time})
+		m.putEvent(r)
 	}
 	for _, r := range d.Excusals {
 		put(&m.excusals, r.Subject, r, func(r store.ExcusalRow) int64 { return r.Seq }, always)
-		m.engine.PutExcusal(r.Site, standing.Excusal{Line: known(r.Line), Subject: subjectOf(r.Subject.Kind, r.Subject.Code), Item: r.Item, From: r.From, To: r.To, Opens: r.Opens})
+		m.putExcusal(r)
 	}
+}
+
+// What the evaluator is told of each row.
+
+func (m *model) putFixture(r store.FixtureRow) {
+	m.engine.PutFact(r.Site, standing.Fact{Line: known(r.Line), Subject: subjectOf(string(program.AsksFixture), r.Code), Code: factKind, From: civil.FirstDay, Value: r.Kind})
+}
+
+func (m *model) putStint(r store.StintRow) {
+	m.engine.PutStint(r.Site, standing.Stint{Line: known(r.Line), Subject: subjectOf(r.Kind, r.Code), First: r.First, Last: r.Last})
+}
+
+func (m *model) putFact(r store.FactRow) error {
+	value, err := factValueOf(r.Value)
+	if err != nil {
+		return fmt.Errorf("the fact %s of %s %s is not readable: %w", r.Fact, r.Kind, r.Code, err)
+	}
+	m.engine.PutFact(r.Site, standing.Fact{Line: known(r.Line), Subject: subjectOf(r.Kind, r.Code), Code: r.Fact, From: r.From, Value: value})
+	return nil
+}
+
+func (m *model) putEvent(r store.EventRow) {
+	m.engine.PutEvent(r.Site, standing.Event{Line: known(r.Line), Subject: subjectOf(r.Subject.Kind, r.Subject.Code), Code: r.Event, Day: r.Day, Time: r.Time})
+}
+
+func (m *model) putExcusal(r store.ExcusalRow) {
+	m.engine.PutExcusal(r.Site, standing.Excusal{Line: known(r.Line), Subject: subjectOf(r.Subject.Kind, r.Subject.Code), Item: r.Item, From: r.From, To: r.To, Opens: r.Opens})
 }
 
 // takeSession counts the record to its session while it stands, if the session was planned.
@@ -173,14 +206,9 @@ func (m *model) planned(session string) ([]int64, bool) {
 }
 
 func (m *model) takeFact(r store.FactRow) error {
-	value, err := factValueOf(r.Value)
-	if err != nil {
-		return fmt.Errorf("the fact %s of %s %s is not readable: %w", r.Fact, r.Kind, r.Code, err)
-	}
 	k := store.SubjectKey{Site: r.Site, Kind: r.Kind, Code: r.Code}
 	put(&m.facts, k, r, func(r store.FactRow) int64 { return r.Seq }, func(a, b store.FactRow) bool { return a.Fact == b.Fact })
-	m.engine.PutFact(r.Site, standing.Fact{Line: known(r.Line), Subject: subjectOf(r.Kind, r.Code), Code: r.Fact, From: r.From, Value: value})
-	return nil
+	return m.putFact(r)
 }
 
 // factValueOf reads the value of a fact, which is JSON. Most are plain texts, which need no looking into.
@@ -196,7 +224,28 @@ func factValueOf(text string) (any, error) {
 // notPlain tells whether a character may stand for another in JSON, or may not stand in it.
 func notPlain(r rune) bool { return r < ' ' || r >= 0x7f || r == '"' || r == '\\' }
 
-func (m *model) takeVersion(v store.VersionRow) error {
+// parseAll reads the programs of versions, over all cores: there may be one or more of each of many sites.
+func parseAll(versions []store.VersionRow) ([]*program.Program, error) {
+	out, errs := make([]*program.Program, len(versions)), make([]error, len(versions))
+	var next atomic.Int64
+	var all sync.WaitGroup
+	for range min(runtime.GOMAXPROCS(0), len(versions)) {
+		all.Go(func() {
+			for i := next.Add(1) - 1; int(i) < len(versions); i = next.Add(1) - 1 {
+				v := &versions[i]
+				p, err := program.Parse(v.Source)
+				if err != nil {
+					errs[i] = fmt.Errorf("version %d of the program of site %s is not readable by this program: %w", v.Number, v.Site, err)
+				}
+				out[i] = p
+			}
+		})
+	}
+	all.Wait()
+	return out, errors.Join(errs...)
+}
+
+func (m *model) takeVersion(v store.VersionRow, p *program.Program) {
 	p, err := programOf(v)
 	if err == nil {
 		m.putVersion(v, p)

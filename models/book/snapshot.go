@@ -1,7 +1,6 @@
 package book
 
 import (
-	"cmp"
 	"encoding/binary"
 	"errors"
 	"fmt"
@@ -165,7 +164,7 @@ func readSnapshot(r io.Reader, h snapshotHead, m *model) error {
 	rows := sections[0]
 	d, err := store.ReadDelta(unsafe.String(unsafe.SliceData(rows), len(rows)))
 	if err == nil {
-		err = m.takeParsed(d)
+		err = m.takeListed(&d)
 	}
 	if err == nil {
 		err = m.readSessions(sections[1])
@@ -180,29 +179,79 @@ func readSnapshot(r io.Reader, h snapshotHead, m *model) error {
 	return nil
 }
 
-// takeParsed is take of many rows at once: the programs among them are read on all cores meanwhile.
-func (m *model) takeParsed(d store.Delta) error {
-	versions := d.Versions
-	d.Versions = nil
-	programs, errs := make([]*program.Program, len(versions)), make([]error, len(versions)+1)
+// takeListed takes in what rows listed. Programs are read, the evaluator is told and the rows are put up at the
+// same time: each has its own part of the model.
+func (m *model) takeListed(d *store.Delta) error {
+	programs, errs := make([]*program.Program, len(d.Versions)), make([]error, len(d.Versions)+1)
 	var next atomic.Int64
 	var workers sync.WaitGroup
-	for range min(runtime.GOMAXPROCS(0), len(versions)) {
+	for range min(runtime.GOMAXPROCS(0), len(d.Versions)) {
 		workers.Go(func() {
-			for i := int(next.Add(1)) - 1; i < len(versions); i = int(next.Add(1)) - 1 {
-				programs[i], errs[i] = programOf(versions[i])
+			for i := int(next.Add(1)) - 1; i < len(programs); i = int(next.Add(1)) - 1 {
+				programs[i], errs[i] = programOf(d.Versions[i])
 			}
 		})
 	}
-	errs[len(versions)] = m.take(d)
+	workers.Go(func() { errs[len(programs)] = m.putListed(d) })
+	m.shelveListed(d)
 	workers.Wait()
 	if err := errors.Join(errs...); err != nil {
 		return err
 	}
-	for i, v := range versions {
+	for i, v := range d.Versions {
 		m.putVersion(v, programs[i])
 	}
 	return nil
+}
+
+// putListed tells the evaluator of all rows but the versions.
+func (m *model) putListed(d *store.Delta) error {
+	for _, r := range d.Fixtures {
+		m.putFixture(r)
+	}
+	for _, r := range d.Stints {
+		m.putStint(r)
+	}
+	for _, r := range d.Facts {
+		if err := m.putFact(r); err != nil {
+			return err
+		}
+	}
+	for _, r := range d.Events {
+		m.putEvent(r)
+	}
+	for _, r := range d.Excusals {
+		m.putExcusal(r)
+	}
+	return nil
+}
+
+// shelveListed puts the rows up for looking up.
+func (m *model) shelveListed(d *store.Delta) {
+	shelve(&m.people, d.People, func(r *store.PersonRow) string { return r.Code })
+	shelve(&m.fixtures, d.Fixtures, func(r *store.FixtureRow) siteCode { return siteCode{r.Site, r.Code} })
+	shelve(&m.stints, d.Stints, func(r *store.StintRow) store.SubjectKey {
+		return store.SubjectKey{Site: r.Site, Kind: r.Kind, Code: r.Code}
+	})
+	shelve(&m.facts, d.Facts, func(r *store.FactRow) store.SubjectKey {
+		return store.SubjectKey{Site: r.Site, Kind: r.Kind, Code: r.Code}
+	})
+	shelve(&m.events, d.Events, func(r *store.EventRow) store.SubjectKey { return r.Subject })
+	shelve(&m.excusals, d.Excusals, func(r *store.ExcusalRow) store.SubjectKey { return r.Subject })
+	shelve(&m.accounts, d.Accounts, func(r *store.AccountRow) string { return r.ID })
+	m.plans, m.batches = d.Plans, d.Batches
+}
+
+// shelve puts up rows of which those of one key stand together, as one list.
+func shelve[K comparable, T any](s *shelf[K, []T], rows []T, key func(*T) K) {
+	for first := 0; first < len(rows); {
+		k, end := key(&rows[first]), first+1
+		for end < len(rows) && key(&rows[end]) == k {
+			end++
+		}
+		s.set(k, rows[first:end:end])
+		first = end
+	}
 }
 
 // section reads a section and checks its sum. Its bytes begin at a multiple of eight.
@@ -229,13 +278,12 @@ func section(r io.Reader, s snapshotSection) ([]byte, error) {
 	return b, nil
 }
 
-// rows are all rows that the model was fed with, but the records, in order of their entries.
+// rows are all rows that the model was fed with, but the records; those that are looked up together stand
+// together, in order of their entries.
 func (m *model) rows() store.Delta {
 	d := store.Delta{
-		People: listed(m.people, func(r store.PersonRow) int64 { return r.Seq }), Fixtures: listed(m.fixtures, func(r store.FixtureRow) int64 { return r.Seq }),
-		Stints: listed(m.stints, func(r store.StintRow) int64 { return r.Seq }), Facts: listed(m.facts, func(r store.FactRow) int64 { return r.Seq }),
-		Events: listed(m.events, func(r store.EventRow) int64 { return r.Seq }), Excusals: listed(m.excusals, func(r store.ExcusalRow) int64 { return r.Seq }),
-		Plans: m.plans, Accounts: listed(m.accounts, func(r store.AccountRow) int64 { return r.Seq }), Batches: m.batches,
+		People: listed(m.people), Fixtures: listed(m.fixtures), Stints: listed(m.stints), Facts: listed(m.facts),
+		Events: listed(m.events), Excusals: listed(m.excusals), Plans: m.plans, Accounts: listed(m.accounts), Batches: m.batches,
 	}
 	for _, code := range m.siteCodes() {
 		for _, v := range m.sites[code].versions {
@@ -245,12 +293,11 @@ func (m *model) rows() store.Delta {
 	return d
 }
 
-func listed[K comparable, T any](s shelf[K, []T], seq func(T) int64) []T {
+func listed[K comparable, T any](s shelf[K, []T]) []T {
 	var all []T
 	for _, rows := range s.all() {
 		all = append(all, rows...)
 	}
-	slices.SortStableFunc(all, func(a, b T) int { return cmp.Compare(seq(a), seq(b)) })
 	return all
 }
 

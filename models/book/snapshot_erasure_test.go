@@ -108,3 +108,28 @@ func TestFolderOfSnapshotsThatIsNotThere(t *testing.T) {
 		t.Errorf("once it is there: %d entries, %v", n, err)
 	}
 }
+
+// A program that keeps its snapshots elsewhere removes its own once it sees that another has erased somebody.
+func TestErasureByAnotherProgramReachesASnapshotElsewhere(t *testing.T) {
+	d := newDesk(t)
+	d.fill()
+	_, err := d.KeepPerson(t.Context(), d.officer, site, book.PersonForm{Code: "P1", Left: "2026-03-01"}, book.Correction{})
+	d.ok(err)
+	o := d.options()
+	o.Snapshots = t.TempDir()
+	b, err := book.Open(t.Context(), d.path, o)
+	d.ok(err)
+	t.Cleanup(func() { d.ok(b.Close()) })
+	elsewhere := &desk{T: t, Book: b, path: filepath.Join(o.Snapshots, "any"), now: d.now, officer: d.officer, op: d.op}
+	elsewhere.keep()
+	_, err = d.ErasePerson(t.Context(), d.officer, "P1")
+	d.ok(err)
+	view, err := elsewhere.Person(t.Context(), d.officer, site, "P1", nil)
+	d.ok(err)
+	if !view.Erased {
+		t.Errorf("the other program still reads %q", view.Name)
+	}
+	elsewhere.nowhere("Runa Sandoy")
+	elsewhere.keep()
+	elsewhere.nowhere("Runa Sandoy")
+}

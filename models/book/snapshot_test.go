@@ -96,7 +96,7 @@ func (d *desk) same(want *desk) {
 }
 
 func TestStartFromASnapshotIsStartFromRows(t *testing.T) {
-	d := newDesk(t)
+	d := newFileDesk(t)
 	d.fill()
 	rows, _ := d.opened()
 	d.keep()
@@ -117,7 +117,7 @@ func TestStartFromASnapshotIsStartFromRows(t *testing.T) {
 
 // Whichever bit of the file is another, the book is read from its rows, and says so.
 func TestDamagedSnapshotIsNotUsed(t *testing.T) {
-	d := newDesk(t)
+	d := newFileDesk(t)
 	d.person("P1", "Runa Sandoy", "L2")
 	d.record("training/level-2", "P1", "2026-01-15", "pass")
 	rows, _ := d.opened()
@@ -150,7 +150,7 @@ func TestDamagedSnapshotIsNotUsed(t *testing.T) {
 }
 
 func TestForeignSnapshotIsNotUsed(t *testing.T) {
-	d, other := newDesk(t), newDesk(t)
+	d, other := newFileDesk(t), newFileDesk(t)
 	d.fill()
 	d.person("P9", "Somebody", "L1")
 	other.fill()
@@ -184,7 +184,7 @@ func TestForeignSnapshotIsNotUsed(t *testing.T) {
 }
 
 func TestErasureRemovesTheSnapshot(t *testing.T) {
-	d := newDesk(t)
+	d := newFileDesk(t)
 	d.fill()
 	d.keep()
 	old, err := os.ReadFile(d.snapshot())

@@ -85,6 +85,9 @@ func (e *Engine) Asked(on civil.Day) int {
 	total := 0
 	for _, n := range overSites(e, func(s *site) int {
 		v := e.viewOf(s, Always)
+		if e.known == Always {
+			v.board = s.made.Load()
+		}
 		ed := v.edition(on)
 		if ed == nil {
 			return 0

@@ -229,6 +229,14 @@ func serverName(set settings) string {
 	return label(c)
 }
 
+// Place is how the address of a book is shown: a path as it is, a database without its password.
+func Place(address string) string {
+	if !OnServer(address) {
+		return address
+	}
+	return serverName(settings{address: address})
+}
+
 // serverTables names every table that is no part of the server itself.
 func serverTables(ctx context.Context, g *gorm.DB) ([]string, error) {
 	var names []string
