@@ -103,7 +103,7 @@ func (m *model) take(d store.Delta) error {
 		return err
 	}
 	for i, v := range d.Versions {
-		m.takeVersion(v, programs[i])
+		m.putVersion(v, programs[i])
 	}
 	for _, r := range d.People {
 		put(&m.people, r.Code, r, func(r store.PersonRow) int64 { return r.Seq }, always)
@@ -232,25 +232,12 @@ func parseAll(versions []store.VersionRow) ([]*program.Program, error) {
 	for range min(runtime.GOMAXPROCS(0), len(versions)) {
 		all.Go(func() {
 			for i := next.Add(1) - 1; int(i) < len(versions); i = next.Add(1) - 1 {
-				v := &versions[i]
-				p, err := program.Parse(v.Source)
-				if err != nil {
-					errs[i] = fmt.Errorf("version %d of the program of site %s is not readable by this program: %w", v.Number, v.Site, err)
-				}
-				out[i] = p
+				out[i], errs[i] = programOf(versions[i])
 			}
 		})
 	}
 	all.Wait()
 	return out, errors.Join(errs...)
-}
-
-func (m *model) takeVersion(v store.VersionRow, p *program.Program) {
-	p, err := programOf(v)
-	if err == nil {
-		m.putVersion(v, p)
-	}
-	return err
 }
 
 func programOf(v store.VersionRow) (*program.Program, error) {
