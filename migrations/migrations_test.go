@@ -88,19 +88,21 @@ func dump(t *testing.T, db *sql.DB) string {
 
 // Files are numbered from 1 without a hole, so that no two branches add the same number unseen.
 func TestFilesAreNumberedInARow(t *testing.T) {
-	files, err := fs.Glob(SQLite(), "*")
-	if err != nil {
-		t.Fatal(err)
-	}
 	form := regexp.MustCompile(`^(\d{5})_[a-z0-9_]+\.sql$`)
-	for i, f := range files {
-		m := form.FindStringSubmatch(f)
-		if m == nil || m[1] != fmt.Sprintf("%05d", i+1) {
-			t.Errorf("file %d is named %s", i+1, f)
+	for home, folder := range map[string]fs.FS{"SQLite": SQLite(), "PostgreSQL": Postgres()} {
+		files, err := fs.Glob(folder, "*")
+		if err != nil {
+			t.Fatal(err)
 		}
-	}
-	if len(files) == 0 {
-		t.Error("there is no migration")
+		for i, f := range files {
+			m := form.FindStringSubmatch(f)
+			if m == nil || m[1] != fmt.Sprintf("%05d", i+1) {
+				t.Errorf("file %d of %s is named %s", i+1, home, f)
+			}
+		}
+		if len(files) == 0 {
+			t.Errorf("%s has no migration", home)
+		}
 	}
 }
 
