@@ -46,7 +46,7 @@ type gapsLeaf struct {
 var gapsSheet = leafOf[gapsLeaf]("gaps")
 
 // A group is shown whole up to groupWhole gaps. Of a larger one the page with all groups shows the first
-// groupFew, those that have lasted longest.
+// groupFew, those that have lasted longest; of an owner, of whom there are few, the first groupWhole.
 const (
 	groupWhole = 12
 	groupFew   = 4
@@ -120,6 +120,10 @@ func (v *visit) gapGroups(gaps []*book.Row, by string) []gapGroup {
 
 // fillGroups cuts the groups to what is shown, names it, and dresses it.
 func (v *visit) fillGroups(p *gapsLeaf, groups []gapGroup, whole bool) error {
+	few := groupFew
+	if v.query("by") == "owner" {
+		few = groupWhole
+	}
 	var shown []bunch
 	for i := range groups {
 		g := &groups[i]
@@ -128,7 +132,7 @@ func (v *visit) fillGroups(p *gapsLeaf, groups []gapGroup, whole bool) error {
 		case whole:
 			g.rows, p.Pager = paged(v, g.rows)
 		case g.Count > groupWhole:
-			g.rows, g.More = g.rows[:groupFew], g.Count-groupFew
+			g.rows, g.More = g.rows[:few], g.Count-few
 			g.MoreURL = with(v.c.Request.URL.EscapedPath(), "by", v.query("by"), "of", g.key, "on", onQuery(v.on))
 		}
 		shown = append(shown, g.rows)

@@ -1,6 +1,7 @@
 package web
 
 import (
+	"errors"
 	"fmt"
 	"io"
 	"net/http"
@@ -136,7 +137,7 @@ func (l load) ask(client *http.Client, url string, j *jar) error {
 		return err
 	}
 	n, err := io.Copy(io.Discard, w.Body)
-	w.Body.Close()
+	err = errors.Join(err, w.Body.Close())
 	switch {
 	case err != nil:
 		return err

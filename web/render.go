@@ -95,6 +95,7 @@ func parseTemplates() (templates, error) {
 var funcs = template.FuncMap{
 	"disc":   disc,
 	"number": number,
+	"digits": func(n int) string { return grouped(int64(n)) },
 	"upper":  upperFirst,
 	"join":   strings.Join,
 	"faults": faultList,
