@@ -6,10 +6,8 @@ import (
 	"fmt"
 	"hash/crc32"
 	"io"
-	"runtime"
 	"slices"
 	"sync"
-	"sync/atomic"
 	"unsafe"
 
 	"github.com/google/uuid"
@@ -182,20 +180,14 @@ func readSnapshot(r io.Reader, h snapshotHead, m *model) error {
 // takeListed takes in what rows listed. Programs are read, the evaluator is told and the rows are put up at the
 // same time: each has its own part of the model.
 func (m *model) takeListed(d *store.Delta) error {
-	programs, errs := make([]*program.Program, len(d.Versions)), make([]error, len(d.Versions)+1)
-	var next atomic.Int64
-	var workers sync.WaitGroup
-	for range min(runtime.GOMAXPROCS(0), len(d.Versions)) {
-		workers.Go(func() {
-			for i := int(next.Add(1)) - 1; i < len(programs); i = int(next.Add(1)) - 1 {
-				programs[i], errs[i] = programOf(d.Versions[i])
-			}
-		})
-	}
-	workers.Go(func() { errs[len(programs)] = m.putListed(d) })
+	var programs []*program.Program
+	var unread, untold error
+	var others sync.WaitGroup
+	others.Go(func() { programs, unread = parseAll(d.Versions) })
+	others.Go(func() { untold = m.putListed(d) })
 	m.shelveListed(d)
-	workers.Wait()
-	if err := errors.Join(errs...); err != nil {
+	others.Wait()
+	if err := errors.Join(unread, untold); err != nil {
 		return err
 	}
 	for i, v := range d.Versions {
