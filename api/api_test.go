@@ -5,7 +5,6 @@ import (
 	"encoding/json"
 	"net/http"
 	"net/http/httptest"
-	"path/filepath"
 	"strings"
 	"testing"
 	"time"
@@ -13,6 +12,7 @@ import (
 
 	"github.com/gin-gonic/gin"
 
+	"lodebook/migrations/scratch"
 	"lodebook/models/book"
 )
 
@@ -29,7 +29,7 @@ items:
 func served(t *testing.T) http.Handler {
 	t.Helper()
 	now := func() time.Time { return time.Date(2026, 3, 2, 9, 0, 0, 0, time.UTC) }
-	b, err := book.Create(t.Context(), filepath.Join(t.TempDir(), "site.book"), book.Options{Clock: now, Random: rand.Reader})
+	b, err := book.Create(t.Context(), scratch.Book(t), book.Options{Clock: now, Random: rand.Reader})
 	if err != nil {
 		t.Fatal(err)
 	}

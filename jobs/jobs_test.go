@@ -5,13 +5,13 @@ import (
 	"crypto/rand"
 	"errors"
 	"log/slog"
-	"path/filepath"
 	"slices"
 	"strings"
 	"testing"
 	"time"
 	_ "time/tzdata"
 
+	"lodebook/migrations/scratch"
 	"lodebook/models/book"
 )
 
@@ -34,9 +34,11 @@ type bench struct {
 	now  time.Time
 }
 
-func newBench(t *testing.T, now time.Time) *bench {
+func newBench(t *testing.T, now time.Time) *bench { return benchAt(t, now, scratch.Book(t)) }
+
+func benchAt(t *testing.T, now time.Time, address string) *bench {
 	t.Helper()
-	x := &bench{T: t, now: now, path: filepath.Join(t.TempDir(), "site.book")}
+	x := &bench{T: t, now: now, path: address}
 	b, err := book.Create(t.Context(), x.path, x.options())
 	x.ok(err)
 	x.b = b

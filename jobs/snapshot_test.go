@@ -2,6 +2,7 @@ package jobs
 
 import (
 	"os"
+	"path/filepath"
 	"strings"
 	"testing"
 	"time"
@@ -10,7 +11,7 @@ import (
 )
 
 func TestSnapshotIsWrittenOncePerThousandEntries(t *testing.T) {
-	x := newBench(t, time.Date(2026, 3, 2, 9, 0, 0, 0, time.UTC))
+	x := benchAt(t, time.Date(2026, 3, 2, 9, 0, 0, 0, time.UTC), filepath.Join(t.TempDir(), "site.book"))
 	x.turn()
 	file := x.path + ".snapshot"
 	first, err := os.ReadFile(file)

@@ -6,7 +6,6 @@ import (
 	"net/http/httptest"
 	"net/url"
 	"os"
-	"path/filepath"
 	"strings"
 	"testing"
 	"time"
@@ -14,6 +13,7 @@ import (
 
 	"golang.org/x/net/html"
 
+	"lodebook/migrations/scratch"
 	"lodebook/models/book"
 )
 
@@ -36,7 +36,7 @@ const fell = "FELL"
 func newHouse(t testing.TB) *house {
 	t.Helper()
 	h := &house{TB: t, now: time.Date(2026, 12, 1, 8, 0, 0, 0, time.UTC), op: book.SystemOperator("ops"), actors: map[book.Role]book.Actor{}, jars: map[book.Role]*jar{}}
-	h.path = filepath.Join(t.TempDir(), "site.book")
+	h.path = scratch.Book(t)
 	b, err := book.Create(t.Context(), h.path, h.options())
 	h.ok(err)
 	h.b = b

@@ -41,6 +41,7 @@ type commands struct {
 	Job      jobCommand      `cmd:"" help:"Run one scheduled job now."`
 	Backup   backupCommand   `cmd:"" help:"A consistent copy of a live book."`
 	Restore  restoreCommand  `cmd:"" help:"Put a verified copy in the place of a book."`
+	Move     moveCommand     `cmd:"" help:"Copy a book from a file to a PostgreSQL database, or back."`
 	Erase    eraseCommand    `cmd:"" help:"Make a person's names and the texts about them unreadable for good."`
 	User     userCommand     `cmd:"" help:"Accounts: add, list, disable, role, link."`
 	Schema   schemaCommand   `cmd:"" help:"The JSON Schema of the program file."`
@@ -140,7 +141,7 @@ func (a *app) fail(err error) int {
 
 // bookFlag names the book that a command works on.
 type bookFlag struct {
-	Book string `required:"" env:"LODEBOOK_BOOK" help:"Path of the book." placeholder:"site.book"`
+	Book string `required:"" env:"LODEBOOK_BOOK" help:"Path of the book, or the address of its PostgreSQL database." placeholder:"site.book"`
 }
 
 // asFlag names the account that writes.
@@ -179,7 +180,7 @@ func (a *app) reading() func(rows, entries int64) {
 
 // open opens the book and gives it to fn.
 func (a *app) open(f bookFlag, fn func(b *book.Book) error) error {
-	if err := pathOnly(f.Book); err != nil {
+	if err := named("--book", f.Book); err != nil {
 		return err
 	}
 	return a.openWith(f, a.options(), fn)
@@ -187,7 +188,7 @@ func (a *app) open(f bookFlag, fn func(b *book.Book) error) error {
 
 // openSite opens of a book what answers about one site need, to read it.
 func (a *app) openSite(f bookFlag, site string, fn func(b *book.Book) error) error {
-	if err := pathOnly(f.Book); err != nil {
+	if err := named("--book", f.Book); err != nil {
 		return err
 	}
 	o := a.options()
@@ -203,15 +204,13 @@ func (a *app) openWith(f bookFlag, o book.Options, fn func(b *book.Book) error) 
 	return errors.Join(fn(b), b.Close())
 }
 
-// pathOnly refuses an empty name, and an address where only a file will do.
-func pathOnly(path string) error {
-	if path == "" {
+// named refuses an empty name of a book.
+func named(flag, book string) error {
+	if book == "" && flag == "--book" {
 		return &exit{exitUsage, errors.New("--book: name the book, or set LODEBOOK_BOOK")}
 	}
-	for _, scheme := range []string{"postgres://", "postgresql://"} {
-		if len(path) > len(scheme) && path[:len(scheme)] == scheme {
-			return fmt.Errorf("--book: found a PostgreSQL address; this version keeps its books in SQLite files, so name a path such as site.book")
-		}
+	if book == "" {
+		return &exit{exitUsage, fmt.Errorf("%s: name the book", flag)}
 	}
 	return nil
 }

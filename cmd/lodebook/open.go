@@ -3,7 +3,6 @@ package main
 import (
 	"errors"
 	"fmt"
-	"io/fs"
 	"os"
 
 	"lodebook/models/book"
@@ -31,17 +30,17 @@ func (c *openCommand) Run(a *app) error {
 	if _, err := program.Parse(source); err != nil {
 		return err
 	}
-	if err := pathOnly(c.Book); err != nil {
+	if err := named("--book", c.Book); err != nil {
 		return err
 	}
-	_, err = os.Stat(c.Book)
+	there, err := book.IsThere(a.ctx, c.Book)
 	switch {
-	case errors.Is(err, fs.ErrNotExist):
-		return c.create(a, source)
 	case err != nil:
 		return err
+	case !there:
+		return c.create(a, source)
 	case c.Code != "":
-		return fmt.Errorf("--book: %s exists; --code makes a new book, so name a path where there is none, or add a site with --program", c.Book)
+		return fmt.Errorf("--book: %s exists; --code makes a new book, so name a path where there is none, or add a site with --program", book.Place(c.Book))
 	}
 	return a.open(c.bookFlag, func(b *book.Book) error { return c.openIn(a, b, source) })
 }
@@ -70,17 +69,7 @@ func (c *openCommand) create(a *app, source []byte) error {
 		err = c.firstAdministrator(a, b)
 	}
 	if err = errors.Join(err, b.Close()); err != nil {
-		return errors.Join(err, removeBook(c.Book))
-	}
-	return nil
-}
-
-// removeBook deletes a book that was just made and its side files.
-func removeBook(path string) error {
-	for _, p := range []string{path, path + "-wal", path + "-shm"} {
-		if err := os.Remove(p); err != nil && !errors.Is(err, fs.ErrNotExist) {
-			return err
-		}
+		return errors.Join(err, book.Discard(a.ctx, c.Book))
 	}
 	return nil
 }

@@ -9,7 +9,7 @@ import (
 // TestBooksThatAreNone opens what is no book, or no longer one: a sentence each, never a trace.
 func TestBooksThatAreNone(t *testing.T) {
 	s := newShell(t)
-	good := s.site()
+	good := s.siteInFile()
 	whole, err := os.ReadFile(good)
 	if err != nil {
 		t.Fatal(err)
@@ -43,7 +43,7 @@ func TestBooksThatAreNone(t *testing.T) {
 // TestTamperedBookFailsVerify changes one byte of an entry behind the book's back.
 func TestTamperedBookFailsVerify(t *testing.T) {
 	s := newShell(t)
-	b := s.site()
+	b := s.siteInFile()
 	s.must(0, "verify", b)
 	whole, err := os.ReadFile(b)
 	if err != nil {

@@ -123,9 +123,12 @@ func (d *desk) try(table, csv string, o book.ImportOptions) (book.ImportReport, 
 	return d.Import(d.Context(), d.op, o)
 }
 
-// bytesOf reads the book's file and its side files.
+// bytesOf reads the book's file and its side files, or every table of its database.
 func (d *desk) bytesOf() []byte {
 	d.Helper()
+	if driverOf(d.path) == "pgx" {
+		return d.tables()
+	}
 	var all []byte
 	for _, p := range []string{d.path, d.path + "-wal", d.path + "-shm"} {
 		b, err := os.ReadFile(p)
@@ -454,6 +457,26 @@ func (d *desk) rawSQL(statement string) {
 }
 
 func bookQuery() book.StandingQuery { return book.StandingQuery{Site: site} }
+
+// tables are all rows of a book's database as text, with bytes as the characters that they are.
+func (d *desk) tables() []byte {
+	d.Helper()
+	db, err := sql.Open("pgx", d.path)
+	d.ok(err)
+	db.SetMaxOpenConns(1)
+	_, err = db.Exec("SET bytea_output = 'escape'")
+	d.ok(err)
+	var names string
+	d.ok(db.QueryRow("SELECT string_agg(tablename, ' ') FROM pg_tables WHERE schemaname = 'public'").Scan(&names))
+	var all []byte
+	for _, name := range strings.Fields(names) {
+		var text string
+		d.ok(db.QueryRow("SELECT COALESCE(string_agg(CAST(t AS text), ' '), '') FROM " + name + " AS t").Scan(&text))
+		all = append(all, text...)
+	}
+	d.ok(db.Close())
+	return all
+}
 
 // driverOf is the database/sql driver for a book's address.
 func driverOf(address string) string {

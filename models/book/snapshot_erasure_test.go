@@ -13,7 +13,7 @@ import (
 // What is told of somebody in a snapshot is forgotten with them, whichever value it is: it is in no file, and one
 // from before the erasure that turns up again does not bring it back, neither here nor into the next snapshot.
 func TestNothingOfAnErasedPersonComesBackFromASnapshot(t *testing.T) {
-	d := newDesk(t)
+	d := newFileDesk(t)
 	ctx := t.Context()
 	secrets := []string{"Ragna Vestgard", "ragna@mail.example", "BADGE-7781", "Hidden Ferry Works", "ragna-signs-in"}
 	_, err := d.KeepPerson(ctx, d.officer, site, book.PersonForm{
@@ -65,7 +65,7 @@ func TestNothingOfAnErasedPersonComesBackFromASnapshot(t *testing.T) {
 
 // Whoever erases somebody by another name of the book's file removes the same snapshot.
 func TestErasureByAnotherNameOfTheFile(t *testing.T) {
-	d := newDesk(t)
+	d := newFileDesk(t)
 	d.fill()
 	_, err := d.KeepPerson(t.Context(), d.officer, site, book.PersonForm{Code: "P1", Left: "2026-03-01"}, book.Correction{})
 	d.ok(err)
@@ -88,7 +88,7 @@ func TestErasureByAnotherNameOfTheFile(t *testing.T) {
 
 // A folder for snapshots that is not there keeps nobody from being erased, and starts nothing.
 func TestFolderOfSnapshotsThatIsNotThere(t *testing.T) {
-	d := newDesk(t)
+	d := newFileDesk(t)
 	d.person("P1", "Runa Sandoy", "L2")
 	_, err := d.KeepPerson(t.Context(), d.officer, site, book.PersonForm{Code: "P1", Left: "2026-03-01"}, book.Correction{})
 	d.ok(err)
@@ -111,7 +111,7 @@ func TestFolderOfSnapshotsThatIsNotThere(t *testing.T) {
 
 // A program that keeps its snapshots elsewhere removes its own once it sees that another has erased somebody.
 func TestErasureByAnotherProgramReachesASnapshotElsewhere(t *testing.T) {
-	d := newDesk(t)
+	d := newFileDesk(t)
 	d.fill()
 	_, err := d.KeepPerson(t.Context(), d.officer, site, book.PersonForm{Code: "P1", Left: "2026-03-01"}, book.Correction{})
 	d.ok(err)

@@ -179,7 +179,7 @@ func TestSnapshotAndWhatCameAfterAreTheBook(t *testing.T) {
 	after := map[string]int{}
 	for seed := range uint64(8) {
 		t.Run(fmt.Sprint(seed), func(t *testing.T) {
-			d := newDesk(t)
+			d := newFileDesk(t)
 			s := &scribe{desk: d, Rand: rand.New(rand.NewPCG(seed, 1)), done: map[string]int{}}
 			s.write(20 + s.IntN(60))
 			if s.IntN(2) == 0 {
