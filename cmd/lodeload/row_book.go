@@ -171,7 +171,7 @@ func (b *bench) durableRow(path string, n *network.Network) (*contest, error) {
 			if err == nil && after-before != written.Load() {
 				err = fmt.Errorf("%d records were written and %d are in the book", written.Load(), after-before)
 			}
-			return errors.Join(err, k.Close(), hand.db.Close())
+			return errors.Join(err, k.Close(), hand.close())
 		},
 	}, err
 }
@@ -221,13 +221,23 @@ func byHand(path string) (*handWriter, error) {
 			break
 		}
 		var s *sql.Stmt
-		s, err = db.Prepare(text)
+		s, err = db.Prepare(text) //nolint:sqlclosecheck // close closes it
 		h.statements = append(h.statements, s)
 	}
 	if err != nil {
-		return nil, errors.Join(err, db.Close())
+		return nil, errors.Join(err, h.close())
 	}
 	return h, nil
+}
+
+func (h *handWriter) close() error {
+	var errs []error
+	for _, s := range h.statements {
+		if s != nil {
+			errs = append(errs, s.Close())
+		}
+	}
+	return errors.Join(append(errs, h.db.Close())...)
 }
 
 func (h *handWriter) write(site, person, on string) error {
@@ -242,7 +252,7 @@ func (h *handWriter) write(site, person, on string) error {
 		{2 * seq, make([]byte, 32), 2*seq + 1, make([]byte, 32)},
 		{seq, id, seq, site, person, on},
 	} {
-		if _, err := tx.Stmt(h.statements[i]).Exec(args...); err != nil {
+		if _, err := tx.Stmt(h.statements[i]).Exec(args...); err != nil { //nolint:sqlclosecheck // it is closed with its transaction
 			return errors.Join(err, tx.Rollback())
 		}
 	}
