@@ -76,7 +76,7 @@ func (p server) config() (*pgx.ConnConfig, error) {
 		c.RuntimeParams["application_name"] = "lodebook"
 	}
 	if c.ConnectTimeout == 0 {
-		c.ConnectTimeout = p.busy
+		c.ConnectTimeout = waits
 	}
 	c.ValidateConnect = pgconn.ValidateConnectTargetSessionAttrsPrimary
 	return c, nil
