@@ -141,7 +141,8 @@ func (a *app) fail(err error) int {
 
 // bookFlag names the book that a command works on.
 type bookFlag struct {
-	Book string `required:"" env:"LODEBOOK_BOOK" help:"Path of the book, or the address of its PostgreSQL database." placeholder:"site.book"`
+	Book      string `required:"" env:"LODEBOOK_BOOK" help:"Path of the book, or the address of its PostgreSQL database." placeholder:"site.book"`
+	Snapshots string `env:"LODEBOOK_SNAPSHOTS" type:"existingdir" help:"Folder for the snapshots from which the next start is quick; default: beside a file, and none of a database." placeholder:"DIR"`
 }
 
 // asFlag names the account that writes.
@@ -197,6 +198,7 @@ func (a *app) openSite(f bookFlag, site string, fn func(b *book.Book) error) err
 }
 
 func (a *app) openWith(f bookFlag, o book.Options, fn func(b *book.Book) error) error {
+	o.Snapshots = f.Snapshots
 	b, err := book.Open(a.ctx, f.Book, o)
 	if err != nil {
 		return err

@@ -27,7 +27,7 @@ func TestSnapshotIsLeftAtStop(t *testing.T) {
 	ctx, stop := context.WithCancel(t.Context())
 	var words bytes.Buffer
 	a := &app{ctx: ctx, stdout: &words, stderr: &words, clock: func() time.Time { return s.now }}
-	err := a.open(bookFlag{path}, func(b *book.Book) error {
+	err := a.open(bookFlag{Book: path}, func(b *book.Book) error {
 		flags := &serveFlags{Listen: "127.0.0.1:0"}
 		return flags.serve(a, b, func(string) error { stop(); return nil })
 	})
@@ -51,5 +51,20 @@ func TestSnapshotIsLeftAtStop(t *testing.T) {
 	s.now = s.now.AddDate(0, 0, 1)
 	if _, words := s.must(exitDone, "job", "snapshot", "--book", path); !strings.Contains(words, "snapshot at QUAY: written, of ") {
 		t.Errorf("the job said %q of a damaged snapshot", words)
+	}
+}
+
+// With --snapshots they lie in that folder and not beside the book; a folder that is not there is wrong usage.
+func TestSnapshotsLieWhereTheyAreTold(t *testing.T) {
+	s := newShell(t)
+	path, dir := filepath.Join(s.dir, "kept.book"), t.TempDir()
+	s.must(exitDone, "open", "--book", path, "--program", s.file("site.yaml", siteFile))
+	s.must(exitUsage, "job", "snapshot", "--book", path, "--snapshots", filepath.Join(dir, "none"))
+	s.must(exitDone, "job", "snapshot", "--book", path, "--snapshots", dir)
+	if found, err := os.ReadDir(dir); err != nil || len(found) != 1 {
+		t.Errorf("the folder holds %v: %v", found, err)
+	}
+	if _, err := os.Stat(path + ".snapshot"); !errors.Is(err, fs.ErrNotExist) {
+		t.Errorf("there is one beside the book too: %v", err)
 	}
 }

@@ -25,7 +25,7 @@ func (c *verifyCommand) Run(a *app) error {
 	if strings.HasSuffix(c.What, ".zip") {
 		return errors.New("this version verifies books; it makes and checks no dossiers yet")
 	}
-	return a.open(bookFlag{c.What}, func(b *book.Book) error {
+	return a.open(bookFlag{Book: c.What}, func(b *book.Book) error {
 		r, err := b.Verify(a.ctx, nil)
 		if err != nil {
 			return err
