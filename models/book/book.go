@@ -164,7 +164,10 @@ func (b *Book) catchUp(tx *store.Tx) error {
 		return err
 	}
 	b.publish(next)
-	return nil
+	if m.head == 0 {
+		return nil
+	}
+	return b.forgetErased(tx, m.head)
 }
 
 // takeAfter takes in what the transaction sees behind the model's head.

@@ -275,6 +275,27 @@ func (b *Book) removeSnapshots() error {
 	return b.removeSnapshotFiles(false)
 }
 
+// forgetErased removes the snapshot if somebody was erased by an entry from that one on: another program, which
+// did it, may not know where this one keeps its snapshots. It waits for no snapshot that is being written: of
+// that one too the file is gone before it can be put in place.
+func (b *Book) forgetErased(tx *store.Tx, from int64) error {
+	if b.snapshots.path == "" {
+		return nil
+	}
+	kinds, err := tx.KindVersions(from - 1)
+	if err != nil {
+		return err
+	}
+	if _, erased := kinds[kindErasure]; !erased {
+		return nil
+	}
+	if err := b.removeSnapshotFiles(false); err != nil {
+		// What is read is right all the same.
+		b.snapshots.tell(fmt.Sprintf("Somebody was erased, and the snapshot that has their name could not be removed: %v.", err))
+	}
+	return nil
+}
+
 // removeSnapshotFiles removes the files that begin like the snapshot's, or only those beside it. The snapshot is
 // the last: until those beside it are gone, another program may put one of them in its place.
 func (b *Book) removeSnapshotFiles(beside bool) error {
