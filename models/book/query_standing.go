@@ -104,8 +104,8 @@ func (m *model) view(code string, on *civil.Day, k int64, now time.Time) (*siteO
 	in := s.on(v.on)
 	p := in.program
 	v.SiteView = SiteView{Code: code, Name: p.Site.Name, TimeZone: p.Site.TimeZone, Location: zone, Today: v.Today, Program: p, Version: in.row.Number}
-	v.People = len(m.engine.Subjects(code, program.AsksPerson, v.on, k))
-	v.Fixtures = len(m.engine.Subjects(code, program.AsksFixture, v.on, k))
+	v.People = m.engine.SubjectCount(code, program.AsksPerson, v.on, k)
+	v.Fixtures = m.engine.SubjectCount(code, program.AsksFixture, v.on, k)
 	return v, nil
 }
 
@@ -202,12 +202,11 @@ func (v *siteOn) subjectNote(s standing.Subject) string {
 	var parts []string
 	switch s.Asks {
 	case program.AsksPerson:
-		p := v.m.engine.Profile(v.Code, s, v.on, v.k)
-		if e, ok := p.Facts["employer"].(string); ok {
+		if e := v.texts("employer", s)[0]; e != "" {
 			parts = append(parts, e)
 		}
-		if p.Crew != "" {
-			parts = append(parts, cmp.Or(named(v.Program.Crew(p.Crew)), p.Crew))
+		if crew := v.texts(factCrew, s)[0]; crew != "" {
+			parts = append(parts, cmp.Or(named(v.Program.Crew(crew)), crew))
 		}
 	case program.AsksFixture:
 		f, _ := v.m.fixture(v.Code, s.Code)
@@ -215,8 +214,8 @@ func (v *siteOn) subjectNote(s standing.Subject) string {
 			parts = append(parts, s.Code)
 		}
 		parts = append(parts, v.kindName(f.Kind))
-		if p := v.m.engine.Profile(v.Code, s, v.on, v.k); p.Zone != "" {
-			parts = append(parts, "Zone "+p.Zone)
+		if zone := v.texts(factZone, s)[0]; zone != "" {
+			parts = append(parts, "Zone "+zone)
 		}
 	case program.AsksCrew:
 		parts = append(parts, plural(v.crewSize(s.Code), "person", "people"))
@@ -224,12 +223,22 @@ func (v *siteOn) subjectNote(s standing.Subject) string {
 	return strings.Join(parts, ", ")
 }
 
+// texts are the values of a fact of subjects of one kind, empty where there is none: a look at each, where
+// all that selectors read of a subject is dear to derive.
+func (v *siteOn) texts(fact string, of ...standing.Subject) []string {
+	out := make([]string, len(of))
+	for i, x := range v.m.engine.Facts(v.Code, fact, of, v.on, v.k) {
+		out[i], _ = x.(string)
+	}
+	return out
+}
+
 // crewSize is the number of people on staff in a crew.
 func (v *siteOn) crewSize(crew string) int {
 	if v.crews == nil {
 		v.crews = map[string]int{}
-		for _, x := range v.m.engine.Subjects(v.Code, program.AsksPerson, v.on, v.k) {
-			v.crews[v.m.engine.Profile(v.Code, x, v.on, v.k).Crew]++
+		for _, crew := range v.texts(factCrew, v.m.engine.Subjects(v.Code, program.AsksPerson, v.on, v.k)...) {
+			v.crews[crew]++
 		}
 	}
 	return v.crews[crew]

@@ -158,7 +158,7 @@ func (b *Book) Named(ctx context.Context, actor Actor, site string, on *civil.Da
 			if own && s != (standing.Subject{Asks: program.AsksPerson, Code: actor.Person}) {
 				return &Denied{Action: SeeSite, Role: actor.Role}
 			}
-			rows[i].SubjectName, rows[i].SubjectNote = v.briefly(s)
+			rows[i].SubjectName, rows[i].SubjectNote = v.nameAndNote(s)
 		}
 		return nil
 	})
@@ -177,30 +177,4 @@ func (m *model) names(code string, on *civil.Day, now time.Time) (*siteOn, error
 	p := s.on(v.on).program
 	v.SiteView = SiteView{Code: code, Name: p.Site.Name, Program: p}
 	return v, nil
-}
-
-// briefly is nameAndNote with a look at the facts that the note says, where the rest of what selectors
-// read of a subject is dear to derive.
-func (v *siteOn) briefly(s standing.Subject) (name, note string) {
-	texts := func(code string, of ...standing.Subject) []string {
-		out := make([]string, len(of))
-		for i, x := range v.m.engine.Facts(v.Code, code, of, v.on, v.k) {
-			out[i], _ = x.(string)
-		}
-		return out
-	}
-	switch s.Asks {
-	case program.AsksPerson:
-		crew := texts("crew", s)[0]
-		note := []string{texts("employer", s)[0], cmp.Or(named(v.Program.Crew(crew)), crew)}
-		return v.subjectName(s), strings.Join(slices.DeleteFunc(note, func(x string) bool { return x == "" }), ", ")
-	case program.AsksCrew:
-		if v.crews == nil {
-			v.crews = map[string]int{}
-			for _, crew := range texts("crew", v.m.engine.Subjects(v.Code, program.AsksPerson, v.on, v.k)...) {
-				v.crews[crew]++
-			}
-		}
-	}
-	return v.nameAndNote(s)
 }

@@ -82,7 +82,23 @@ func (e *Engine) Subjects(site string, asks program.Asks, on civil.Day, k int64)
 	return out
 }
 
+// SubjectCount is how many subjects Subjects lists.
+func (e *Engine) SubjectCount(site string, asks program.Asks, on civil.Day, k int64) int {
+	v, err := e.view(site, k)
+	if err != nil {
+		return 0
+	}
+	return len(v.here(asks, on))
+}
+
 func (v *view) present(asks program.Asks, on civil.Day) []presence {
+	out := v.here(asks, on)
+	slices.SortFunc(out, func(a, b presence) int { return cmp.Compare(a.subject.Code, b.subject.Code) })
+	return out
+}
+
+// here are the subjects that exist on the day, in no order.
+func (v *view) here(asks program.Asks, on civil.Day) []presence {
 	var out []presence
 	if hasStints(asks) {
 		for _, no := range v.site.ofKind[asks] {
@@ -97,7 +113,6 @@ func (v *view) present(asks program.Asks, on civil.Day) []presence {
 			}
 		}
 	}
-	slices.SortFunc(out, func(a, b presence) int { return cmp.Compare(a.subject.Code, b.subject.Code) })
 	return out
 }
 
