@@ -102,10 +102,12 @@ func (e *Engine) board(s *site) *board {
 
 func (e *Engine) newBoard(s *site) *board {
 	v := e.viewOf(s, e.known)
-	b := &board{own: e.own, rowsOwn: e.own, plan: newPlan(v.reigns, e.kinds.number), present: noDay, rowOf: make([][]int32, len(s.locals))}
+	// It is nobody's: readers of several forks may share it, so whoever writes on it copies first.
+	own := &owner{}
+	b := &board{own: own, rowsOwn: own, plan: newPlan(v.reigns, e.kinds.number), present: noDay, rowOf: make([][]int32, len(s.locals))}
 	b.tracks = make([]*track, len(b.plan.items))
 	for i, code := range b.plan.items {
-		b.tracks[i] = &track{own: e.own, item: code}
+		b.tracks[i] = &track{own: own, item: code}
 		for _, r := range v.reigns {
 			b.tracks[i].judged = append(b.tracks[i].judged, r.byCode[code])
 		}
@@ -123,7 +125,7 @@ func (e *Engine) newBoard(s *site) *board {
 				}
 				segments = v.segments(code, l, segments[:0])
 				if course = v.course(code, l, segments, course[:0]); len(course) > 0 {
-					b.addRow(e.own, i, v.askingOf(int32(no), segments), course)
+					b.addRow(own, i, v.askingOf(int32(no), segments), course)
 				}
 			}
 		}

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math/rand/v2"
 	"slices"
+	"sync"
 	"testing"
 
 	"pgregory.net/rapid"
@@ -213,4 +214,42 @@ func TestBoardIsKeptEvenly(t *testing.T) {
 			w.checkKept(t)
 		}
 	})
+}
+
+// A board that readers make of an engine after it was forked is not that of the fork, and what the fork
+// makes is not theirs: neither has what the other has not, and neither is written on by the other.
+func TestBoardOfAForkIsItsOwn(t *testing.T) {
+	for seed := range uint64(40) {
+		w := &world{pick: rand.New(rand.NewPCG(seed, 9)).IntN}
+		w.make()
+		e, before := w.puts(), w.puts() // no board is made
+		f := e.Fork()
+		w.record()
+		r := w.n.records[len(w.n.records)-1]
+		f.PutRecord(r)
+		var readers sync.WaitGroup
+		days := make([]civil.Day, 20)
+		for i := range days {
+			days[i] = base + civil.Day(i*40)
+		}
+		readers.Go(func() {
+			for _, on := range days {
+				got, _ := e.Counts("S", on)
+				if want, _ := before.Counts("S", on); fmt.Sprint(got) != fmt.Sprint(want) {
+					t.Errorf("seed %d on %v: the engine counts %v, and %v before it was forked", seed, on, got, want)
+				}
+			}
+		})
+		f.Build()
+		f.Turn("S", base)
+		fresh := w.puts() // with the record
+		for _, on := range days {
+			f.Turn("S", on)
+			got, _ := f.Counts("S", on)
+			if want, _ := fresh.Counts("S", on); fmt.Sprint(got) != fmt.Sprint(want) {
+				t.Errorf("seed %d on %v: the fork counts %v, want %v", seed, on, got, want)
+			}
+		}
+		readers.Wait()
+	}
 }

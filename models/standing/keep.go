@@ -16,10 +16,9 @@ func (e *Engine) happenedTo(site string, p *past, l *local, c change) {
 		return
 	}
 	for _, h := range p.homes {
-		if s := e.sites[h.site]; s.made.Load() != nil {
-			s = e.ownedSite(h.site)
-			e.changed(s, s.locals[h.local], c)
-		}
+		// Owned also where no board is made: a reader of the engine before may be making one, without the change.
+		s := e.ownedSite(h.site)
+		e.changed(s, s.locals[h.local], c)
 	}
 }
 
