@@ -183,3 +183,8 @@ func BenchmarkAsOf(b *testing.B)   { benchRow(b, asOfRows) }
 func BenchmarkToday(b *testing.B)  { benchRow(b, todayRows) }
 func BenchmarkOver(b *testing.B)   { benchRow(b, overRows) }
 func BenchmarkRecord(b *testing.B) { benchRow(b, recordRows) }
+func BenchmarkScan(b *testing.B)   { benchRow(b, scanRows) }
+func BenchmarkSelect(b *testing.B) { benchRow(b, selectRows) }
+func BenchmarkMemory(b *testing.B) { benchRow(b, memoryRows) }
+func BenchmarkBook(b *testing.B)   { benchRow(b, bookRows) }
+func BenchmarkPages(b *testing.B)  { benchRow(b, pageRows) }

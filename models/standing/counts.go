@@ -10,6 +10,7 @@ import (
 	"sync/atomic"
 
 	"lodebook/models/civil"
+	"lodebook/models/program"
 )
 
 // Words are the standings in the order in which a Tally counts them.
@@ -49,18 +50,25 @@ func (e *Engine) Counts(site string, on civil.Day) (SiteCount, error) {
 
 // AllCounts counts the standings of every site that has a version, in order of code, over all cores.
 func (e *Engine) AllCounts(on civil.Day) []SiteCount {
-	return overSites(e, func(s *site) SiteCount { return e.board(s).counts(s.code, on) })
+	return overSites(e, func(s *site, _ *worker) SiteCount { return e.board(s).counts(s.code, on) })
 }
 
 // Build makes ready what counts and histories of all sites are taken from, over all cores. Without it, each
 // site's is made when it is first asked for.
 func (e *Engine) Build() {
-	overSites(e, func(s *site) *board { return e.board(s) })
+	overSites(e, func(s *site, _ *worker) *board { return e.board(s) })
+}
+
+// worker is what one core remembers from site to site: what selectors said, which sites of like programs
+// share.
+type worker struct {
+	answers   map[*program.Selector]*answers
+	selectors map[string]*selectors
 }
 
 // overSites calls fn for every site that has a version, over all cores, and gives what it gave in
 // order of the sites' codes.
-func overSites[T any](e *Engine, fn func(*site) T) []T {
+func overSites[T any](e *Engine, fn func(*site, *worker) T) []T {
 	var sites []*site
 	for _, s := range e.sites {
 		if len(s.editions) > 0 {
@@ -73,8 +81,9 @@ func overSites[T any](e *Engine, fn func(*site) T) []T {
 	var all sync.WaitGroup
 	for range min(runtime.GOMAXPROCS(0), len(sites)) {
 		all.Go(func() {
+			w := &worker{answers: map[*program.Selector]*answers{}, selectors: map[string]*selectors{}}
 			for i := next.Add(1) - 1; int(i) < len(sites); i = next.Add(1) - 1 {
-				out[i] = fn(sites[i])
+				out[i] = fn(sites[i], w)
 			}
 		})
 	}
@@ -107,7 +116,7 @@ func (c *SiteCount) add(item string, n *counter) {
 // Recount counts the standings of the present day of every site by looking at each obligation: what
 // AllCounts has at hand is then the same. Sites without a present day are left out.
 func (e *Engine) Recount() []SiteCount {
-	all := overSites(e, func(s *site) SiteCount {
+	all := overSites(e, func(s *site, _ *worker) SiteCount {
 		c, b := SiteCount{Site: s.code}, e.board(s)
 		if b.present == noDay {
 			return c
@@ -229,7 +238,7 @@ func (e *Engine) AllCountsOver(from, to civil.Day, fn func(SiteCourse)) error {
 		return fmt.Errorf("the period ends on %v, before it begins on %v", to, from)
 	}
 	var sweeps sync.Pool
-	overSites(e, func(s *site) bool {
+	overSites(e, func(s *site, _ *worker) bool {
 		w, ok := sweeps.Get().(*sweep)
 		if !ok {
 			w = newSweep(from, to)

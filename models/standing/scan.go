@@ -1,9 +1,12 @@
 package standing
 
 import (
+	"fmt"
+	"slices"
 	"unsafe"
 
 	"lodebook/models/civil"
+	"lodebook/models/program"
 )
 
 // Bytes is how large the columns are in which the engine keeps what it judges by: the records with the identifiers of their entries, and of
@@ -66,7 +69,7 @@ func (e *Engine) ScanNow() int64 {
 
 func (e *Engine) scan(fn func(*track) int64) int64 {
 	var sum int64
-	for _, n := range overSites(e, func(s *site) int64 {
+	for _, n := range overSites(e, func(s *site, _ *worker) int64 {
 		var of int64
 		for _, t := range e.board(s).tracks {
 			of += fn(t)
@@ -78,37 +81,104 @@ func (e *Engine) scan(fn func(*track) int64) int64 {
 	return sum
 }
 
-// Asked counts, for every site over all cores, to how many present subjects each item's selector applies
-// on a day, by all that is recorded: the pass of the selectors alone, in which each is judged once for
-// each different set of the facts that it reads.
+// Asked counts, for every site over all cores, how many present subjects each item is asked of on a day, by all
+// that is recorded: the pass of the selectors alone. Of each kind of subject, all selectors together are judged
+// once for each different set of what they read.
 func (e *Engine) Asked(on civil.Day) int {
 	total := 0
-	for _, n := range overSites(e, func(s *site) int {
-		v := e.viewOf(s, Always)
-		if e.known == Always {
-			v.board = s.made.Load()
-		}
-		ed := v.edition(on)
-		if ed == nil {
-			return 0
-		}
-		of := 0
-		for _, l := range s.locals {
-			if _, here := v.presence(l, on); !here {
-				continue
-			}
-			for _, item := range ed.items {
-				if item.Asks != l.subject.Asks {
-					continue
-				}
-				if yes, err := v.matches(item, l, on); yes && err == nil {
-					of++
-				}
-			}
-		}
-		return of
-	}) {
+	for _, n := range overSites(e, func(s *site, w *worker) int { return e.asked(s, on, w) }) {
 		total += n
 	}
 	return total
+}
+
+func (e *Engine) asked(s *site, on civil.Day, w *worker) int {
+	v := e.viewOf(s, e.known)
+	v.board, v.answers = s.made.Load(), w.answers
+	ed := v.edition(on)
+	if ed == nil {
+		return 0
+	}
+	of := map[program.Asks]*selectors{}
+	total := 0
+	for _, l := range s.locals {
+		if _, here := v.presence(l, on); !here {
+			continue
+		}
+		asks := l.subject.Asks
+		if of[asks] == nil {
+			of[asks] = w.of(ed.items, asks)
+		}
+		total += of[asks].count(v, l, on)
+	}
+	return total
+}
+
+// selectors are those of the items that ask a kind of subject.
+type selectors struct {
+	always int                 // items without one
+	fields []string            // that those of together read
+	all    []*program.Selector // that go by fields that many subjects have alike
+	alone  []*program.Selector // that do not
+	known  map[string]int      // how many of all match, by the fields
+	key    []byte
+}
+
+// of gives the selectors of the items that ask a kind of subject: the same for programs whose selectors are.
+func (w *worker) of(items []*program.Item, asks program.Asks) *selectors {
+	key := []byte(asks)
+	for _, item := range items {
+		if item.Asks == asks {
+			key = fmt.Appendf(key, " %p", item.When)
+		}
+	}
+	s := w.selectors[string(key)]
+	if s == nil {
+		s = newSelectors(items, asks)
+		w.selectors[string(key)] = s
+	}
+	return s
+}
+
+func newSelectors(items []*program.Item, asks program.Asks) *selectors {
+	s := &selectors{known: map[string]int{}}
+	for _, item := range items {
+		switch {
+		case item.Asks != asks:
+		case item.When == nil:
+			s.always++
+		case slices.ContainsFunc(item.When.Reads(), func(field string) bool { return field == "code" || field == factName || !isField(field) }):
+			s.alone = append(s.alone, item.When)
+		default:
+			s.all = append(s.all, item.When)
+			s.fields = append(s.fields, item.When.Reads()...)
+		}
+	}
+	slices.Sort(s.fields)
+	s.fields = slices.Compact(s.fields)
+	return s
+}
+
+// count is how many items ask the subject; one that cannot be judged does not.
+func (s *selectors) count(v *view, l *local, on civil.Day) int {
+	s.key = s.key[:0]
+	for _, field := range s.fields {
+		s.key = appendValue(s.key, v.field(l, field, on))
+	}
+	n, ok := s.known[string(s.key)]
+	if !ok {
+		n = v.matching(s.all, l, on)
+		s.known[string(s.key)] = n
+	}
+	return n + s.always + v.matching(s.alone, l, on)
+}
+
+func (v *view) matching(all []*program.Selector, l *local, on civil.Day) int {
+	n := 0
+	for _, sel := range all {
+		if yes, err := v.match(sel, l, on); yes && err == nil {
+			n++
+		}
+	}
+	return n
 }
