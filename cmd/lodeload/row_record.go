@@ -61,7 +61,7 @@ func (w *world) mix(r *rand.Rand, size int) []standing.Record {
 			like.record.Day = w.today()
 		}
 		if !like.record.Time.IsZero() { // of the day, what is written down comes last
-			like.record.Time = like.record.Day.Midnight(time.UTC).Add(20*time.Hour + time.Duration(i)*time.Millisecond)
+			like.record.Time = like.record.Day.Midnight(time.UTC).Add(20*time.Hour + time.Duration(len(w.renewed))*time.Millisecond)
 		}
 		like.record.Failed = r.IntN(50) == 0
 		out[i] = w.record(like.site, &like.record)

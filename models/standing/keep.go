@@ -208,7 +208,7 @@ func (v *view) unchangedFrom(item *program.Item, deeds []deed, after civil.Day) 
 // a few of the last do; the rest may be many.
 func (v *view) deciding(ob *obligation, l *local, a *asking, c *change) []deed {
 	item, ed := ob.item, ob.edition
-	if !c.behind || len(item.Records) > 1 {
+	if len(item.Records) > 1 {
 		return v.gather(item, l, ed, civil.LastDay)
 	}
 	wants := 1
@@ -217,7 +217,7 @@ func (v *view) deciding(ob *obligation, l *local, a *asking, c *change) []deed {
 	case program.Within:
 		wants = item.Cadence.Count
 	case program.Every:
-		if d, ok := v.lastDeed(item, l, ed); ok && a.due != noDay {
+		if d, ok := v.lastDeed(item, l, ed); ok && c.behind && a.due != noDay {
 			ob.fold = renewal{deed: deed{a.first, &folded}, due: a.due}
 			return append(v.deeds[:0], d)
 		}
