@@ -139,9 +139,7 @@ func (b *Book) reach(ctx context.Context, size int64) (*model, error) {
 		}
 		select {
 		case b.growing <- struct{}{}:
-			err := b.st.Read(ctx, b.catchUp)
-			<-b.growing
-			if err != nil {
+			if err := b.grow(ctx); err != nil {
 				return nil, err
 			}
 		case <-published:
@@ -149,6 +147,12 @@ func (b *Book) reach(ctx context.Context, size int64) (*model, error) {
 			return nil, ctx.Err()
 		}
 	}
+}
+
+// grow catches up with what others wrote; the caller holds growing, which it gives back.
+func (b *Book) grow(ctx context.Context) error {
+	defer func() { <-b.growing }()
+	return b.st.Read(ctx, b.catchUp)
 }
 
 // catchUp publishes the state that the transaction sees, if there is more in it than is known. The caller
@@ -160,6 +164,10 @@ func (b *Book) catchUp(tx *store.Tx) error {
 		return err
 	}
 	next := m.fork()
+	if m.only != "" {
+		// Who is new at the one site brings along what happened to them elsewhere, long ago.
+		next = b.emptyModel()
+	}
 	if err := next.takeAfter(tx, size); err != nil {
 		return err
 	}

@@ -82,16 +82,21 @@ func (b *Book) submit(r *request) (Receipt, error) {
 		case <-r.done:
 			return r.answer()
 		case b.leading <- struct{}{}:
-			if group := b.queue.next(); len(group) > 0 {
-				b.commit(group)
-			}
-			<-b.leading
+			b.lead()
 		case <-cancelled:
 			if r.state.CompareAndSwap(waiting, givenUp) {
 				return Receipt{}, r.ctx.Err()
 			}
 			cancelled = nil // it is under way
 		}
+	}
+}
+
+// lead does the writes that are next.
+func (b *Book) lead() {
+	defer func() { <-b.leading }()
+	if group := b.queue.next(); len(group) > 0 {
+		b.commit(group)
 	}
 }
 
@@ -115,6 +120,38 @@ func (b *Book) commit(group []*request) {
 			close(r.done)
 		}
 	}()
+	// A panic that is no write's own is everybody's error: nothing of them is on the disk.
+	err := guarded(func() error { return b.commitGroup(group) })
+	if err == nil {
+		return
+	}
+	for _, r := range group {
+		switch {
+		case r.panicked != nil:
+		case r.alone && r.ctx.Err() != nil:
+			r.receipt, r.err = Receipt{}, r.ctx.Err() // and not what the database says of a broken-off statement
+		case r.err == nil:
+			r.receipt, r.err = Receipt{}, err
+		}
+	}
+}
+
+// transact runs fn in a transaction that is fit for the group.
+func (b *Book) transact(group []*request, fn func(*store.Tx) error) error {
+	// Whoever leads may be called off; the others are not. A long write is called off in the middle.
+	ctx := context.WithoutCancel(group[0].ctx)
+	switch {
+	case group[0].bulk:
+		return b.st.WriteBulk(ctx, fn)
+	case group[0].alone:
+		return b.st.Write(group[0].ctx, fn)
+	default:
+		return b.st.Write(ctx, fn)
+	}
+}
+
+// commitGroup is commit without the answers.
+func (b *Book) commitGroup(group []*request) error {
 	grows := false
 	defer func() {
 		if grows {
@@ -122,12 +159,7 @@ func (b *Book) commit(group []*request) {
 		}
 	}()
 	var next *model
-	// Whoever leads may be called off; the others are not.
-	write := b.st.Write
-	if group[0].bulk {
-		write = b.st.WriteBulk
-	}
-	err := write(context.WithoutCancel(group[0].ctx), func(tx *store.Tx) error {
+	err := b.transact(group, func(tx *store.Tx) error {
 		b.growing <- struct{}{}
 		grows = true
 		if err := b.catchUp(tx); err != nil {
@@ -148,17 +180,10 @@ func (b *Book) commit(group []*request) {
 		}
 		return nil
 	})
-	if err == nil {
-		if next.head != b.m.Load().head && !group[0].bulk {
-			b.publish(next)
-		}
-		return
+	if err == nil && next.head != b.m.Load().head && !group[0].bulk {
+		b.publish(next)
 	}
-	for _, r := range group {
-		if r.err == nil && r.panicked == nil {
-			r.receipt, r.err = Receipt{}, err
-		}
-	}
+	return err
 }
 
 // do does one write as a part of the transaction. Its own failure is the request's; the error given back is

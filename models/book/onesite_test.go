@@ -62,3 +62,31 @@ func TestOneSiteAnswersAsTheWholeBook(t *testing.T) {
 	d.ok(err)
 	d.Book = b // which the desk closes
 }
+
+// A book that is opened for one site sees what another program writes, also the past of somebody who is new there.
+func TestOneSiteSeesWhatOthersWrite(t *testing.T) {
+	d := bigSite(t, 5)
+	source, err := os.ReadFile("testdata/site.yaml")
+	d.ok(err)
+	_, err = d.OpenProgram(t.Context(), d.op, bytes.ReplaceAll(source, []byte(site), []byte("OTHER")), "")
+	d.ok(err)
+	o := d.options()
+	o.Site = "OTHER"
+	one, err := book.Open(t.Context(), d.path, o)
+	d.ok(err)
+	ask := func(b *book.Book) string {
+		t.Helper()
+		st, err := b.Standings(t.Context(), d.op, book.StandingQuery{Site: "OTHER"})
+		d.ok(err)
+		return fmt.Sprint(dressed(st))
+	}
+	empty := ask(one)
+	posted := "code,level,crew,joined,employer\nP00003,L2,early,2026-01-01,Yard 3\n"
+	_, err = d.Import(t.Context(), d.op, book.ImportOptions{Table: "people", Site: "OTHER", File: strings.NewReader(posted), Size: int64(len(posted)), FileName: "people"})
+	d.ok(err)
+	d.record("screening/staff", "P00003", "2026-02-01", "fail")
+	if whole, now := ask(d.Book), ask(one); whole != now || now == empty || !strings.Contains(now, "failed") {
+		t.Errorf("the whole book says\n%s\nand the one site\n%s", whole, now)
+	}
+	d.ok(one.Close())
+}

@@ -116,6 +116,7 @@ func (b *Book) fromSnapshot(ctx context.Context) (*model, error) {
 		return nil, nil
 	}
 	m := b.emptyModel()
+	m.only = "" // a snapshot is of all sites
 	erased := false
 	size := int64(0) // of the snapshot
 	err = b.st.Read(ctx, func(tx *store.Tx) error {

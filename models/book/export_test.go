@@ -1,0 +1,25 @@
+package book
+
+import "context"
+
+// Waiting is how many writes have not been taken up yet.
+func (b *Book) Waiting() int {
+	b.queue.mu.Lock()
+	defer b.queue.mu.Unlock()
+	return len(b.queue.list)
+}
+
+// LongView runs fn as a query runs. Count gives what the query sees: entries, people and records.
+func (b *Book) LongView(ctx context.Context, site string, fn func(count func() [3]int64)) error {
+	return b.read(ctx, func(m *model) error {
+		fn(func() [3]int64 {
+			n := [3]int64{m.head}
+			for code := range m.people.all() {
+				n[1]++
+				n[2] += int64(len(m.engine.Lines(site, subjectOf("person", code))))
+			}
+			return n
+		})
+		return nil
+	})
+}
