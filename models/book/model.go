@@ -32,6 +32,7 @@ type model struct {
 	engine   *standing.Engine
 	sites    map[string]*siteModel
 	people   shelf[string, []store.PersonRow]
+	named    shelf[uint64, []string] // codes of people by the hash of each name that they bear or bore
 	fixtures shelf[siteCode, []store.FixtureRow]
 	stints   shelf[store.SubjectKey, []store.StintRow]
 	facts    shelf[store.SubjectKey, []store.FactRow]
@@ -47,6 +48,7 @@ type siteCode struct{ site, code string }
 
 func newModel() *model {
 	m := &model{own: &owner{}, engine: standing.New(), sites: map[string]*siteModel{}}
+	m.named = newShelf[uint64, []string](m.own)
 	m.people, m.fixtures = newShelf[string, []store.PersonRow](m.own), newShelf[siteCode, []store.FixtureRow](m.own)
 	m.stints, m.facts = newShelf[store.SubjectKey, []store.StintRow](m.own), newShelf[store.SubjectKey, []store.FactRow](m.own)
 	m.events, m.excusals = newShelf[store.SubjectKey, []store.EventRow](m.own), newShelf[store.SubjectKey, []store.ExcusalRow](m.own)
@@ -61,6 +63,7 @@ func (m *model) fork() *model {
 	f.own = &owner{}
 	f.engine = m.engine.Fork()
 	f.sites = maps.Clone(m.sites)
+	f.named = m.named.fork(f.own)
 	f.people, f.fixtures = m.people.fork(f.own), m.fixtures.fork(f.own)
 	f.stints, f.facts = m.stints.fork(f.own), m.facts.fork(f.own)
 	f.events, f.excusals = m.events.fork(f.own), m.excusals.fork(f.own)
@@ -107,6 +110,7 @@ func (m *model) take(d store.Delta) error {
 	}
 	for _, r := range d.People {
 		put(&m.people, r.Code, r, func(r store.PersonRow) int64 { return r.Seq }, always)
+		m.putName(r)
 	}
 	for _, r := range d.Fixtures {
 		put(&m.fixtures, siteCode{r.Site, r.Code}, r, func(r store.FixtureRow) int64 { return r.Seq }, always)

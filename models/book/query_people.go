@@ -354,20 +354,6 @@ func (b *Book) fillExcusals(ctx context.Context, out *SubjectView, loose []loose
 	})
 }
 
-// personNamed gives the code of the one person who bears the name, or nothing.
-func (m *model) personNamed(name string) string {
-	found := ""
-	for code := range m.people.all() {
-		if p, ok := m.person(code); ok && strings.EqualFold(p.Name, name) {
-			if found != "" {
-				return ""
-			}
-			found = code
-		}
-	}
-	return found
-}
-
 // SiteHead gives a site as pages head with it, to anybody who belongs to it.
 func (b *Book) SiteHead(ctx context.Context, actor Actor, site string, on *civil.Day) (SiteView, error) {
 	var out SiteView

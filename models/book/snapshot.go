@@ -221,6 +221,9 @@ func (m *model) putListed(d *store.Delta) error {
 // shelveListed puts the rows up for looking up.
 func (m *model) shelveListed(d *store.Delta) {
 	shelve(&m.people, d.People, func(r *store.PersonRow) string { return r.Code })
+	for _, r := range d.People {
+		m.putName(r)
+	}
 	shelve(&m.fixtures, d.Fixtures, func(r *store.FixtureRow) siteCode { return siteCode{r.Site, r.Code} })
 	shelve(&m.stints, d.Stints, func(r *store.StintRow) store.SubjectKey {
 		return store.SubjectKey{Site: r.Site, Kind: r.Kind, Code: r.Code}
