@@ -1,6 +1,10 @@
 package book
 
-import "context"
+import (
+	"context"
+
+	"lodebook/models/store"
+)
 
 // Waiting is how many writes have not been taken up yet.
 func (b *Book) Waiting() int {
@@ -21,5 +25,14 @@ func (b *Book) LongView(ctx context.Context, site string, fn func(count func() [
 			return n
 		})
 		return nil
+	})
+}
+
+// EntriesView runs fn as a query of entries runs, with how many the transaction sees and the model knows.
+func (b *Book) EntriesView(ctx context.Context, fn func(seen, known int64)) error {
+	return b.withEntries(ctx, func(tx *store.Tx, m *model) error {
+		seen, err := tx.Size()
+		fn(seen, m.head)
+		return err
 	})
 }

@@ -65,10 +65,28 @@ func (a Actor) seesEntry(e store.Entry) bool {
 	return a.SeesSite(e.Site)
 }
 
+// withEntries runs a query of what only the store keeps: fn is given a transaction and the model of the very
+// entries that it sees.
 func (b *Book) withEntries(ctx context.Context, fn func(tx *store.Tx, m *model) error) error {
-	return b.read(ctx, func(m *model) error {
-		return b.st.Read(ctx, func(tx *store.Tx) error { return fn(tx, m) })
-	})
+	for {
+		m, err := b.current(ctx)
+		if err != nil {
+			return err
+		}
+		behind := false
+		err = b.st.Read(ctx, func(tx *store.Tx) error {
+			size, err := tx.Size()
+			behind = err == nil && size != m.head
+			if err != nil || behind {
+				return err
+			}
+			return fn(tx, m)
+		})
+		if !behind {
+			return err
+		}
+		// Something was written after the model was looked at.
+	}
 }
 
 // Entry gives one entry with its fields, what it superseded and what superseded it.

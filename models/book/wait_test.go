@@ -237,3 +237,43 @@ func TestWritesThatAreCalledOff(t *testing.T) {
 	d.record("training/level-2", "P1", "2026-03-01", "pass")
 	d.whole()
 }
+
+// A page of entries is of one moment too: what it reads from the store is what the model knows, no more and no
+// less, while this and another program write.
+func TestEntriesAreOfOneMoment(t *testing.T) {
+	d := newDesk(t)
+	d.person("P1", "A Person", "L2")
+	var writers, readers sync.WaitGroup
+	for _, b := range []*book.Book{d.Book, d.elsewhere()} {
+		writers.Go(func() {
+			for range 60 {
+				if _, err := b.Record(t.Context(), d.officer, site, trained("P1"), book.Correction{}); err != nil {
+					t.Error(err)
+				}
+			}
+		})
+	}
+	written := make(chan struct{})
+	for range 2 {
+		readers.Go(func() {
+			for {
+				err := d.EntriesView(t.Context(), func(seen, known int64) {
+					if seen != known {
+						t.Errorf("%d entries are seen and %d known", seen, known)
+					}
+				})
+				if err != nil {
+					t.Error(err)
+				}
+				select {
+				case <-written:
+					return
+				default:
+				}
+			}
+		})
+	}
+	writers.Wait()
+	close(written)
+	readers.Wait()
+}
