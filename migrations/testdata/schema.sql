@@ -71,6 +71,8 @@ CREATE INDEX entries_site ON entries (site, seq);
 
 CREATE UNIQUE INDEX entries_supersedes ON entries (supersedes) WHERE supersedes <> '';
 
+CREATE INDEX entries_version ON entries (kind, v);
+
 CREATE TABLE events (
     seq BIGINT NOT NULL REFERENCES entries (seq),
     n BIGINT NOT NULL,

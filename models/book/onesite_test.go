@@ -29,6 +29,11 @@ func TestOneSiteAnswersAsTheWholeBook(t *testing.T) {
 	imp("OTHER", "people", "code,name,level,crew,joined,employer\nP00003,Person 3,L2,early,2024-01-01,Yard 3\nX1,Elsewhere,L2,early,2024-01-01,Yard\n")
 	imp("OTHER", "records", "record,subject,on,result\ntraining/level-2,P00003,2026-02-01,fail\nscreening/staff,X1,2026-02-01,pass\n")
 	imp("OTHER", "pauses", "subject,from,to,reason\nP00003,2026-02-20,2026-02-25,leave\n")
+	size, err := d.KeepSnapshot(t.Context(), 1)
+	d.ok(err)
+	if size == 0 {
+		t.Error("no snapshot was written, which is of all sites")
+	}
 	d.ok(d.Close())
 	ask := func(only, at string) string {
 		t.Helper()

@@ -104,7 +104,8 @@ var programSum = sync.OnceValues(func() (uint32, error) {
 // fromSnapshot gives a model made from the snapshot and the entries after it; nil if there is no snapshot, or
 // none that fits, of which the reason is told.
 func (b *Book) fromSnapshot(ctx context.Context) (*model, error) {
-	if b.snapshots.path == "" {
+	// A snapshot is of all sites: whoever asks about one reads the rows of that one.
+	if b.snapshots.path == "" || b.site != "" {
 		return nil, nil
 	}
 	f, err := os.Open(b.snapshots.path)
@@ -116,7 +117,6 @@ func (b *Book) fromSnapshot(ctx context.Context) (*model, error) {
 		return nil, nil
 	}
 	m := b.emptyModel()
-	m.only = "" // a snapshot is of all sites
 	erased := false
 	size := int64(0) // of the snapshot
 	err = b.st.Read(ctx, func(tx *store.Tx) error {

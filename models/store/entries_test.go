@@ -389,3 +389,28 @@ func TestAnEmptyValueIsAValue(t *testing.T) {
 		t.Error("an empty value counts as erased")
 	}
 }
+
+func TestTheHighestVersionOfEachKind(t *testing.T) {
+	s := newBook(t)
+	all := entriesUpTo(0, 9)
+	for i := range all {
+		all[i].Kind = []string{"record", "person", "event"}[i%3]
+		all[i].V = 1 + (9-i)/3 // the older ones have the higher version
+	}
+	ask := func(after int64, want string) {
+		t.Helper()
+		read(t, s, func(tx *Tx) error {
+			kinds, err := tx.KindVersions(after)
+			if got := fmt.Sprint(kinds); got != want {
+				t.Errorf("after %d: %s, should be %s", after, got, want)
+			}
+			return err
+		})
+	}
+	ask(-1, "map[]")
+	write(t, s, func(tx *Tx) error { _, err := tx.Append(all, nil); return err })
+	ask(-1, "map[event:3 person:3 record:4]")
+	ask(3, "map[event:2 person:2 record:2]")
+	ask(6, "map[event:1 person:1]")
+	ask(8, "map[]")
+}
