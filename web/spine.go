@@ -28,6 +28,7 @@ const (
 	secMine      = "My record"
 	secRounds    = "Rounds"
 	secPeople    = "People"
+	secZones     = "Zones"
 	secDrills    = "Drills"
 	secChecklist = "Checklist"
 	secGaps      = "Gaps"

@@ -12,7 +12,7 @@ import (
 )
 
 type importCommand struct {
-	What string `arg:"" optional:"" help:"people, fixtures, records, events, excusals or pauses."`
+	What string `arg:"" optional:"" help:"people, fixtures, records, events, excusals, pauses or rights."`
 	File string `arg:"" optional:"" help:"The CSV or XLSX file."`
 	bookFlag
 	asFlag

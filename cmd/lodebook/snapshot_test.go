@@ -45,7 +45,10 @@ func TestSnapshotIsLeftAtStop(t *testing.T) {
 	if err := os.WriteFile(file, left, 0o600); err != nil {
 		t.Fatal(err)
 	}
-	if _, words := s.must(exitDone, "gaps", "--book", path, "--site", "QUAY"); !strings.Contains(words, "The book is read from its rows: the snapshot is damaged.") {
+	if _, words := s.must(exitDone, "gaps", "--book", path, "--site", "QUAY"); strings.Contains(words, "snapshot") {
+		t.Errorf("a command about one site, which reads that site's rows, said %q", words)
+	}
+	if _, words := s.must(exitDone, "user", "list", "--book", path); !strings.Contains(words, "The book is read from its rows: the snapshot is damaged.") {
 		t.Errorf("of a damaged snapshot it said %q", words)
 	}
 	s.now = s.now.AddDate(0, 0, 1)

@@ -231,6 +231,22 @@ CREATE TABLE records (
 
 CREATE INDEX records_ended ON records (ended) WHERE ended > 0;
 
+CREATE TABLE rights (
+    seq BIGINT NOT NULL REFERENCES entries (seq),
+    n BIGINT NOT NULL,
+    ended BIGINT NOT NULL,
+    entry TEXT NOT NULL,
+    batch TEXT NOT NULL,
+    site TEXT NOT NULL,
+    person TEXT NOT NULL,
+    zone TEXT NOT NULL,
+    from_time TEXT NOT NULL,
+    to_time TEXT,
+    PRIMARY KEY (seq, n)
+);
+
+CREATE INDEX rights_ended ON rights (ended) WHERE ended > 0;
+
 CREATE TABLE runs (
     job TEXT NOT NULL,
     site TEXT NOT NULL,

@@ -7,6 +7,7 @@ import (
 	"iter"
 	"runtime"
 	"slices"
+	"strings"
 	"sync"
 
 	"lodebook/models/store"
@@ -14,7 +15,7 @@ import (
 )
 
 // BulkRow is a row of a table in the form that a person would type it: a PersonForm, FixtureForm, RecordForm,
-// EventForm, ExcusalForm or PauseForm without an ID. Days are written as YYYY-MM-DD, subjects best as kind:code.
+// EventForm, ExcusalForm, PauseForm or RightForm without an ID. Days are written as YYYY-MM-DD, subjects best as kind:code.
 type BulkRow interface {
 	table() string
 	draft(in *importing, c rowFaults) (rowDraft, []table.Fault)
@@ -102,7 +103,7 @@ func newBulk(s *session, next int64) *bulk {
 func (k *bulk) table(t BulkTable) (ImportReport, error) {
 	report := ImportReport{Faults: []table.Fault{}}
 	if !slices.Contains(Tables, t.Table) {
-		return report, invalid("table", t.Table, "is no table that can be imported", "one of people, fixtures, records, events, excusals or pauses")
+		return report, invalid("table", t.Table, "is no table that can be imported", "one of "+strings.Join(Tables, ", "))
 	}
 	if err := k.actor.may(ImportTables, t.Site); err != nil {
 		return report, err
@@ -125,7 +126,7 @@ func (k *bulk) table(t BulkTable) (ImportReport, error) {
 
 // bulkKinds are the kinds of entry that the tables make.
 var bulkKinds = map[string]string{
-	"people": kindPerson, "fixtures": kindFixture, "records": kindRecord, "events": kindEvent, "excusals": kindExcusal, "pauses": kindPause,
+	"people": kindPerson, "fixtures": kindFixture, "records": kindRecord, "events": kindEvent, "excusals": kindExcusal, "pauses": kindPause, "rights": kindRight,
 }
 
 // row takes one row in.

@@ -87,6 +87,7 @@ var newBody = map[string]func() body{
 	kindRecord:     func() body { return new(recordBody) },
 	kindEvent:      func() body { return new(eventBody) },
 	kindExcusal:    func() body { return new(excusalBody) },
+	kindRight:      func() body { return new(rightBody) },
 	kindPause:      func() body { return new(pauseBody) },
 	kindWithdrawal: func() body { return new(withdrawalBody) },
 	kindErasure:    func() body { return new(erasureBody) },

@@ -47,6 +47,7 @@ func TestGoldenBytes(t *testing.T) {
 	d.ok(err)
 	_, err = d.ErasePerson(t.Context(), d.officer, "P3")
 	d.ok(err)
+	d.fillMore()
 
 	entries, err := d.Entries(t.Context(), d.op, book.EntryQuery{Limit: 500})
 	d.ok(err)

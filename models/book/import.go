@@ -51,7 +51,7 @@ type importer struct {
 }
 
 // Tables are the tables that can be imported.
-var Tables = []string{"people", "fixtures", "records", "events", "excusals", "pauses"}
+var Tables = []string{"people", "fixtures", "records", "events", "excusals", "pauses", "rights"}
 
 var importers map[string]importer
 
@@ -62,6 +62,7 @@ func init() {
 		"records":  {recordColumns, []string{"record", "subject", "on"}, nil, recordRow},
 		"events":   {eventColumns, []string{"event", "subject", "on"}, nil, eventRow},
 		"excusals": {excusalColumns, []string{"item", "subject", "from", "to"}, nil, excusalRow},
+		"rights":   {rightColumns, []string{"person", "zone", "from"}, nil, rightRow},
 		"pauses":   {pauseColumns, []string{"subject", "from"}, nil, pauseRow},
 	}
 }

@@ -38,6 +38,7 @@ type model struct {
 	facts    shelf[store.SubjectKey, []store.FactRow]
 	events   shelf[store.SubjectKey, []store.EventRow]
 	excusals shelf[store.SubjectKey, []store.ExcusalRow]
+	rights   shelf[store.SubjectKey, []store.RightRow] // by person, at each site
 	plans    []store.PlanRow
 	done     shelf[string, []int64] // the records that stand of each planned session
 	accounts shelf[string, []store.AccountRow]
@@ -52,6 +53,7 @@ func newModel() *model {
 	m.people, m.fixtures = newShelf[string, []store.PersonRow](m.own), newShelf[siteCode, []store.FixtureRow](m.own)
 	m.stints, m.facts = newShelf[store.SubjectKey, []store.StintRow](m.own), newShelf[store.SubjectKey, []store.FactRow](m.own)
 	m.events, m.excusals = newShelf[store.SubjectKey, []store.EventRow](m.own), newShelf[store.SubjectKey, []store.ExcusalRow](m.own)
+	m.rights = newShelf[store.SubjectKey, []store.RightRow](m.own)
 	m.done, m.accounts = newShelf[string, []int64](m.own), newShelf[string, []store.AccountRow](m.own)
 	return m
 }
@@ -67,6 +69,7 @@ func (m *model) fork() *model {
 	f.people, f.fixtures = m.people.fork(f.own), m.fixtures.fork(f.own)
 	f.stints, f.facts = m.stints.fork(f.own), m.facts.fork(f.own)
 	f.events, f.excusals = m.events.fork(f.own), m.excusals.fork(f.own)
+	f.rights = m.rights.fork(f.own)
 	f.done, f.accounts = m.done.fork(f.own), m.accounts.fork(f.own)
 	return &f
 }
@@ -157,6 +160,9 @@ func (m *model) takeHappenings(d store.Delta) {
 	for _, r := range d.Excusals {
 		put(&m.excusals, r.Subject, r, func(r store.ExcusalRow) int64 { return r.Seq }, always)
 		m.putExcusal(r)
+	}
+	for _, r := range d.Rights {
+		put(&m.rights, personAt(r.Site, r.Person), r, func(r store.RightRow) int64 { return r.Seq }, always)
 	}
 }
 

@@ -57,6 +57,7 @@ const (
 	Acknowledge  Action = "acknowledge"   // one's own acknowledgements
 	ReportEvent  Action = "report-event"  // that something happened to a subject
 	Excuse       Action = "excuse"        // excusals and pauses
+	KeepRights   Action = "keep-rights"   // who may enter which zone
 	KeepPeople   Action = "keep-people"   // people, their stints and facts
 	KeepFixtures Action = "keep-fixtures" // fixtures and their facts
 	Correct      Action = "correct"       // supersede or withdraw somebody else's entry
@@ -73,7 +74,7 @@ const (
 var actionWords = map[Action]string{
 	SeeOwn: "see this", SeeSite: "see the site's records", SeeBook: "read the book's entries",
 	FillSheet: "record an inspection or check", RecordDone: "record trainings, screenings, drills and reviews",
-	Acknowledge: "acknowledge", ReportEvent: "report an event", Excuse: "excuse or pause",
+	Acknowledge: "acknowledge", ReportEvent: "report an event", Excuse: "excuse or pause", KeepRights: "grant or withdraw a right",
 	KeepPeople: "change people", KeepFixtures: "change fixtures", Correct: "correct another's entry",
 	CorrectOwn: "correct an entry", PlanDrills: "plan a drill", SetProgram: "change the checklist",
 	OpenSite: "open a site", ImportTables: "import", KeepAccounts: "change accounts", Erase: "erase a person",
@@ -95,6 +96,7 @@ var permissions = map[Action][]Role{
 	Acknowledge:  {SafetyOfficer, Facilities, Member},
 	ReportEvent:  {SafetyOfficer, Facilities},
 	Excuse:       {SafetyOfficer},
+	KeepRights:   {SafetyOfficer},
 	KeepPeople:   {SafetyOfficer},
 	KeepFixtures: {SafetyOfficer, Facilities},
 	Correct:      {SafetyOfficer},

@@ -23,7 +23,7 @@ type EntryQuery struct {
 // Kinds are the kinds of entry with their words, for a filter.
 var Kinds = []struct{ Kind, Words string }{
 	{kindRecord, "Record"}, {kindPerson, "Person"}, {kindFixture, "Fixture"}, {kindEvent, "Event"}, {kindExcusal, "Excusal"},
-	{kindPause, "Pause"}, {kindPlan, "Plan"}, {kindWithdrawal, "Withdrawal"}, {kindProgram, "Program"}, {kindBatch, "Import"},
+	{kindRight, "Right"}, {kindPause, "Pause"}, {kindPlan, "Plan"}, {kindWithdrawal, "Withdrawal"}, {kindProgram, "Program"}, {kindBatch, "Import"},
 	{kindAccount, "Account"}, {kindErasure, "Erasure"},
 }
 
@@ -140,7 +140,7 @@ func (m *model) maySeeEntry(tx *store.Tx, actor Actor, e store.Entry) error {
 }
 
 func (m *model) mayCorrectEntry(actor Actor, e store.Entry, now time.Time, v EntryView) (may, reason bool) {
-	if v.SupersededBy != "" || !slices.Contains([]string{kindRecord, kindPerson, kindFixture, kindEvent, kindExcusal, kindPause, kindPlan}, e.Kind) {
+	if v.SupersededBy != "" || !slices.Contains([]string{kindRecord, kindPerson, kindFixture, kindEvent, kindExcusal, kindPause, kindRight, kindPlan}, e.Kind) {
 		return false, false
 	}
 	own := actor.Account != "" && e.Actor == actor.Account
@@ -263,6 +263,8 @@ func (m *model) summary(e store.Entry, bd body) string {
 		return fmt.Sprintf("%s excused for %s, %s to %s", b.Item, m.subjectWords(e.Site, b.Subject), b.From, b.To)
 	case *pauseBody:
 		return fmt.Sprintf("Pause of %s, %s to %s", m.subjectWords(e.Site, b.Subject), b.From, dayOr(b.To, "no end yet"))
+	case *rightBody:
+		return fmt.Sprintf("Right of %s to enter zone %s, %s to %s", m.subjectWords(e.Site, subjectBody{"person", b.Person}), b.Zone, m.onWords(e.Site, b.From), cmp.Or(m.onWords(e.Site, b.To), "no end yet"))
 	case *planBody:
 		return fmt.Sprintf("Planned: %s for %s", m.whatWords(e.Site, b.Record), b.Day)
 	case *programBody:

@@ -79,6 +79,14 @@ func (m *model) fields(e store.Entry, bd body) []Field {
 		l.add("From", b.From.String())
 		l.add("To", dayOr(b.To, "no end yet"))
 		l.veil("Why", b.Because)
+	case *rightBody:
+		l.add("Person", m.subjectWords(e.Site, subjectBody{"person", b.Person}))
+		l.add("Zone", b.Zone)
+		l.add("From", m.onWords(e.Site, b.From))
+		l.add("To", cmp.Or(m.onWords(e.Site, b.To), "no end yet"))
+		l.veil("Why", b.Because)
+		l.veil("Why it was withdrawn", b.Ended)
+		l.veil("Granted by", b.GrantedBy)
 	case *planBody:
 		l.add("What", m.whatWords(e.Site, b.Record))
 		if b.Crew != "" {

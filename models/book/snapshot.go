@@ -22,7 +22,7 @@ import (
 // database. What does not fit is not read.
 
 // snapshotForm changes whenever the form of the head or of the sections does.
-const snapshotForm = 1
+const snapshotForm = 2
 
 var snapshotMagic = [8]byte{'L', 'o', 'd', 'e', 's', 'n', 'a', 'p'}
 
@@ -233,6 +233,7 @@ func (m *model) shelveListed(d *store.Delta) {
 	})
 	shelve(&m.events, d.Events, func(r *store.EventRow) store.SubjectKey { return r.Subject })
 	shelve(&m.excusals, d.Excusals, func(r *store.ExcusalRow) store.SubjectKey { return r.Subject })
+	shelve(&m.rights, d.Rights, func(r *store.RightRow) store.SubjectKey { return personAt(r.Site, r.Person) })
 	shelve(&m.accounts, d.Accounts, func(r *store.AccountRow) string { return r.ID })
 	m.plans, m.batches = d.Plans, d.Batches
 }
@@ -278,7 +279,7 @@ func section(r io.Reader, s snapshotSection) ([]byte, error) {
 func (m *model) rows() store.Delta {
 	d := store.Delta{
 		People: listed(m.people), Fixtures: listed(m.fixtures), Stints: listed(m.stints), Facts: listed(m.facts),
-		Events: listed(m.events), Excusals: listed(m.excusals), Plans: m.plans, Accounts: listed(m.accounts), Batches: m.batches,
+		Events: listed(m.events), Excusals: listed(m.excusals), Rights: listed(m.rights), Plans: m.plans, Accounts: listed(m.accounts), Batches: m.batches,
 	}
 	for _, code := range m.siteCodes() {
 		for _, v := range m.sites[code].versions {

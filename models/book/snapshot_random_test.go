@@ -98,6 +98,10 @@ func (s *scribe) deeds() map[string]func() error {
 			_, err := s.Pause(ctx, s.officer, site, book.PauseForm{Subject: s.one(s.people), From: s.past(), Reason: "leave"}, book.Correction{})
 			return err
 		},
+		"right": func() error {
+			r, err := s.Grant(ctx, s.officer, site, book.RightForm{Person: s.one(s.people), Zone: "IV", From: s.past(), To: s.now.Format(time.DateOnly)}, book.Correction{})
+			return written(&s.records, r, err)
+		},
 		"plan": func() error {
 			r, err := s.PlanDrill(ctx, s.officer, site, book.PlanForm{Record: "drill/quench", Crew: "early", Day: s.now.AddDate(0, 0, s.IntN(30)).Format(time.DateOnly)}, book.Correction{})
 			return written(&s.plans, r, err)
@@ -170,7 +174,7 @@ func (s *scribe) write(n int, but ...string) {
 
 var deedNames = []string{
 	"person", "person", "record", "record", "record", "record", "record", "correction", "correction", "withdrawal", "change", "fixture",
-	"event", "excusal", "pause", "plan", "drill", "import", "undone import", "account", "erasure", "version",
+	"event", "excusal", "pause", "right", "plan", "drill", "import", "undone import", "account", "erasure", "version",
 }
 
 // Whatever was written before and after a snapshot, a book that starts from it answers as one that is read from

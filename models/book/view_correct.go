@@ -76,6 +76,8 @@ func formValues(bd body) map[string]string {
 		return map[string]string{"item": b.Item, "subject": key(b.Subject), "from": b.From.String(), "to": b.To.String(), "because": b.Because.Value, "opens": map[bool]string{true: "yes", false: "no"}[b.Opens]}
 	case *pauseBody:
 		return map[string]string{"subject": key(b.Subject), "from": b.From.String(), "to": dayOr(b.To, ""), "because": b.Because.Value}
+	case *rightBody:
+		return map[string]string{"person": b.Person, "zone": b.Zone, "from": b.From, "to": b.To, "because": b.Because.Value}
 	case *planBody:
 		return map[string]string{"record": b.Record, "crew": b.Crew, "day": b.Day.String(), "at": b.At, "note": b.Note.Value}
 	default:

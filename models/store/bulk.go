@@ -67,6 +67,7 @@ var bulkColumns = map[string]string{
 	"records":  lineNames + "ord, site, subject_site, subject_kind, subject_code, what, on_day, at_time, passed, remark, until_day, open_zones, session",
 	"events":   lineNames + "site, subject_site, subject_kind, subject_code, event, on_day, at_time",
 	"excusals": lineNames + "site, subject_site, subject_kind, subject_code, item, from_day, to_day, opens, waiting",
+	"rights":   lineNames + "site, person, zone, from_time, to_time",
 }
 
 // bulkSizes are how many rows the prepared statements take: the largest first, the others for the rest.
@@ -191,4 +192,8 @@ func (r *eventLine) values(to []any) []any {
 func (r *excusalLine) values(to []any) []any {
 	to = append(r.Line.values(to), r.Site)
 	return append(r.Subject.values(to), r.Item, r.FromDay, r.ToDay, r.Opens, r.Waiting)
+}
+
+func (r *rightLine) values(to []any) []any {
+	return append(r.Line.values(to), r.Site, r.Person, r.Zone, r.FromTime, r.ToTime)
 }

@@ -61,6 +61,7 @@ func (d *Delta) code(c coder) {
 	codeRows(c, &d.Facts, codeFact)
 	codeRows(c, &d.Events, codeEvent)
 	codeRows(c, &d.Excusals, codeExcusal)
+	codeRows(c, &d.Rights, codeRight)
 	codeRows(c, &d.Plans, codePlan)
 	codeRows(c, &d.Accounts, codeAccount)
 	codeRows(c, &d.Batches, codeBatch)
@@ -152,6 +153,15 @@ func codeExcusal(c coder, r *ExcusalRow) {
 	c.maybeDay(&r.To)
 	c.flag(&r.Opens)
 	c.flag(&r.Waiting)
+}
+
+func codeRight(c coder, r *RightRow) {
+	c.line(&r.Line)
+	c.shared(&r.Site)
+	c.shared(&r.Person)
+	c.shared(&r.Zone)
+	c.moment(&r.From)
+	c.maybeMoment(&r.To)
 }
 
 func codePlan(c coder, r *PlanRow) {

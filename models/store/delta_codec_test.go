@@ -105,7 +105,8 @@ func (d *draws) delta() Delta {
 		Excusals: some(d, func() ExcusalRow {
 			return ExcusalRow{d.line(), d.text(), d.subject(), d.text(), d.day(), d.maybeDay(), d.flag(), d.flag()}
 		}),
-		Plans: some(d, func() PlanRow { return PlanRow{d.line(), d.text(), d.text(), d.text(), d.day(), d.text()} }),
+		Rights: some(d, func() RightRow { return RightRow{d.line(), d.text(), d.text(), d.text(), d.moment(), d.maybeMoment()} }),
+		Plans:  some(d, func() PlanRow { return PlanRow{d.line(), d.text(), d.text(), d.text(), d.day(), d.text()} }),
 		Accounts: some(d, func() AccountRow {
 			return AccountRow{d.line(), d.text(), d.text(), d.text(), d.texts(), d.text(), d.maybeDay(), d.flag()}
 		}),
@@ -147,6 +148,7 @@ func sampleDelta() Delta {
 		Facts:    []FactRow{{line(7), "QUAY", "person", "P1", "level", civil.FirstDay, `"L2"`}},
 		Events:   []EventRow{{line(8), "QUAY", key, "roof", day, nil}, {line(9), "QUAY", key, "roof", day, &at}},
 		Excusals: []ExcusalRow{{line(10), "QUAY", key, "", day, nil, false, true}, {line(11), "QUAY", key, "SCREEN", day, &day, true, false}},
+		Rights:   []RightRow{{line(10), "QUAY", "P1", "IV", at, nil}, {line(11), "QUAY", "P1", "III", at, &at}},
 		Plans:    []PlanRow{{line(12), "QUAY", "drill/quench", "early", day, "14:00"}},
 		Accounts: []AccountRow{{line(13), "A1", "runa", "member", []string{"QUAY"}, "P1", &day, true}, {line(14), "A2", "ada", "administrator", nil, "", nil, false}},
 		Batches:  []BatchRow{{line(15), "QUAY", "people", "people.csv", 3, "A1", at}},

@@ -188,6 +188,21 @@ func excusalOut(r excusalLine) ExcusalRow {
 	}
 }
 
+type rightLine struct {
+	Line               lineColumns `gorm:"embedded"`
+	Site, Person, Zone string
+	FromTime           instant
+	ToTime             *instant
+}
+
+func rightIn(r RightRow) rightLine {
+	return rightLine{lineIn(r.Line), r.Site, r.Person, r.Zone, instant(r.From), (*instant)(r.To)}
+}
+
+func rightOut(r rightLine) RightRow {
+	return RightRow{r.Line.out(), r.Site, r.Person, r.Zone, time.Time(r.FromTime), (*time.Time)(r.ToTime)}
+}
+
 type planLine struct {
 	Line             lineColumns `gorm:"embedded"`
 	Site, What, Crew string

@@ -24,6 +24,7 @@ type Delta struct {
 	Records  []RecordRow
 	Events   []EventRow
 	Excusals []ExcusalRow
+	Rights   []RightRow
 	Plans    []PlanRow
 	Accounts []AccountRow
 	Batches  []BatchRow
@@ -62,6 +63,7 @@ var projections = []projection{
 	table[RecordRow, recordLine]{"records", recordIn, recordOut, func(r *recordLine) *lineColumns { return &r.Line }, func(d *Delta) *[]RecordRow { return &d.Records }, false},
 	table[EventRow, eventLine]{"events", eventIn, eventOut, func(r *eventLine) *lineColumns { return &r.Line }, func(d *Delta) *[]EventRow { return &d.Events }, false},
 	table[ExcusalRow, excusalLine]{"excusals", excusalIn, excusalOut, func(r *excusalLine) *lineColumns { return &r.Line }, func(d *Delta) *[]ExcusalRow { return &d.Excusals }, false},
+	table[RightRow, rightLine]{"rights", rightIn, rightOut, func(r *rightLine) *lineColumns { return &r.Line }, func(d *Delta) *[]RightRow { return &d.Rights }, false},
 	table[PlanRow, planLine]{"plans", planIn, planOut, func(r *planLine) *lineColumns { return &r.Line }, func(d *Delta) *[]PlanRow { return &d.Plans }, false},
 	table[AccountRow, accountLine]{"accounts", accountIn, accountOut, func(r *accountLine) *lineColumns { return &r.Line }, func(d *Delta) *[]AccountRow { return &d.Accounts }, true},
 	table[BatchRow, batchLine]{"batches", batchIn, batchOut, func(r *batchLine) *lineColumns { return &r.Line }, func(d *Delta) *[]BatchRow { return &d.Batches }, false},

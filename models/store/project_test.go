@@ -18,7 +18,7 @@ import (
 func full(seq int64) []any {
 	rows := []any{
 		&SiteRow{}, &VersionRow{}, &PersonRow{}, &FixtureRow{}, &StintRow{}, &FactRow{}, &RecordRow{},
-		&EventRow{}, &ExcusalRow{}, &PlanRow{}, &AccountRow{}, &BatchRow{},
+		&EventRow{}, &ExcusalRow{}, &RightRow{}, &PlanRow{}, &AccountRow{}, &BatchRow{},
 	}
 	out := make([]any, len(rows))
 	for i, r := range rows {
@@ -105,7 +105,7 @@ func TestAbsentValuesStayAbsent(t *testing.T) {
 	s := filled(t, 2)
 	line := Line{Seq: 1, ID: "id"}
 	want := []any{
-		StintRow{Line: line}, RecordRow{Line: line}, EventRow{Line: line}, ExcusalRow{Line: line}, AccountRow{Line: line},
+		StintRow{Line: line}, RecordRow{Line: line}, EventRow{Line: line}, ExcusalRow{Line: line}, RightRow{Line: line, From: began}, AccountRow{Line: line},
 	}
 	write(t, s, func(tx *Tx) error { return tx.Put(want...) })
 	if got := rowsOf(changed(t, s, -1)); !reflect.DeepEqual(got, want) {

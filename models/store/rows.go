@@ -128,6 +128,15 @@ type ExcusalRow struct {
 	Waiting bool
 }
 
+// RightRow is a person's standing permission to enter a zone: from a moment, which is included, up to one that
+// is not; nil: until it is withdrawn.
+type RightRow struct {
+	Line
+	Site, Person, Zone string
+	From               time.Time
+	To                 *time.Time
+}
+
 // PlanRow is a drill or session that is planned. It is done once a record names it as its session.
 type PlanRow struct {
 	Line

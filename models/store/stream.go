@@ -52,6 +52,7 @@ var ofSite = map[string]string{
 	"records":  "site = @site OR (subject_kind = 'person' AND subject_code IN " + staff + ")",
 	"events":   "site = @site OR (subject_kind = 'person' AND subject_code IN " + staff + ")",
 	"excusals": "site = @site OR (subject_kind = 'person' AND subject_code IN " + staff + ")",
+	"rights":   "site = @site",
 	"plans":    "site = @site",
 }
 
