@@ -225,7 +225,8 @@ func TestManyAtTheDoor(t *testing.T) {
 	all.Wait()
 }
 
-// TestStamp changes with everything that is written and with the minute, and with nothing else.
+// TestStamp changes with everything that is written and with the minute, and with nothing else. A server counts the
+// transactions of all its books together, and more than one book is tested on it: there a stamp may change for nothing.
 func TestStamp(t *testing.T) {
 	d := newDesk(t)
 	other := d.elsewhere()
@@ -269,7 +270,7 @@ func TestStamp(t *testing.T) {
 		d.ok(step.do())
 		now, err := d.Stamp(t.Context())
 		d.ok(err)
-		if changed := now != last; changed != step.changes {
+		if changed := now != last; changed != step.changes && (step.changes || driverOf(d.path) != "pgx") {
 			t.Errorf("%s: the stamp was %q and is %q", step.name, last, now)
 		}
 		last = now

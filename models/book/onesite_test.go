@@ -31,7 +31,7 @@ func TestOneSiteAnswersAsTheWholeBook(t *testing.T) {
 	imp("OTHER", "pauses", "subject,from,to,reason\nP00003,2026-02-20,2026-02-25,leave\n")
 	size, err := d.KeepSnapshot(t.Context(), 1)
 	d.ok(err)
-	if size == 0 {
+	if size == 0 && driverOf(d.path) != "pgx" { // beside a database none is kept that nobody asked for
 		t.Error("no snapshot was written, which is of all sites")
 	}
 	d.ok(d.Close())
