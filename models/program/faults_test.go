@@ -1,6 +1,7 @@
 package program
 
 import (
+	"slices"
 	"strings"
 	"testing"
 )
@@ -30,7 +31,7 @@ type refusedFile struct {
 // TestFaults reads files with every kind of fault and compares the whole list: line, column, path,
 // what was found and what would be accepted.
 func TestFaults(t *testing.T) {
-	for _, c := range append(faultyFiles, faultyItems...) {
+	for _, c := range slices.Concat(faultyFiles, faultyItems, faultyRemedies) {
 		t.Run(c.name, func(t *testing.T) {
 			p, err := Parse([]byte(c.src))
 			if err == nil || p != nil {
@@ -144,9 +145,9 @@ site: {code: A name: B, time_zone: Etc/UTC}
 calendar: {opne: [mon]}
 wholly_unknown: 1
 `, []string{
-		`line 3, column 1: zone: found "zone"; no such key here; did you mean zones? write calendar, crews, documents, events, fixture_kinds, in_force_from, items, levels, lodebook, person_facts, posts, sheets, site or zones`,
+		`line 3, column 1: zone: found "zone"; no such key here; did you mean zones? write calendar, crews, documents, events, fixture_kinds, in_force_from, incidents, items, levels, lodebook, person_facts, posts, remedies, reports, sheets, site or zones`,
 		`line 4, column 12: calendar.opne: found "opne"; no such key here; did you mean open? write closed, hours or open`,
-		`line 5, column 1: wholly_unknown: found "wholly_unknown"; no such key here; write calendar, crews, documents, events, fixture_kinds, in_force_from, items, levels, lodebook, person_facts, posts, sheets, site or zones`,
+		`line 5, column 1: wholly_unknown: found "wholly_unknown"; no such key here; write calendar, crews, documents, events, fixture_kinds, in_force_from, incidents, items, levels, lodebook, person_facts, posts, remedies, reports, sheets, site or zones`,
 	}},
 	{"missing keys", "site: {}\n", []string{
 		"line 1, column 1: lodebook: not given; write lodebook: 1",

@@ -45,6 +45,9 @@ type Program struct {
 	Events       []Event
 	Documents    []Document
 	Sheets       []Sheet
+	Severities   []Severity     // in order, mildest first; never empty
+	Incidents    []IncidentKind // never empty
+	Reports      []Report
 	Items        []Item
 	Source       []byte // the YAML that it was read from
 
@@ -154,6 +157,9 @@ type Sheet struct {
 	OnFail      string
 	Cautions    []string
 	Fields      []Field
+	// What a failed one takes out of service, until a safety officer signs it back: its fixture, and with it
+	// the fixture's zone; and that whoever recorded the failure may not be who signs.
+	OnFailOut, AlsoZone, BackByAnother bool
 }
 
 // CadenceRule is the name of a cadence.

@@ -79,6 +79,9 @@ const everyKey = vocabulary + `
 in_force_from: 2025-01-01
 calendar: {open: [mon], hours: {mon-fri: "07:30-20:00", "sat, sun": ["22:00-06:00"]}, closed: [2025-01-01]}
 documents: [{code: D, title: T}]
+remedies: [{severity: low, name: N, due: P90D, confirm: false}, {severity: high, due: P7D, confirm: true}]
+incidents: [{code: near-miss, name: N}, {code: burn}]
+reports: [{code: BODY, to: T, within: 3, days: working, kinds: [burn]}]
 `
 
 // The schema and the reader know the same objects and, in each, the same keys.
@@ -143,6 +146,11 @@ func TestSchemaRefuses(t *testing.T) {
 		{"weekday", "open: [mon]", "open: [monday]"},
 		{"kind named like a subject", "{code: magnet}", "{code: zone}"},
 		{"must on a choice", "type: yesno}]", "type: choice, choices: [a], must: true}]"},
+		{"no time for a remedy", "due: P7D", "dew: P7D"},
+		{"a time that is none", "due: P7D", "due: a week"},
+		{"a report to nobody", "to: T, within", "within"},
+		{"days of a report", "days: working", "days: weekdays"},
+		{"days before the incident", "within: 3", "within: -3"},
 		{"choice without choices", "type: yesno}]", "type: choice}]"},
 	} {
 		src := strings.Replace(everyKey, c.old, c.new, 1)

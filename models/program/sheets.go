@@ -19,6 +19,7 @@ func (r *reader) sheets(root object) {
 		}
 		s.RecordedBy = r.recorders(o)
 		s.OnFail = o.text("on_fail")
+		s.failOut(o)
 		s.Cautions = o.distinct("cautions", "write a list of sentences", r.line)
 		s.Fields = r.fields(o)
 		r.p.Sheets = append(r.p.Sheets, s)

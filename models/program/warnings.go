@@ -25,6 +25,7 @@ func (p *Program) Warnings() []string {
 		out = append(out, p.oddities(&p.Items[i])...)
 	}
 	out = append(out, p.closedHours()...)
+	out = append(out, p.oddSeverities()...)
 	return append(out, p.notes...)
 }
 
