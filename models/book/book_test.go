@@ -181,6 +181,7 @@ func (d *desk) fillMore() {
 	right := d.grant(book.RightForm{Person: "P1", Zone: "IV", From: "2026-02-01", Reason: "leads the early crew"})
 	_, err := d.EndRight(d.Context(), d.officer, right, "2026-03-01 12:00", "works elsewhere now")
 	d.ok(err)
+	d.fillRemedies()
 }
 
 func TestRebuildMakesTheSameProjections(t *testing.T) {

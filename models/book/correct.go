@@ -129,7 +129,11 @@ func (s *session) erase(person string) error {
 	if err != nil {
 		return err
 	}
-	if err := s.tx.EraseVeils(veils); err != nil {
+	about, err := s.veilsNaming(person)
+	if err != nil {
+		return err
+	}
+	if err := s.tx.EraseVeils(append(veils, about...)); err != nil {
 		return err
 	}
 	return blankRows(s.tx, person, size-1)

@@ -94,6 +94,14 @@ var newBody = map[string]func() body{
 	kindAccount:    func() body { return new(accountBody) },
 	kindPlan:       func() body { return new(planBody) },
 	kindBatch:      func() body { return new(batchBody) },
+
+	kindIncident:       func() body { return new(incidentBody) },
+	kindIncidentReport: func() body { return new(incidentReportBody) },
+	kindRemedy:         func() body { return new(remedyBody) },
+	kindRemedyDone:     func() body { return new(remedyDoneBody) },
+	kindRemedyCheck:    func() body { return new(remedyCheckBody) },
+	kindOutage:         func() body { return new(outageBody) },
+	kindReturn:         func() body { return new(returnBody) },
 }
 
 // lifts turn the body of an older version into the next one: kind, then version from. None is

@@ -55,6 +55,10 @@ func TestGoldenBytes(t *testing.T) {
 	for _, e := range entries { // newest first: the first of each kind stays
 		v, err := d.Entry(t.Context(), d.op, e.ID)
 		d.ok(err)
+		if v.Hidden {
+			v, err = d.Entry(t.Context(), d.officer, e.ID)
+			d.ok(err)
+		}
 		first[e.Kind] = v.Canonical
 	}
 	if len(first) != len(book.Kinds) {

@@ -39,6 +39,7 @@ type model struct {
 	events   shelf[store.SubjectKey, []store.EventRow]
 	excusals shelf[store.SubjectKey, []store.ExcusalRow]
 	rights   shelf[store.SubjectKey, []store.RightRow] // by person, at each site
+	remedyModel
 	plans    []store.PlanRow
 	done     shelf[string, []int64] // the records that stand of each planned session
 	accounts shelf[string, []store.AccountRow]
@@ -54,6 +55,7 @@ func newModel() *model {
 	m.stints, m.facts = newShelf[store.SubjectKey, []store.StintRow](m.own), newShelf[store.SubjectKey, []store.FactRow](m.own)
 	m.events, m.excusals = newShelf[store.SubjectKey, []store.EventRow](m.own), newShelf[store.SubjectKey, []store.ExcusalRow](m.own)
 	m.rights = newShelf[store.SubjectKey, []store.RightRow](m.own)
+	m.remedyModel = newRemedyModel(m.own)
 	m.done, m.accounts = newShelf[string, []int64](m.own), newShelf[string, []store.AccountRow](m.own)
 	return m
 }
@@ -70,6 +72,7 @@ func (m *model) fork() *model {
 	f.stints, f.facts = m.stints.fork(f.own), m.facts.fork(f.own)
 	f.events, f.excusals = m.events.fork(f.own), m.excusals.fork(f.own)
 	f.rights = m.rights.fork(f.own)
+	f.remedyModel = m.remedyModel.fork(f.own)
 	f.done, f.accounts = m.done.fork(f.own), m.accounts.fork(f.own)
 	return &f
 }
@@ -136,6 +139,7 @@ func (m *model) take(d store.Delta) error {
 		}
 	}
 	m.takeHappenings(d)
+	m.takeRemedies(d)
 	for _, r := range d.Accounts {
 		put(&m.accounts, r.ID, r, func(r store.AccountRow) int64 { return r.Seq }, always)
 	}

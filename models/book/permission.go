@@ -9,7 +9,7 @@ import (
 // Role decides what an account may do.
 type Role string
 
-// The roles. Operator and Scheduler sign in nowhere: the one is whoever runs a command on the
+// The roles. Operator, Scheduler and Anonymous sign in nowhere: the one is whoever runs a command on the
 // machine without naming an account, the other the program's own jobs.
 const (
 	Administrator Role = "administrator"
@@ -19,6 +19,7 @@ const (
 	Reader        Role = "reader"
 	Operator      Role = "operator"
 	Scheduler     Role = "scheduler"
+	Anonymous     Role = "anonymous" // who reports an incident and leaves no name
 )
 
 // Roles are those that an account can have.
@@ -69,6 +70,14 @@ const (
 	KeepAccounts Action = "keep-accounts"
 	Erase        Action = "erase" // forget a person
 	RunJobs      Action = "run-jobs"
+
+	ReportIncident  Action = "report-incident"
+	SeeIncidents    Action = "see-incidents" // and all that is written about them
+	KeepRemedies    Action = "keep-remedies"
+	DoRemedies      Action = "do-remedies" // say that one's own are done
+	ConfirmRemedies Action = "confirm-remedies"
+	TakeOut         Action = "take-out"  // of service
+	SignBack        Action = "sign-back" // what is out of service
 )
 
 var actionWords = map[Action]string{
@@ -78,7 +87,8 @@ var actionWords = map[Action]string{
 	KeepPeople: "change people", KeepFixtures: "change fixtures", Correct: "correct another's entry",
 	CorrectOwn: "correct an entry", PlanDrills: "plan a drill", SetProgram: "change the checklist",
 	OpenSite: "open a site", ImportTables: "import", KeepAccounts: "change accounts", Erase: "erase a person",
-	RunJobs: "run jobs",
+	RunJobs: "run jobs", ReportIncident: "report an incident", SeeIncidents: "see incidents", KeepRemedies: "keep remedies",
+	DoRemedies: "say that a remedy is done", ConfirmRemedies: "confirm a remedy", TakeOut: "take something out of service", SignBack: "sign something back",
 }
 
 // Words is the action as it follows "may".
@@ -108,6 +118,14 @@ var permissions = map[Action][]Role{
 	KeepAccounts: {Administrator, Operator},
 	Erase:        {Administrator, SafetyOfficer},
 	RunJobs:      {Administrator, SafetyOfficer, Operator, Scheduler},
+
+	ReportIncident:  {Administrator, SafetyOfficer, Facilities, Member, Reader},
+	SeeIncidents:    {SafetyOfficer},
+	KeepRemedies:    {SafetyOfficer, Facilities},
+	DoRemedies:      {SafetyOfficer, Facilities, Member},
+	ConfirmRemedies: {SafetyOfficer},
+	TakeOut:         {SafetyOfficer, Facilities},
+	SignBack:        {SafetyOfficer},
 }
 
 // Allows tells whether the role may do the action.
@@ -146,6 +164,8 @@ func (a Actor) id() string {
 		return "operator"
 	case Scheduler:
 		return "job"
+	case Anonymous:
+		return string(Anonymous)
 	default:
 		return a.Account
 	}

@@ -25,6 +25,8 @@ var Kinds = []struct{ Kind, Words string }{
 	{kindRecord, "Record"}, {kindPerson, "Person"}, {kindFixture, "Fixture"}, {kindEvent, "Event"}, {kindExcusal, "Excusal"},
 	{kindRight, "Right"}, {kindPause, "Pause"}, {kindPlan, "Plan"}, {kindWithdrawal, "Withdrawal"}, {kindProgram, "Program"}, {kindBatch, "Import"},
 	{kindAccount, "Account"}, {kindErasure, "Erasure"},
+	{kindIncident, "Incident"}, {kindIncidentReport, "Report of an incident"}, {kindRemedy, "Remedy"}, {kindRemedyDone, "Remedy done"},
+	{kindRemedyCheck, "Remedy confirmed or sent back"}, {kindOutage, "Out of service"}, {kindReturn, "Back in service"},
 }
 
 // Entries gives entries of the sites that the actor belongs to, newest first.
@@ -43,11 +45,19 @@ func (b *Book) Entries(ctx context.Context, actor Actor, q EntryQuery) ([]EntryL
 			return err
 		}
 		for _, e := range list {
-			line, _, err := m.entryLine(tx, e)
+			line, bd, err := m.entryLine(tx, e)
 			if err != nil {
 				return err
 			}
-			if actor.seesEntry(e) {
+			hidden, err := m.hides(tx, actor, e, bd)
+			if err != nil {
+				return err
+			}
+			if hidden {
+				line.veil(actor)
+			}
+			// Who reported an incident is not found out by asking for what they wrote.
+			if actor.seesEntry(e) && (!hidden || q.Actor == "" || line.ActorID != "") {
 				out = append(out, line)
 			}
 		}
@@ -103,12 +113,12 @@ func (b *Book) Entry(ctx context.Context, actor Actor, id string) (EntryView, er
 		if err := m.maySeeEntry(tx, actor, e); err != nil {
 			return err
 		}
-		out, err = m.entryView(tx, e)
+		out, err = m.entryView(tx, actor, e)
 		if err != nil {
 			return err
 		}
 		out.MayCorrect, out.NeedReason = m.mayCorrectEntry(actor, e, b.Now(), out)
-		return m.neighbours(tx, &out)
+		return m.neighbours(tx, actor, &out)
 	})
 	return out, err
 }
@@ -140,7 +150,10 @@ func (m *model) maySeeEntry(tx *store.Tx, actor Actor, e store.Entry) error {
 }
 
 func (m *model) mayCorrectEntry(actor Actor, e store.Entry, now time.Time, v EntryView) (may, reason bool) {
-	if v.SupersededBy != "" || !slices.Contains([]string{kindRecord, kindPerson, kindFixture, kindEvent, kindExcusal, kindPause, kindRight, kindPlan}, e.Kind) {
+	if v.SupersededBy != "" || !slices.Contains([]string{kindRecord, kindPerson, kindFixture, kindEvent, kindExcusal, kindPause, kindRight, kindPlan, kindIncident, kindIncidentReport, kindRemedy, kindRemedyDone, kindRemedyCheck, kindReturn}, e.Kind) {
+		return false, false
+	}
+	if v.Hidden || Secret(e.Kind) && actor.may(SeeIncidents, e.Site) != nil {
 		return false, false
 	}
 	own := actor.Account != "" && e.Actor == actor.Account
@@ -150,7 +163,7 @@ func (m *model) mayCorrectEntry(actor Actor, e store.Entry, now time.Time, v Ent
 	return actor.may(Correct, e.Site) == nil, true
 }
 
-func (m *model) neighbours(tx *store.Tx, v *EntryView) error {
+func (m *model) neighbours(tx *store.Tx, actor Actor, v *EntryView) error {
 	for _, n := range []struct {
 		id string
 		to **EntryView
@@ -165,7 +178,7 @@ func (m *model) neighbours(tx *store.Tx, v *EntryView) error {
 		if !ok {
 			continue
 		}
-		view, err := m.entryView(tx, e)
+		view, err := m.entryView(tx, actor, e)
 		if err != nil {
 			return err
 		}
@@ -208,6 +221,8 @@ func (m *model) actorName(id string, bd body) string {
 		return "operator " + bd.shared().Operator.String()
 	case "job":
 		return "a scheduled job"
+	case string(Anonymous):
+		return "nobody named"
 	}
 	if a, ok := m.account(id); ok && a.Name != "" {
 		return a.Name
@@ -265,6 +280,8 @@ func (m *model) summary(e store.Entry, bd body) string {
 		return fmt.Sprintf("Pause of %s, %s to %s", m.subjectWords(e.Site, b.Subject), b.From, dayOr(b.To, "no end yet"))
 	case *rightBody:
 		return fmt.Sprintf("Right of %s to enter zone %s, %s to %s", m.subjectWords(e.Site, subjectBody{"person", b.Person}), b.Zone, m.onWords(e.Site, b.From), cmp.Or(m.onWords(e.Site, b.To), "no end yet"))
+	case *incidentBody, *incidentReportBody, *remedyBody, *remedyDoneBody, *remedyCheckBody, *outageBody, *returnBody:
+		return m.remedySummary(e.Site, b)
 	case *planBody:
 		return fmt.Sprintf("Planned: %s for %s", m.whatWords(e.Site, b.Record), b.Day)
 	case *programBody:
@@ -299,7 +316,7 @@ func saidOf(s *stintBody, facts map[string]factValue) string {
 	return ": " + strings.Join(parts, ", ")
 }
 
-func (m *model) entryView(tx *store.Tx, e store.Entry) (EntryView, error) {
+func (m *model) entryView(tx *store.Tx, actor Actor, e store.Entry) (EntryView, error) {
 	line, bd, err := m.entryLine(tx, e)
 	if err != nil {
 		return EntryView{}, err
@@ -316,5 +333,9 @@ func (m *model) entryView(tx *store.Tx, e store.Entry) (EntryView, error) {
 	if !c.ReasonText.IsZero() {
 		v.Reason = strings.TrimPrefix(v.Reason+": "+c.ReasonText.String(), ": ")
 	}
-	return v, nil
+	hidden, err := m.hides(tx, actor, e, bd)
+	if hidden {
+		v.veil(actor)
+	}
+	return v, err
 }

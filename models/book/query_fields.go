@@ -87,6 +87,8 @@ func (m *model) fields(e store.Entry, bd body) []Field {
 		l.veil("Why", b.Because)
 		l.veil("Why it was withdrawn", b.Ended)
 		l.veil("Granted by", b.GrantedBy)
+	case *incidentBody, *incidentReportBody, *remedyBody, *remedyDoneBody, *remedyCheckBody, *outageBody, *returnBody:
+		m.addRemedyFields(l, e.Site, b)
 	case *planBody:
 		l.add("What", m.whatWords(e.Site, b.Record))
 		if b.Crew != "" {

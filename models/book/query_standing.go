@@ -44,10 +44,11 @@ func (b *Book) Standings(ctx context.Context, actor Actor, q StandingQuery) (Sta
 		if sq.Subject, err = m.narrow(actor, own, q); err != nil {
 			return err
 		}
-		if q.Item != "" && !m.site(q.Site).declares(func(p *program.Program) bool { _, ok := p.Item(q.Item); return ok }) {
+		if q.Item != "" && q.Item != string(AsksRemedy) && q.Item != string(AsksReport) && !m.site(q.Site).declares(func(p *program.Program) bool { _, ok := p.Item(q.Item); return ok }) {
 			return &NotFound{"item", q.Item}
 		}
 		out.Rows, err = site.rows(sq)
+		out.Rows = m.alsoOverdue(out.Rows, actor, own, q, site.on, k)
 		return err
 	})
 	return out, err
@@ -178,6 +179,9 @@ func (v *siteOn) subjectName(s standing.Subject) string {
 		}
 	case program.AsksSite:
 		return v.Name
+	case AsksRemedy, AsksReport:
+		name, _ := v.overdueNames(s)
+		return name
 	}
 	return s.Code
 }
@@ -217,6 +221,9 @@ func (v *siteOn) subjectNote(s standing.Subject) string {
 		if zone := v.texts(factZone, s)[0]; zone != "" {
 			parts = append(parts, "Zone "+zone)
 		}
+	case AsksRemedy, AsksReport:
+		_, note := v.overdueNames(s)
+		return note
 	case program.AsksCrew:
 		parts = append(parts, plural(v.crewSize(s.Code), "person", "people"))
 	}

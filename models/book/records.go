@@ -37,7 +37,7 @@ func (b *Book) Record(ctx context.Context, actor Actor, site string, f RecordFor
 			return err
 		}
 		fix.fill(&body.common)
-		return s.add(draft{id: f.ID, site: site, supersedes: fix.Supersedes, body: body})
+		return s.addRecord(draft{id: f.ID, site: site, supersedes: fix.Supersedes, body: body}, body)
 	})
 }
 

@@ -66,7 +66,7 @@ func (b *Book) FillSheet(ctx context.Context, actor Actor, site string, f SheetF
 			return err
 		}
 		fix.fill(&body.common)
-		return s.add(draft{id: f.ID, site: site, supersedes: fix.Supersedes, body: body})
+		return s.addRecord(draft{id: f.ID, site: site, supersedes: fix.Supersedes, body: body}, body)
 	})
 	return receipt, verdict, err
 }

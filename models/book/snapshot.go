@@ -22,7 +22,7 @@ import (
 // database. What does not fit is not read.
 
 // snapshotForm changes whenever the form of the head or of the sections does.
-const snapshotForm = 2
+const snapshotForm = 3
 
 var snapshotMagic = [8]byte{'L', 'o', 'd', 'e', 's', 'n', 'a', 'p'}
 
@@ -234,6 +234,7 @@ func (m *model) shelveListed(d *store.Delta) {
 	shelve(&m.events, d.Events, func(r *store.EventRow) store.SubjectKey { return r.Subject })
 	shelve(&m.excusals, d.Excusals, func(r *store.ExcusalRow) store.SubjectKey { return r.Subject })
 	shelve(&m.rights, d.Rights, func(r *store.RightRow) store.SubjectKey { return personAt(r.Site, r.Person) })
+	m.shelveRemedies(d)
 	shelve(&m.accounts, d.Accounts, func(r *store.AccountRow) string { return r.ID })
 	m.plans, m.batches = d.Plans, d.Batches
 }
@@ -281,6 +282,7 @@ func (m *model) rows() store.Delta {
 		People: listed(m.people), Fixtures: listed(m.fixtures), Stints: listed(m.stints), Facts: listed(m.facts),
 		Events: listed(m.events), Excusals: listed(m.excusals), Rights: listed(m.rights), Plans: m.plans, Accounts: listed(m.accounts), Batches: m.batches,
 	}
+	m.listRemedies(&d)
 	for _, code := range m.siteCodes() {
 		for _, v := range m.sites[code].versions {
 			d.Versions = append(d.Versions, v.row)

@@ -62,7 +62,11 @@ func (b *Book) Short(ctx context.Context, actor Actor, site string, on *civil.Da
 		if !own {
 			out.Plans = v.plans()
 		}
-		return v.short(&out, q)
+		if err := v.short(&out, q); err != nil {
+			return err
+		}
+		out.Rows = m.alsoOverdue(out.Rows, actor, own, StandingQuery{Site: site}, v.on, v.k)
+		return nil
 	})
 	return out, err
 }
@@ -155,7 +159,7 @@ func (b *Book) Named(ctx context.Context, actor Actor, site string, on *civil.Da
 		}
 		for i := range rows {
 			s := rows[i].Subject
-			if own && s != (standing.Subject{Asks: program.AsksPerson, Code: actor.Person}) {
+			if own && !m.ownsRemedy(actor, site, s) && s != (standing.Subject{Asks: program.AsksPerson, Code: actor.Person}) {
 				return &Denied{Action: SeeSite, Role: actor.Role}
 			}
 			rows[i].SubjectName, rows[i].SubjectNote = v.nameAndNote(s)

@@ -31,7 +31,8 @@ type Row struct {
 	Records     []string
 	SubjectName string
 	SubjectNote string // crew and employer of a person, kind and zone of a fixture
-	Owner       string // role or post that answers for it
+	Owner       string // role or post that answers for it; of a remedy, the person's code or the account's name
+	OwnerName   string // where the owner is a person or an account
 	Guards      []string
 	Asked       bool // false for a subject whose data is missing: what is asked of it cannot be told
 }
@@ -305,4 +306,5 @@ type EntryView struct {
 	Record     string // of a record: kind/code
 	MayCorrect bool
 	NeedReason bool
+	Hidden     bool // it is kept for safety officers, and the actor is none
 }

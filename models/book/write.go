@@ -159,7 +159,7 @@ func (s *session) recorded(d draft) (bool, error) {
 		return false, err
 	}
 	if recorded != given || old.Kind != d.body.kind() || old.Site != d.site || old.Supersedes != d.supersedes {
-		return false, &Conflict{d.id, recorded, given}
+		return false, s.conflict(old, was, recorded, given)
 	}
 	s.receipt.Unchanged = append(s.receipt.Unchanged, d.id)
 	return true, nil
@@ -202,7 +202,10 @@ func (s *session) checkCorrection(d *draft, c *check) error {
 	}
 	c.old, err = s.open(old)
 	c.oldSeq = old.Seq
-	return err
+	if err != nil {
+		return err
+	}
+	return s.mayRevise(old, c.old)
 }
 
 func (s *session) mayCorrect(old store.Entry, given *common) error {

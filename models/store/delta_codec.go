@@ -62,6 +62,7 @@ func (d *Delta) code(c coder) {
 	codeRows(c, &d.Events, codeEvent)
 	codeRows(c, &d.Excusals, codeExcusal)
 	codeRows(c, &d.Rights, codeRight)
+	d.codeRemedies(c)
 	codeRows(c, &d.Plans, codePlan)
 	codeRows(c, &d.Accounts, codeAccount)
 	codeRows(c, &d.Batches, codeBatch)

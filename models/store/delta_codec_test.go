@@ -41,6 +41,8 @@ func (d *draws) text() string {
 	return rapid.OneOf(rapid.SampledFrom([]string{"", "QUAY", "person", "P1"}), rapid.String()).Draw(d.T, d.label("text"))
 }
 
+func (d *draws) number() int { return rapid.Int().Draw(d.T, d.label("number")) }
+
 func (d *draws) flag() bool { return rapid.Bool().Draw(d.T, d.label("flag")) }
 
 func (d *draws) day() civil.Day {
@@ -106,7 +108,21 @@ func (d *draws) delta() Delta {
 			return ExcusalRow{d.line(), d.text(), d.subject(), d.text(), d.day(), d.maybeDay(), d.flag(), d.flag()}
 		}),
 		Rights: some(d, func() RightRow { return RightRow{d.line(), d.text(), d.text(), d.text(), d.moment(), d.maybeMoment()} }),
-		Plans:  some(d, func() PlanRow { return PlanRow{d.line(), d.text(), d.text(), d.text(), d.day(), d.text()} }),
+		Incidents: some(d, func() IncidentRow {
+			return IncidentRow{d.line(), d.text(), d.number(), d.text(), d.text(), d.text(), d.moment(), d.flag(), d.text(), d.texts()}
+		}),
+		Reports: some(d, func() ReportRow { return ReportRow{d.line(), d.text(), d.number(), d.text(), d.day()} }),
+		Remedies: some(d, func() RemedyRow {
+			return RemedyRow{d.line(), d.text(), d.number(), d.number(), d.text(), d.text(), d.subject(), d.text(), d.text(), d.text(), d.day(), d.day(), d.flag()}
+		}),
+		RemedySteps: some(d, func() RemedyStepRow {
+			return RemedyStepRow{d.line(), d.text(), d.number(), d.text(), d.day(), d.text(), d.text()}
+		}),
+		Outages: some(d, func() OutageRow {
+			return OutageRow{d.line(), d.text(), d.subject(), d.text(), d.text(), d.moment(), d.flag(), d.text()}
+		}),
+		Returns: some(d, func() ReturnRow { return ReturnRow{d.line(), d.text(), d.texts(), d.moment()} }),
+		Plans:   some(d, func() PlanRow { return PlanRow{d.line(), d.text(), d.text(), d.text(), d.day(), d.text()} }),
 		Accounts: some(d, func() AccountRow {
 			return AccountRow{d.line(), d.text(), d.text(), d.text(), d.texts(), d.text(), d.maybeDay(), d.flag()}
 		}),
@@ -140,18 +156,24 @@ func sampleDelta() Delta {
 	key := SubjectKey{"QUAY", "fixture", "V1"}
 	line := func(seq int64) Line { return Line{seq, seq % 2 * 90, fmt.Sprint("id-", seq), "batch"} }
 	return Delta{
-		Sites:    []SiteRow{{line(0), "QUAY", "Quay", "UTC"}},
-		Versions: []VersionRow{{line(0), "QUAY", 1, day, true, []byte("site: {}")}, {line(1), "QUAY", 2, day, false, nil}},
-		People:   []PersonRow{{line(2), "P1", "Runa", "r@x.example", "B-1", false}, {line(3), "P1", "", "", "", true}},
-		Fixtures: []FixtureRow{{line(4), "QUAY", "V1", "vent", "North"}},
-		Stints:   []StintRow{{line(5), "QUAY", "person", "P1", &day, nil}, {line(6), "QUAY", "person", "P1", nil, &day}},
-		Facts:    []FactRow{{line(7), "QUAY", "person", "P1", "level", civil.FirstDay, `"L2"`}},
-		Events:   []EventRow{{line(8), "QUAY", key, "roof", day, nil}, {line(9), "QUAY", key, "roof", day, &at}},
-		Excusals: []ExcusalRow{{line(10), "QUAY", key, "", day, nil, false, true}, {line(11), "QUAY", key, "SCREEN", day, &day, true, false}},
-		Rights:   []RightRow{{line(10), "QUAY", "P1", "IV", at, nil}, {line(11), "QUAY", "P1", "III", at, &at}},
-		Plans:    []PlanRow{{line(12), "QUAY", "drill/quench", "early", day, "14:00"}},
-		Accounts: []AccountRow{{line(13), "A1", "runa", "member", []string{"QUAY"}, "P1", &day, true}, {line(14), "A2", "ada", "administrator", nil, "", nil, false}},
-		Batches:  []BatchRow{{line(15), "QUAY", "people", "people.csv", 3, "A1", at}},
+		Sites:       []SiteRow{{line(0), "QUAY", "Quay", "UTC"}},
+		Versions:    []VersionRow{{line(0), "QUAY", 1, day, true, []byte("site: {}")}, {line(1), "QUAY", 2, day, false, nil}},
+		People:      []PersonRow{{line(2), "P1", "Runa", "r@x.example", "B-1", false}, {line(3), "P1", "", "", "", true}},
+		Fixtures:    []FixtureRow{{line(4), "QUAY", "V1", "vent", "North"}},
+		Stints:      []StintRow{{line(5), "QUAY", "person", "P1", &day, nil}, {line(6), "QUAY", "person", "P1", nil, &day}},
+		Facts:       []FactRow{{line(7), "QUAY", "person", "P1", "level", civil.FirstDay, `"L2"`}},
+		Events:      []EventRow{{line(8), "QUAY", key, "roof", day, nil}, {line(9), "QUAY", key, "roof", day, &at}},
+		Excusals:    []ExcusalRow{{line(10), "QUAY", key, "", day, nil, false, true}, {line(11), "QUAY", key, "SCREEN", day, &day, true, false}},
+		Rights:      []RightRow{{line(10), "QUAY", "P1", "IV", at, nil}, {line(11), "QUAY", "P1", "III", at, &at}},
+		Incidents:   []IncidentRow{{line(12), "QUAY", 1, "burn", "IV", "high", at, true, "anonymous", nil}, {line(13), "QUAY", 2, "quench", "", "low", at, false, "A1", []string{"P1", "P2"}}},
+		Reports:     []ReportRow{{line(14), "QUAY", 1, "BODY", day}},
+		Remedies:    []RemedyRow{{line(15), "QUAY", 1, 1, "", "", SubjectKey{}, "high", "P1", "", day, day + 7, true}, {line(16), "QUAY", 2, 0, "id", "VENT", key, "low", "", "A1", day, day, false}},
+		RemedySteps: []RemedyStepRow{{line(17), "QUAY", 1, "done", day, "A1", "P1"}},
+		Outages:     []OutageRow{{line(18), "QUAY", key, "V1", "id", at, true, "A1"}},
+		Returns:     []ReturnRow{{line(19), "QUAY", []string{"a", "b"}, at}},
+		Plans:       []PlanRow{{line(12), "QUAY", "drill/quench", "early", day, "14:00"}},
+		Accounts:    []AccountRow{{line(13), "A1", "runa", "member", []string{"QUAY"}, "P1", &day, true}, {line(14), "A2", "ada", "administrator", nil, "", nil, false}},
+		Batches:     []BatchRow{{line(15), "QUAY", "people", "people.csv", 3, "A1", at}},
 	}
 }
 

@@ -15,19 +15,25 @@ import (
 
 // Delta is what changed in the projections: rows that are new or that ended or were blanked.
 type Delta struct {
-	Sites    []SiteRow
-	Versions []VersionRow
-	People   []PersonRow
-	Fixtures []FixtureRow
-	Stints   []StintRow
-	Facts    []FactRow
-	Records  []RecordRow
-	Events   []EventRow
-	Excusals []ExcusalRow
-	Rights   []RightRow
-	Plans    []PlanRow
-	Accounts []AccountRow
-	Batches  []BatchRow
+	Sites       []SiteRow
+	Versions    []VersionRow
+	People      []PersonRow
+	Fixtures    []FixtureRow
+	Stints      []StintRow
+	Facts       []FactRow
+	Records     []RecordRow
+	Events      []EventRow
+	Excusals    []ExcusalRow
+	Rights      []RightRow
+	Incidents   []IncidentRow
+	Reports     []ReportRow
+	Remedies    []RemedyRow
+	RemedySteps []RemedyStepRow
+	Outages     []OutageRow
+	Returns     []ReturnRow
+	Plans       []PlanRow
+	Accounts    []AccountRow
+	Batches     []BatchRow
 }
 
 // table is one projection: its name and how its public rows T and stored rows R turn into each
@@ -64,6 +70,12 @@ var projections = []projection{
 	table[EventRow, eventLine]{"events", eventIn, eventOut, func(r *eventLine) *lineColumns { return &r.Line }, func(d *Delta) *[]EventRow { return &d.Events }, false},
 	table[ExcusalRow, excusalLine]{"excusals", excusalIn, excusalOut, func(r *excusalLine) *lineColumns { return &r.Line }, func(d *Delta) *[]ExcusalRow { return &d.Excusals }, false},
 	table[RightRow, rightLine]{"rights", rightIn, rightOut, func(r *rightLine) *lineColumns { return &r.Line }, func(d *Delta) *[]RightRow { return &d.Rights }, false},
+	table[IncidentRow, incidentLine]{"incidents", incidentIn, incidentOut, func(r *incidentLine) *lineColumns { return &r.Line }, func(d *Delta) *[]IncidentRow { return &d.Incidents }, false},
+	table[ReportRow, reportLine]{"reports", reportIn, reportOut, func(r *reportLine) *lineColumns { return &r.Line }, func(d *Delta) *[]ReportRow { return &d.Reports }, false},
+	table[RemedyRow, remedyLine]{"remedies", remedyIn, remedyOut, func(r *remedyLine) *lineColumns { return &r.Line }, func(d *Delta) *[]RemedyRow { return &d.Remedies }, false},
+	table[RemedyStepRow, remedyStepLine]{"remedy_steps", remedyStepIn, remedyStepOut, func(r *remedyStepLine) *lineColumns { return &r.Line }, func(d *Delta) *[]RemedyStepRow { return &d.RemedySteps }, false},
+	table[OutageRow, outageLine]{"outages", outageIn, outageOut, func(r *outageLine) *lineColumns { return &r.Line }, func(d *Delta) *[]OutageRow { return &d.Outages }, false},
+	table[ReturnRow, returnLine]{"returns", returnIn, returnOut, func(r *returnLine) *lineColumns { return &r.Line }, func(d *Delta) *[]ReturnRow { return &d.Returns }, false},
 	table[PlanRow, planLine]{"plans", planIn, planOut, func(r *planLine) *lineColumns { return &r.Line }, func(d *Delta) *[]PlanRow { return &d.Plans }, false},
 	table[AccountRow, accountLine]{"accounts", accountIn, accountOut, func(r *accountLine) *lineColumns { return &r.Line }, func(d *Delta) *[]AccountRow { return &d.Accounts }, true},
 	table[BatchRow, batchLine]{"batches", batchIn, batchOut, func(r *batchLine) *lineColumns { return &r.Line }, func(d *Delta) *[]BatchRow { return &d.Batches }, false},

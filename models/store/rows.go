@@ -137,6 +137,78 @@ type RightRow struct {
 	To                 *time.Time
 }
 
+// IncidentRow is an incident or near miss as one entry tells it; of those of one number that stand, the last
+// counts. Reporter is the entry's writer, or the fixed word of whoever reported without a name.
+type IncidentRow struct {
+	Line
+	Site                 string
+	Number               int // at its site, from 1
+	Kind, Zone, Severity string
+	At                   time.Time
+	Anonymous            bool
+	Reporter             string
+	People               []string // codes of those who were involved
+}
+
+// ReportRow says that an outside body was told of an incident.
+type ReportRow struct {
+	Line
+	Site     string
+	Incident int
+	Code     string // of the site's rule
+	Day      civil.Day
+}
+
+// RemedyRow is a remedy as one entry tells it; of those of one number that stand, the last counts. It is for
+// an incident, a failed record, or an item and its subject; the others are empty.
+type RemedyRow struct {
+	Line
+	Site     string
+	Number   int // at its site, from 1
+	Incident int
+	Record   string // identifier of the failed record's entry
+	Item     string
+	Subject  SubjectKey
+	Severity string
+	Owner    string // code of the person who owns it, or empty
+	Account  string // identifier of the account that owns it, or empty
+	Made     civil.Day
+	Due      civil.Day
+	Confirm  bool // a second person looks at it before it is closed
+}
+
+// RemedyStepRow is what became of a remedy: done, confirmed or refused. Account wrote it; DoneBy is the code of
+// the person who did it, where that is known.
+type RemedyStepRow struct {
+	Line
+	Site            string
+	Remedy          int
+	Step            string
+	Day             civil.Day
+	Account, DoneBy string
+}
+
+// OutageRow says that a fixture or zone is out of service from an instant on. Record is the failed record that
+// took it out, or empty, and Cause the code of that record's fixture. Another says that whoever wrote it may not be who signs it back.
+type OutageRow struct {
+	Line
+	Site    string
+	Subject SubjectKey
+	Cause   string
+	Record  string
+	From    time.Time
+	Another bool
+	Account string
+}
+
+// ReturnRow ends outages, which it names by their entries' identifiers.
+type ReturnRow struct {
+	Line
+	Site    string
+	Outages []string
+	At      time.Time
+}
+
 // PlanRow is a drill or session that is planned. It is done once a record names it as its session.
 type PlanRow struct {
 	Line

@@ -43,17 +43,23 @@ const staff = "(SELECT code FROM stints WHERE site = @site AND kind = 'person')"
 
 // ofSite are the conditions for what a site needs of each table; of the others it needs all.
 var ofSite = map[string]string{
-	"sites":    "code = @site",
-	"versions": "site = @site",
-	"people":   "code IN " + staff,
-	"fixtures": "site = @site",
-	"stints":   "site = @site",
-	"facts":    "site = @site",
-	"records":  "site = @site OR (subject_kind = 'person' AND subject_code IN " + staff + ")",
-	"events":   "site = @site OR (subject_kind = 'person' AND subject_code IN " + staff + ")",
-	"excusals": "site = @site OR (subject_kind = 'person' AND subject_code IN " + staff + ")",
-	"rights":   "site = @site",
-	"plans":    "site = @site",
+	"sites":        "code = @site",
+	"versions":     "site = @site",
+	"people":       "code IN " + staff,
+	"fixtures":     "site = @site",
+	"stints":       "site = @site",
+	"facts":        "site = @site",
+	"records":      "site = @site OR (subject_kind = 'person' AND subject_code IN " + staff + ")",
+	"events":       "site = @site OR (subject_kind = 'person' AND subject_code IN " + staff + ")",
+	"excusals":     "site = @site OR (subject_kind = 'person' AND subject_code IN " + staff + ")",
+	"rights":       "site = @site",
+	"incidents":    "site = @site",
+	"reports":      "site = @site",
+	"remedies":     "site = @site",
+	"remedy_steps": "site = @site",
+	"outages":      "site = @site",
+	"returns":      "site = @site",
+	"plans":        "site = @site",
 }
 
 func (p table[T, R]) stream(t *Tx, site string, fn func(*Delta) error) (err error) {
