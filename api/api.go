@@ -36,6 +36,7 @@ var routes = []route{
 	{http.MethodGet, "/api/sites", book.SeeOwn, (*server).sites},
 	{http.MethodGet, "/api/sites/:site/standings", book.SeeOwn, (*server).standings},
 	{http.MethodGet, "/api/sites/:site/gaps", book.SeeOwn, (*server).gaps},
+	{http.MethodGet, "/api/sites/:site/reach", book.SeeOwn, (*server).reach},
 }
 
 type server struct {

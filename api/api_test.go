@@ -20,7 +20,7 @@ const source = `
 lodebook: 1
 in_force_from: 2025-01-01
 site: {code: QUAY, name: North Quay, time_zone: Atlantic/Faroe}
-zones: [{code: I}]
+zones: [{code: I}, {code: IV, restricted: true}]
 items:
   - {code: INDUCTION, title: Induction, asks: person, record: training/induction, once: true, basis: Site rule}
 `
@@ -67,6 +67,9 @@ func TestEveryRouteWithEveryRole(t *testing.T) {
 	h := served(t)
 	for _, r := range routes {
 		path := strings.Replace(r.path, ":site", "QUAY", 1)
+		if strings.HasSuffix(path, "/reach") {
+			path += "?zone=IV"
+		}
 		for _, role := range append([]book.Role{""}, book.Roles...) {
 			want := http.StatusOK
 			switch {

@@ -86,6 +86,7 @@ func (v *visit) siteLinks(s *spine, at book.SiteView, section string) error {
 	add(!see && v.actor.Person != "", secMine, 0, "", "people", v.actor.Person)
 	add(see || v.may(book.FillSheet), secRounds, counts.Due, "fixtures due", "rounds")
 	add(see, secPeople, 0, "", "people")
+	add(see, secZones, 0, "", "zones")
 	add(see, secDrills, 0, "", "drills")
 	add(see, secChecklist, 0, "", "checklist")
 	add(see, secGaps, counts.Gaps, "gaps", "gaps")

@@ -52,7 +52,7 @@ func (c *jobCommand) runAt(a *app, b *book.Book, job jobs.Job, site string) erro
 	at := b.Now()
 	if c.At != "" {
 		var err error
-		if at, err = a.moment(b, site, "--at", c.At); err != nil {
+		if at, err = b.Moment(a.ctx, site, "--at", c.At); err != nil {
 			return err
 		}
 	}

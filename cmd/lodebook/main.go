@@ -38,6 +38,7 @@ type commands struct {
 	Import   importCommand   `cmd:"" help:"Bring in people, fixtures, records, events, excusals, pauses or rights from CSV or XLSX."`
 	Standing standingCommand `cmd:"" help:"Standings on any day."`
 	Gaps     gapsCommand     `cmd:"" help:"What falls short."`
+	Reach    reachCommand    `cmd:"" help:"Who is entitled to a zone, until when, and why not."`
 	Job      jobCommand      `cmd:"" help:"Run one scheduled job now."`
 	Backup   backupCommand   `cmd:"" help:"A consistent copy of a live book."`
 	Restore  restoreCommand  `cmd:"" help:"Put a verified copy in the place of a book."`

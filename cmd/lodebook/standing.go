@@ -1,11 +1,8 @@
 package main
 
 import (
-	"time"
-
 	"lodebook/models/book"
 	"lodebook/models/civil"
-	"lodebook/models/table"
 )
 
 type standingCommand struct {
@@ -46,27 +43,11 @@ func (a *app) standings(b *book.Book, as asFlag, q book.StandingQuery, on, known
 		q.On = &day
 	}
 	if knownAt != "" {
-		at, err := a.moment(b, q.Site, "--known-at", knownAt)
+		at, err := b.Moment(a.ctx, q.Site, "--known-at", knownAt)
 		if err != nil {
 			return book.Standings{}, err
 		}
 		q.KnownAt = &at
 	}
 	return b.Standings(a.ctx, actor, q)
-}
-
-// moment reads an instant: RFC 3339, or a date and time by the site's clocks.
-func (a *app) moment(b *book.Book, site, flag, text string) (time.Time, error) {
-	loc, err := b.Zone(a.ctx, site)
-	if err != nil {
-		return time.Time{}, err
-	}
-	m, f := table.ReadMoment(text, loc)
-	if f != nil {
-		return time.Time{}, &book.Invalid{Faults: []book.Fault{{Field: flag, Value: text, Problem: f.Problem, Accepted: f.Accepted}}}
-	}
-	if m.Time == nil {
-		return time.Time{}, &book.Invalid{Faults: []book.Fault{{Field: flag, Value: text, Problem: "is a day and not a moment", Accepted: "add a time, as in " + text + "T12:00"}}}
-	}
-	return *m.Time, nil
 }

@@ -167,6 +167,7 @@ func (m *model) takeHappenings(d store.Delta) {
 	}
 	for _, r := range d.Rights {
 		put(&m.rights, personAt(r.Site, r.Person), r, func(r store.RightRow) int64 { return r.Seq }, always)
+		m.putRight(r)
 	}
 }
 
@@ -195,6 +196,10 @@ func (m *model) putEvent(r store.EventRow) {
 
 func (m *model) putExcusal(r store.ExcusalRow) {
 	m.engine.PutExcusal(r.Site, standing.Excusal{Line: known(r.Line), Subject: subjectOf(r.Subject.Kind, r.Subject.Code), Item: r.Item, From: r.From, To: r.To, Opens: r.Opens})
+}
+
+func (m *model) putRight(r store.RightRow) {
+	m.engine.PutRight(r.Site, standing.Right{Line: known(r.Line), Person: r.Person, Zone: r.Zone, From: r.From, To: r.To})
 }
 
 // takeSession counts the record to its session while it stands, if the session was planned.

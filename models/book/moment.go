@@ -1,6 +1,7 @@
 package book
 
 import (
+	"context"
 	"time"
 
 	"lodebook/models/civil"
@@ -56,4 +57,21 @@ func (c *check) moment(field, on string) (moment, []Fault) {
 		return m, []Fault{{field, on, "lies in the future", "a day up to today, " + c.today().String()}}
 	}
 	return m, nil
+}
+
+// Moment reads an instant at a site as a person writes it: RFC 3339, or a date and a time of day by the site's
+// clocks. A local time that a change of the clocks makes ambiguous is refused, and so is a day alone.
+func (b *Book) Moment(ctx context.Context, site, field, text string) (time.Time, error) {
+	loc, err := b.Zone(ctx, site)
+	if err != nil {
+		return time.Time{}, err
+	}
+	m, f := table.ReadMoment(text, loc)
+	if f != nil {
+		return time.Time{}, invalid(field, text, f.Problem, f.Accepted)
+	}
+	if m.Time == nil {
+		return time.Time{}, invalid(field, text, "is a day and not a moment", "add a time, as in "+m.Day.String()+" 12:00")
+	}
+	return *m.Time, nil
 }

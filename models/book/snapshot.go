@@ -215,6 +215,9 @@ func (m *model) putListed(d *store.Delta) error {
 	for _, r := range d.Excusals {
 		m.putExcusal(r)
 	}
+	for _, r := range d.Rights {
+		m.putRight(r)
+	}
 	return nil
 }
 

@@ -25,6 +25,7 @@ type Engine struct {
 	sites  []*site // by number
 	number map[string]int32
 	kinds  kinds           // of records
+	limits limits          // of clearances
 	names  names           // numbers of people
 	people pages           // what happened to people, by number
 	marks  marks           // identifiers of the entries of records, by sequence number
@@ -58,6 +59,7 @@ type local struct {
 	subject  Subject
 	past     *past       // of all others
 	stints   []Stint     // by Seq
+	rights   []Right     // of a person, by Seq
 	facts    []facts     // in no order
 	excusals []exception // in no order
 }
@@ -188,6 +190,7 @@ func (e *Engine) PutRecord(r Record) {
 		p.deeds = append(p.deeds, deedsOf{kind: kind})
 	}
 	kept := newRecord(&r, at)
+	kept.limit = e.limits.put(r.Limit)
 	e.marks.put(e.own, kept.seq, markOf(r.ID))
 	fresh := len(p.deeds[i].list)
 	p.deeds[i].list = upsert(p.deeds[i].list, kept, compareRecords)

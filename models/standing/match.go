@@ -94,7 +94,7 @@ func (v *view) field(l *local, field string, on civil.Day) any {
 	case "holders":
 		return v.holders(l.subject.Code, on)
 	case "zones":
-		return nil // no rights are on record yet
+		return v.zones(l, on)
 	}
 	if fact, ok := strings.CutPrefix(field, factsPrefix); ok {
 		return v.fact(l, fact, on)
@@ -187,7 +187,9 @@ func (v *view) reignTurns(t *turns) {
 
 func (v *view) fieldTurns(t *turns, l *local, field string) {
 	switch {
-	case field == "code" || field == "zones":
+	case field == "code":
+	case field == "zones":
+		v.rightTurns(t, l)
 	case field == "held":
 		v.heldTurns(t, l)
 	case field == "posts":
@@ -207,7 +209,7 @@ func (v *view) allTurns(t *turns, l *local) {
 	for i := range l.facts {
 		v.factTurns(t, l, l.facts[i].code)
 	}
-	for _, field := range []string{"held", "posts", "holders"} {
+	for _, field := range []string{"held", "posts", "zones", "holders"} {
 		v.fieldTurns(t, l, field)
 	}
 }

@@ -26,6 +26,7 @@ type naive struct {
 	records  []standing.Record
 	events   []at[standing.Event]
 	excusals []at[standing.Excusal]
+	rights   []at[standing.Right]
 	// The days on which anything at all lies, and room to spare.
 	first, last civil.Day
 	profiles    map[string]program.Subject // what was worked out before
@@ -155,6 +156,7 @@ func (n *naive) workOutProfile(sub standing.Subject, d civil.Day, withHeld bool)
 				p.Posts = append(p.Posts, post)
 			}
 		}
+		p.Zones = n.zones(sub.Code, d)
 		if withHeld {
 			p.Held = n.held(sub, d)
 		}

@@ -92,6 +92,7 @@ func followsRecords(field string) bool {
 // change is what a line put on record changes of one subject; one of its fields is set.
 type change struct {
 	stint, pause bool
+	right        bool
 	fact         string
 	event        string
 	item         string // of an excusal
@@ -114,6 +115,9 @@ func (p *plan) touched(c *change, l *local, to []int32) []int32 {
 		if c.fact == factLevel {
 			to = addAll(to, from, p.fields["held"]) // the assigned level bounds it
 		}
+	case c.right:
+		to = append(to, p.fields["zones"]...)
+		to = addAll(to, from, p.other)
 	case c.event != "":
 		to = append(to, p.events[c.event]...)
 	case c.item != "":

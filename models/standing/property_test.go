@@ -128,7 +128,7 @@ func (w *world) selector(asks program.Asks, mayReadHeld bool) *program.Selector 
 	case asks == program.AsksPerson && mayReadHeld && w.chance(30):
 		return oneOf(w, heldAny, heldAny, heldNone, heldNone, heldL1, anyFact)
 	case asks == program.AsksPerson:
-		return oneOf(w, isL2, swingsIn, early, officer, notAnn)
+		return oneOf(w, isL2, swingsIn, early, officer, notAnn, inIV)
 	case asks == program.AsksFixture:
 		return oneOf(w, isDoor, swingsIn)
 	case asks == program.AsksPost:
@@ -282,6 +282,9 @@ func (w *world) record() {
 		r.What = "appointment/" + oneOf(w, testPosts...)
 	}
 	r.Time = w.instant(r.Day)
+	if w.chance(15) {
+		r.Limit = oneOf(w, []string{"III"}, []string{"IV"}, []string{"IV", "III"})
+	}
 	if w.chance(25) {
 		r.Until = ptr(r.Day + civil.Day(w.pick(1+w.spread/3)))
 	}
@@ -322,7 +325,7 @@ func (w *world) make() {
 		w.rules = append(w.rules, oneOf(w, program.Every, program.Within, program.Once, program.Each, program.After, program.Holds))
 	}
 	w.n = naive{site: "S", first: base - 700, last: base + 1200}
-	kinds := []func(){w.fact, w.record, w.record, w.record, w.event, w.excusal, func() { w.stint(oneOf(w, testSubjects...)) }}
+	kinds := []func(){w.fact, w.record, w.record, w.record, w.event, w.excusal, w.right, func() { w.stint(oneOf(w, testSubjects...)) }}
 	for i := range 1 + w.pick(3) {
 		w.n.versions = append(w.n.versions, w.version(i+1))
 		for range w.pick(30) {
@@ -363,6 +366,9 @@ func (w *world) endSome() {
 	}
 	for i := range w.n.excusals {
 		end(&w.n.excusals[i].line.Line)
+	}
+	for i := range w.n.rights {
+		end(&w.n.rights[i].line.Line)
 	}
 }
 
@@ -414,6 +420,13 @@ func (w *world) steps() []func(*standing.Engine) {
 			y := x.line
 			y.Line = keep(y.Line, ended)
 			e.PutExcusal(x.site, y)
+		})
+	}
+	for _, r := range w.n.rights {
+		all = append(all, func(e *standing.Engine, ended bool) {
+			x := r.line
+			x.Line = keep(x.Line, ended)
+			e.PutRight(r.site, x)
 		})
 	}
 	for i := range all {
@@ -511,6 +524,9 @@ func (w *world) tell() string {
 	}
 	for _, x := range w.n.excusals {
 		fmt.Fprintf(&b, "excusal at %s %v %v %q %v to %v opens %v\n", x.site, x.line.Line, x.line.Subject, x.line.Item, x.line.From, x.line.To, x.line.Opens)
+	}
+	for _, r := range w.n.rights {
+		fmt.Fprintf(&b, "right at %s %v %s in %s from %v to %v\n", r.site, r.line.Line, r.line.Person, r.line.Zone, r.line.From, r.line.To)
 	}
 	return b.String()
 }

@@ -19,6 +19,7 @@ type record struct {
 	day        civil.Day
 	until      civil.Day // noDay where it has none
 	site       uint16
+	limit      uint16 // see limits
 	passed     bool
 }
 

@@ -18,7 +18,7 @@ import (
 // read. It is for the same program on the same kind of machine, beside a database that has it all.
 
 // snapshotForm changes whenever the layout of a column does.
-const snapshotForm = 3
+const snapshotForm = 4
 
 var snapshotMagic = []byte("LODEBOOK")
 
@@ -31,6 +31,10 @@ func (e *Engine) WriteSnapshot(w io.Writer) error {
 	h.raw(snapshotMagic)
 	h.numbers(snapshotForm, 1, uint32(unsafe.Sizeof(record{})), uint32(unsafe.Sizeof(row{})), uint32(unsafe.Sizeof(asking{})))
 	h.texts(e.kinds.what)
+	h.numbers(uint32(len(e.limits.zones)))
+	for _, zones := range e.limits.zones {
+		h.texts(zones)
+	}
 	pages := h.marks(e.marks)
 	for _, of := range e.sites {
 		h.site(e, of)
@@ -195,6 +199,15 @@ func (e *Engine) ReadSnapshot(b []byte) error {
 	for i := range r.kinds {
 		r.kinds[i] = e.kind(r.text())
 	}
+	r.limits = make([]uint16, r.count())
+	for i := range r.limits {
+		zones := make([]string, r.count())
+		for j := range zones {
+			zones[j] = r.text()
+		}
+		r.must(len(zones) > 0)
+		r.limits[i] = e.limits.put(zones)
+	}
 	r.marks(e)
 	var sites []*siteSnapshot
 	for r.ok() && !r.end() {
@@ -224,6 +237,7 @@ type reader struct {
 	head, columns []byte
 	kinds         []int32  // numbers of the kinds of records, by those of the snapshot
 	sites         []uint16 // likewise of the sites
+	limits        []uint16 // and of the limits
 	err           error
 }
 
@@ -369,6 +383,13 @@ func (r *reader) past(p *past) {
 				return
 			}
 			list[i].site = r.sites[list[i].site]
+			if no := int(list[i].limit); no > 0 {
+				r.must(no <= len(r.limits))
+				if !r.ok() {
+					return
+				}
+				list[i].limit = r.limits[no-1]
+			}
 		}
 		p.deeds = append(p.deeds, deedsOf{r.kinds[kind], list})
 	}
@@ -387,6 +408,9 @@ func (r *reader) board(e *Engine, s *siteSnapshot) {
 	fits := slices.EqualFunc(b.plan.items, s.board, func(item string, t trackSnapshot) bool { return item == t.item })
 	for i, of := range s.board {
 		t := &track{own: e.own, item: of.item, rows: columnOf[row](r, of.rows), asked: columnOf[asking](r, of.rows), points: columnOf[point](r, of.points)}
+		if !r.ok() {
+			return
+		}
 		if !fits {
 			continue
 		}

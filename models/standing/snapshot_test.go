@@ -18,6 +18,9 @@ func (w *world) withoutRecords() *standing.Engine {
 	for _, x := range w.n.excusals {
 		e.PutExcusal(x.site, x.line)
 	}
+	for _, r := range w.n.rights {
+		e.PutRight(r.site, r.line)
+	}
 	for _, ev := range slices.Backward(w.n.events) {
 		e.PutEvent(ev.site, ev.line)
 	}

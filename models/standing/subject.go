@@ -31,7 +31,7 @@ func builtIn(asks program.Asks, code string) bool {
 }
 
 // Profile is the subject as a selector reads it on the day, as known at k: its facts, and what
-// follows from the records (held level, posts, holders). Rights are not on record yet.
+// follows from the records (held level, posts, holders), or from rights.
 func (e *Engine) Profile(site string, s Subject, on civil.Day, k int64) program.Subject {
 	v, err := e.view(site, k)
 	if err != nil {
@@ -54,7 +54,9 @@ func (v *view) profile(l *local, on civil.Day, reads []string) program.Subject {
 		if wants("posts") {
 			p.Posts = v.posts(l, on)
 		}
-		// Zones stays empty until rights are on record.
+		if wants("zones") {
+			p.Zones = v.zones(l, on)
+		}
 	case program.AsksFixture:
 		p.Kind, p.Zone = v.text(l, factKind, on), v.text(l, factZone, on)
 	case program.AsksPost:

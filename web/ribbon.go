@@ -1,0 +1,82 @@
+package web
+
+import (
+	"fmt"
+	"html/template"
+	"strings"
+	"time"
+
+	"lodebook/models/book"
+	"lodebook/models/civil"
+	"lodebook/models/reach"
+)
+
+// window is the time that ribbons show, by the site's clocks: whole months, now in the middle.
+type window struct {
+	from, to, now time.Time
+	zone          *time.Location
+}
+
+const windowMonths = 6 // before and after the month of now
+
+// windowAround is the window in which a moment stands.
+func windowAround(now time.Time, zone *time.Location) window {
+	y, m, _ := now.In(zone).Date()
+	first := func(months int) time.Time { return civil.Of(y, m+time.Month(months), 1).Midnight(zone) }
+	return window{first(-windowMonths), first(windowMonths + 1), now, zone}
+}
+
+// words says which months the window shows.
+func (w window) words() string {
+	last := w.to.Add(-time.Second).In(w.zone)
+	return w.from.In(w.zone).Format("January 2006") + " to " + last.Format("January 2006") + ", the line is now"
+}
+
+const (
+	bandWidth  = 600.0
+	lowLongest = 30 * 24 * time.Hour // the last stretch of a bar, as notice is by default: 30 days or a quarter
+)
+
+func (w window) x(t time.Time) float64 {
+	share := t.Sub(w.from).Seconds() / w.to.Sub(w.from).Seconds()
+	return bandWidth * min(max(share, 0), 1)
+}
+
+// band draws a ribbon: a hairline while a right is in force, a bar while the person is entitled, its last stretch
+// in another ink, a tick at each month and a line now. It says nothing to a screen reader, since what it says always
+// stands beside it in words.
+func (w window) band(r book.Ribbon) template.HTML {
+	var b strings.Builder
+	b.WriteString(`<svg class="band" viewBox="0 0 600 18" preserveAspectRatio="none" aria-hidden="true" focusable="false"><path class="month" d="`)
+	y, m, _ := w.from.In(w.zone).Date()
+	for i := 0; ; i++ {
+		t := civil.Of(y, m+time.Month(i), 1).Midnight(w.zone)
+		if t.After(w.to) {
+			break
+		}
+		fmt.Fprintf(&b, "M%.1f 0v18", w.x(t))
+	}
+	b.WriteString(`"/>`)
+	for _, s := range r.Rights {
+		fmt.Fprintf(&b, `<rect class="right" x="%.1f" y="8" width="%.1f" height="2"/>`, w.x(s.From), w.x(s.To)-w.x(s.From))
+	}
+	for _, s := range r.Spans {
+		if s.Entitled {
+			w.bar(&b, s)
+		}
+	}
+	fmt.Fprintf(&b, `<path class="now" d="M%.1f -2v22"/></svg>`, w.x(w.now))
+	// Numbers alone: nothing in it comes from outside.
+	return template.HTML(b.String())
+}
+
+func (w window) bar(b *strings.Builder, s reach.Span) {
+	low := s.To
+	if s.To.Before(w.to) {
+		low = s.To.Add(-min(lowLongest, s.To.Sub(s.From)/4))
+	}
+	fmt.Fprintf(b, `<rect class="holds" x="%.1f" y="3" width="%.1f" height="12"/>`, w.x(s.From), w.x(low)-w.x(s.From))
+	if low.Before(s.To) {
+		fmt.Fprintf(b, `<rect class="low" x="%.1f" y="3" width="%.1f" height="12"/>`, w.x(low), w.x(s.To)-w.x(low))
+	}
+}
