@@ -31,7 +31,7 @@ type refusedFile struct {
 // TestFaults reads files with every kind of fault and compares the whole list: line, column, path,
 // what was found and what would be accepted.
 func TestFaults(t *testing.T) {
-	for _, c := range slices.Concat(faultyFiles, faultyItems, faultyRemedies) {
+	for _, c := range slices.Concat(faultyFiles, faultyItems, faultyRemedies, faultyCover) {
 		t.Run(c.name, func(t *testing.T) {
 			p, err := Parse([]byte(c.src))
 			if err == nil || p != nil {

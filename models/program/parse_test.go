@@ -68,7 +68,7 @@ func TestExampleSections(t *testing.T) {
 		hours = append(hours, OpenHours{d, 450, 1200})
 	}
 	same(t, "hours", p.Hours, hours)
-	same(t, "zones", p.Zones, []Zone{{"I", "I", false, true}, {"II", "II", false, true}, {"III", "III", true, true}, {"IV", "IV", true, false}})
+	same(t, "zones", p.Zones, []Zone{{Code: "I", Name: "I", Devices: true}, {Code: "II", Name: "II", Devices: true}, {Code: "III", Name: "III", Restricted: true, Devices: true}, {Code: "IV", Name: "IV", Restricted: true}})
 	same(t, "levels", p.Levels, []Level{{"L1", "Level 1", 1}, {"L2", "Level 2", 2}})
 	same(t, "posts", p.Posts, []Post{{"MRSO", "MR safety officer"}})
 	same(t, "crews", p.Crews, []Crew{{"early", "Early shift"}, {"late", "Late shift"}})

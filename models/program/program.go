@@ -72,7 +72,8 @@ type OpenHours struct {
 type Zone struct {
 	Code, Name string
 	Restricted bool
-	Devices    bool // a phone or tablet may go in; default true
+	Devices    bool   // a phone or tablet may go in; default true
+	Escort     string // the lowest level whose holders may escort there; empty: nobody may
 }
 
 // Level is an MR safety level; Rank is its place in the program's order, from 1.

@@ -24,6 +24,9 @@ func (r *reader) zones(root object) {
 	root.objects("zones", "zone", "write a list such as [{code: I}, {code: IV, restricted: true}]", func(o object) {
 		z := Zone{Code: o.ownCode(), Restricted: o.yesNo("restricted", false), Devices: o.yesNo("devices", true)}
 		z.Name = o.named("name", z.Code)
+		if n := o.get("escort"); n != nil {
+			z.Escort = r.one(n, o.at("escort"), "a level", r.p.levelCodes())
+		}
 		r.register(o.get("code"), o.at("code"), z.Code, taken)
 		r.p.Zones = append(r.p.Zones, z)
 	})
