@@ -11,7 +11,7 @@ func TestEscort(t *testing.T) {
 // faultyCover are wrong in who must be there.
 var faultyCover = []refusedFile{
 	{"escort", head + "zones: [{code: III, escort: L3}, {code: IV, escort: [L1]}]\nlevels: [{code: L1}]\n", []string{
-		`line 3, column 29: zones[0].escort: found "L3"; there is no such level; did you mean L1? write L1`,
-		"line 3, column 54: zones[1].escort: found a list; not a level; write L1",
+		`line 3, column 29: zones[0].escort: found "L3"; there is no such level; write L1`,
+		"line 3, column 53: zones[1].escort: found a list; write L1",
 	}},
 }
