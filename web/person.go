@@ -71,6 +71,8 @@ type personLeaf struct {
 	Excusals       []excusalLine
 	Events         []recordLine
 	Records, Older []recordLine
+	Zones          []zoneRibbon
+	Window         string // what the ribbons show
 	Do             []act
 	MayEnd, Mine   bool
 	ConfirmURL     string
@@ -98,6 +100,11 @@ func personPage(v *visit) error {
 	p.Say = v.personSay(x, p)
 	p.Who = v.whoWords(x)
 	v.personPast(p, x)
+	if !x.Erased {
+		if p.Zones, p.Window, err = v.zoneRibbons(x.Subject.Code); err != nil {
+			return err
+		}
+	}
 	for i := range p.Good {
 		p.Good[i].Do = nil // what is in order asks for nothing
 	}
@@ -331,5 +338,6 @@ func (v *visit) personActs(x book.SubjectView) []act {
 		{"Excuse", with(v.url("excuse"), "subject", key)},
 		{"Pause", with(v.url("pause"), "subject", key)},
 		{"Report an event", with(v.url("event"), "subject", key)},
+		{"Grant a right", with(v.url("grant"), "person", x.Subject.Code)},
 	}
 }

@@ -80,3 +80,97 @@ func (w window) bar(b *strings.Builder, s reach.Span) {
 		fmt.Fprintf(b, `<rect class="low" x="%.1f" y="3" width="%.1f" height="12"/>`, w.x(low), w.x(s.To)-w.x(low))
 	}
 }
+
+// zoneRibbon is one zone on a person's page: their entitlement there, and their rights.
+type zoneRibbon struct {
+	Zone, URL string
+	Line      zoneLine
+	Rights    []rightLine
+}
+
+// rightLine is one right of a person.
+type rightLine struct{ Span, URL, EndURL string }
+
+// zoneRibbons are the restricted zones on a person's page.
+func (v *visit) zoneRibbons(person string) ([]zoneRibbon, string, error) {
+	rights, err := v.b.Rights(v.ctx(), v.actor, v.site.Code, person)
+	if err != nil {
+		return nil, "", err
+	}
+	var out []zoneRibbon
+	shown := ""
+	for _, z := range v.site.Program.Zones {
+		if !z.Restricted {
+			continue
+		}
+		q := book.ReachQuery{Site: v.site.Code, Zone: z.Code, Person: person, At: v.instant()}
+		x, err := v.b.Reach(v.ctx(), v.actor, q)
+		if err != nil {
+			return nil, "", err
+		}
+		w := windowAround(x.At, x.Site.Location)
+		bands, err := v.bands(q, w, x.Rows)
+		if err != nil {
+			return nil, "", err
+		}
+		shown = w.words()
+		for i, r := range x.Rows {
+			l := v.zoneLine(r, x.At, x.Site.Location)
+			l.Name, l.Note, l.Band, l.Do = zoneName(z), "", bands[i], nil
+			out = append(out, zoneRibbon{Zone: z.Code, URL: v.zoneURL(z.Code), Line: l, Rights: v.rightLines(rights, z.Code)})
+		}
+	}
+	return out, shown, nil
+}
+
+// zoneURL leads to the page of a zone, for those who may see it.
+func (v *visit) zoneURL(zone string) string {
+	if !v.may(book.SeeSite) {
+		return ""
+	}
+	return v.url("zones", zone)
+}
+
+// instant is the moment that a page about another day than today shows: its noon, so that what a day begins with and
+// what it ends with are on their sides. Nil is now.
+func (v *visit) instant() *time.Time {
+	if !v.elsewhen() {
+		return nil
+	}
+	noon := v.day().Midnight(v.site.Location).Add(12 * time.Hour)
+	return &noon
+}
+
+func (v *visit) rightLines(rights []book.RightLine, zone string) []rightLine {
+	var out []rightLine
+	for _, r := range rights {
+		if r.Zone != zone {
+			continue
+		}
+		l := rightLine{Span: "Right from " + v.rightMoment(r.From, false), URL: v.entryURL("right", r.Entry, false)}
+		if r.To != nil {
+			l.Span += " to " + v.rightMoment(*r.To, true)
+		}
+		if r.Imported {
+			l.Span += ", imported"
+		}
+		if v.acts(book.KeepRights) && (r.To == nil || civil.DayOf(*r.To, v.site.Location) > v.today()) {
+			l.EndURL = with(v.url("end-right"), "entry", r.Entry, "person", r.Person, "zone", zone)
+		}
+		out = append(out, l)
+	}
+	return out
+}
+
+// rightMoment is a beginning or an end of a right: whole days where it lies on the edge of one.
+func (v *visit) rightMoment(t time.Time, end bool) string {
+	loc := v.site.Location
+	day := civil.DayOf(t, loc)
+	if !t.Equal(day.Midnight(loc)) {
+		return moment(t, loc, v.today())
+	}
+	if end {
+		day--
+	}
+	return shortDay(day, v.today())
+}

@@ -9,7 +9,9 @@ import (
 func (v *visit) rightFields(f *Form) []field {
 	zones := make([]option, 0, len(v.site.Program.Zones))
 	for _, z := range v.site.Program.Zones {
-		zones = append(zones, option{Value: z.Code, Words: orCode(z.Name, "Zone "+z.Code)})
+		if z.Restricted {
+			zones = append(zones, option{Value: z.Code, Words: zoneName(z)})
+		}
 	}
 	return []field{
 		f.Choice("zone", "Which zone", zones).Need(),

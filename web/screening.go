@@ -45,7 +45,7 @@ func screeningForm(v *visit, f *Form) (*formLeaf, error) {
 
 // zoneName is a zone as a person reads it; a name that begins with the zone's code says it all.
 func zoneName(z program.Zone) string {
-	if z.Name == "" {
+	if z.Name == "" || z.Name == z.Code {
 		return "Zone " + z.Code
 	}
 	return z.Name

@@ -19,7 +19,7 @@ import (
 func (v *visit) zoneTabs(current string) []spineLink {
 	var out []spineLink
 	for _, z := range v.site.Program.Zones {
-		out = append(out, spineLink{Name: zoneName(z), URL: v.url("zones", z.Code), Current: z.Code == current})
+		out = append(out, spineLink{Name: "Zone " + z.Code, URL: v.url("zones", z.Code), Current: z.Code == current})
 	}
 	return out
 }
@@ -208,7 +208,7 @@ func zoneSay(x book.Reached, today civil.Day) string {
 		return "Nobody is on staff here, so nobody is entitled to " + zoneName(x.Zone) + "."
 	}
 	if len(in) > 0 && in[0].Until != nil {
-		s += " The next to end is " + in[0].Name + ", " + untilWords(*in[0].Until, x.At, x.Site.Location, today) + "."
+		s += " The next to end is that of " + in[0].Name + ", " + endWords(*in[0].Until, x.Site.Location, today) + "."
 	}
 	return s
 }
@@ -225,11 +225,19 @@ func untilWords(t, at time.Time, loc *time.Location, today civil.Day) string {
 	day := civil.DayOf(t, loc)
 	switch {
 	case t.Equal(day.Midnight(loc)):
-		return "until the end of " + shortDay(day-1, today)
+		return "through " + shortDay(day-1, today)
 	case day == civil.DayOf(at, loc):
 		return "until " + t.In(loc).Format("15:04")
 	}
 	return "until " + moment(t, loc, today)
+}
+
+// endWords says at what moment an entitlement ends.
+func endWords(t time.Time, loc *time.Location, today civil.Day) string {
+	if day := civil.DayOf(t, loc); t.Equal(day.Midnight(loc)) {
+		return "after " + shortDay(day-1, today)
+	}
+	return "on " + moment(t, loc, today)
 }
 
 // bands draws the ribbons of those who are shown.
@@ -271,7 +279,7 @@ func (v *visit) zoneLine(r book.ReachRow, at time.Time, loc *time.Location) zone
 }
 
 func (v *visit) entitledLine(l *zoneLine, r book.ReachRow, at time.Time, loc *time.Location) {
-	l.Disc, l.When, l.Word = disc(standing.Met, 1), "no end in sight", string(standing.Met)
+	l.Disc, l.When = disc(standing.Met, 1), "no end in sight"
 	if r.Until == nil {
 		return
 	}
@@ -282,12 +290,12 @@ func (v *visit) entitledLine(l *zoneLine, r book.ReachRow, at time.Time, loc *ti
 		l.Disc, l.Word = disc(standing.Closing, left.Hours()/lowLongest.Hours()), string(standing.Closing)
 	}
 	if len(r.Ends) > 0 {
-		l.Small = v.endWords(r.Ends[0])
+		l.Small = v.endedBy(r.Ends[0])
 	}
 }
 
-// endWords names what ends an entitlement.
-func (v *visit) endWords(x book.ReachReason) string {
+// endedBy names what ends an entitlement.
+func (v *visit) endedBy(x book.ReachReason) string {
 	if x.Item == "" {
 		return reasonsWithout[x.Standing].ends
 	}
@@ -313,6 +321,8 @@ func (v *visit) reasonWords(x book.ReachReason) string {
 		return s + "cannot be told for want of a fact"
 	case "limited":
 		return s + "cleared for other zones only"
+	case string(standing.Excused):
+		return s + "excused, which opens nothing"
 	}
 	s += x.Standing
 	if x.Due != nil && x.Standing == string(standing.Lapsed) {

@@ -45,7 +45,7 @@ type ReachRow struct {
 }
 
 // ReachReason is one thing that stands against an entitlement: an item with its standing, or without one no-right,
-// right-ended, not-on-staff, paused or no-guard.
+// right-ended, not-on-staff, paused or no-guard. Title is what answers the item.
 type ReachReason struct {
 	Item, Title string
 	Standing    string
@@ -186,6 +186,9 @@ func (v *siteOn) reasons(list []reach.Reason) []ReachReason {
 		out[i] = ReachReason{Item: x.Item, Standing: x.Standing, Due: x.Due}
 		if item, ok := v.Program.Item(x.Item); ok {
 			out[i].Title = cmp.Or(item.Title, item.Code)
+			if len(item.Records) > 0 {
+				out[i].Title = v.whatTitle(item.Records[0])
+			}
 		}
 	}
 	return out

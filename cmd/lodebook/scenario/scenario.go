@@ -83,6 +83,7 @@ func Make(today civil.Day) Site {
 			{"events", "events.csv", eventsTable(t.events)},
 			{"excusals", "excusals.csv", excusalsTable(t.excusals)},
 			{"pauses", "pauses.csv", pausesTable(t.pauses)},
+			{"rights", "rights.csv", rightsTable(a)},
 		},
 		Sheets: t.sheets, Accounts: accounts, Plans: plans(a),
 	}
