@@ -145,6 +145,8 @@ type entryLeaf struct {
 	Reasons     []option
 	Form        *Form
 	SubjectURL  string
+	RemedyURL   string // of a failed record: the form of a remedy
+	Hidden      bool   // it is kept for safety officers
 }
 
 var entrySheet = leafOf[entryLeaf]("entry")
@@ -172,6 +174,10 @@ func (v *visit) entryLeaf(id string, f *Form) (*entryLeaf, error) {
 	}
 	if x.SubjectRef != nil {
 		p.SubjectURL = v.subjectURL(*x.SubjectRef)
+	}
+	p.Hidden = x.Hidden
+	if x.Failed && v.acts(book.KeepRemedies) {
+		p.RemedyURL = with(v.url("remedy"), "record", x.ID)
 	}
 	if x.Batch != "" && v.may(book.SeeBook) {
 		p.BatchURL = v.url("book", x.Batch)

@@ -131,6 +131,12 @@ func (v *visit) showSubject(s standing.Subject) error {
 	p.MayEnd = v.acts(book.Excuse)
 	p.EndURL, p.ConfirmURL = v.url("pause-end"), v.url("confirm")
 	p.Do = v.subjectActs(s)
+	if p.Outages, err = v.outagesOf(s); err != nil {
+		return err
+	}
+	if len(p.Outages) > 0 {
+		p.Say = "It is out of service until a safety officer signs it back. " + p.Say
+	}
 	return fixtureSheet.show(v, 200, (*fixtureLeaf)(p))
 }
 
@@ -158,7 +164,7 @@ func (v *visit) subjectSay(x book.SubjectView, p *personLeaf) string {
 		return s + ", in use until " + shortDay(last, v.today()) + "; nothing is asked of it any more."
 	}
 	if pause := v.pausedOn(x); pause != nil {
-		return s + ", out of service from " + shortDay(pause.From, v.today()) + " to " + shortDayOr(pause.To, v.today(), "no end yet") + "; nothing is asked meanwhile."
+		return s + ", paused from " + shortDay(pause.From, v.today()) + " to " + shortDayOr(pause.To, v.today(), "no end yet") + "; nothing is asked meanwhile."
 	}
 	return s + "; " + v.oweWords(p) + "."
 }
@@ -173,7 +179,10 @@ func (v *visit) subjectActs(s standing.Subject) []act {
 		out = append(out, act{"Change", with(v.url("keep-fixture"), "code", s.Code)})
 	}
 	if v.acts(book.Excuse) {
-		out = append(out, act{"Excuse", with(v.url("excuse"), "subject", key)}, act{"Out of service", with(v.url("pause"), "subject", key)})
+		out = append(out, act{"Excuse", with(v.url("excuse"), "subject", key)}, act{"Pause", with(v.url("pause"), "subject", key)})
+	}
+	if v.acts(book.TakeOut) && (s.Asks == program.AsksFixture || s.Asks == program.AsksZone) {
+		out = append(out, act{"Take out of service", with(v.url("out-of-service"), "subject", key)})
 	}
 	return out
 }

@@ -17,6 +17,7 @@ type gapLine struct {
 	rowLine
 	Reopened string
 	Excuse   string
+	Remedy   act // the open one, or the form of a new one
 }
 
 // gapGroup is the gaps of one item or of one who answers for them: the first few, or a page of all.
@@ -109,7 +110,7 @@ func (v *visit) gapGroups(gaps []*book.Row, by string) []gapGroup {
 			at[key] = i
 			out = append(out, gapGroup{Name: orCode(r.Title, r.Item), key: key})
 			if by == "owner" {
-				out[i].Name = v.ownerName(key)
+				out[i].Name = orCode(r.OwnerName, v.ownerName(key))
 			}
 		}
 		out[i].rows = append(out[i].rows, r)
@@ -144,10 +145,15 @@ func (v *visit) fillGroups(p *gapsLeaf, groups []gapGroup, whole bool) error {
 	if err != nil {
 		return err
 	}
+	remedies, err := v.b.OpenRemedies(v.ctx(), v.actor, v.site.Code)
+	if err != nil {
+		return err
+	}
 	for i := range groups {
 		g := &groups[i]
 		for _, r := range g.rows {
 			l := v.gapLine(*r, again)
+			l.Remedy = v.gapRemedy(*r, remedies)
 			if v.query("by") != "owner" {
 				l.What = "" // the heading says it
 			}
@@ -194,6 +200,9 @@ func (v *visit) gapLine(r book.Row, flags map[string]int) gapLine {
 	l := gapLine{rowLine: v.rowLine(r)}
 	if n := flags[r.Item+" "+subjectKey(r.Subject)]; n > 0 {
 		l.Reopened = "reopened " + map[bool]string{true: "once", false: number(n) + " times"}[n == 1]
+	}
+	if overdueRow(r) {
+		return l
 	}
 	if v.acts(book.Excuse) && !(r.Subject.Asks == program.AsksPerson && r.Subject.Code == v.actor.Person) {
 		l.Excuse = with(v.url("excuse"), "item", r.Item, "subject", subjectKey(r.Subject))

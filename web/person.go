@@ -79,6 +79,7 @@ type personLeaf struct {
 	EndURL         string
 	EraseURL       string
 	When           *asOf
+	Outages        []outageLine // of a fixture or zone
 }
 
 var personSheet = leafOf[personLeaf]("person")

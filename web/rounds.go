@@ -33,6 +33,7 @@ type roundsLeaf struct {
 	Fixtures string
 	SeeAll   bool
 	When     *asOf
+	Outages  []outageLine
 }
 
 var roundsSheet = leafOf[roundsLeaf]("rounds")
@@ -63,6 +64,9 @@ func roundsPage(v *visit) error {
 		}
 	}
 	p.Say = roundSay(x)
+	if p.Outages, err = v.outages(); err != nil {
+		return err
+	}
 	return roundsSheet.show(v, 200, p)
 }
 

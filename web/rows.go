@@ -38,7 +38,9 @@ func (v *visit) rowLine(r book.Row) rowLine {
 	if l.What == "" {
 		l.What = r.Item
 	}
-	if v.may(book.SeeSite) {
+	if r.Subject.Asks == book.AsksRemedy || r.Subject.Asks == book.AsksReport {
+		l.WhatURL = l.WhoURL
+	} else if v.may(book.SeeSite) {
 		l.WhatURL = v.url("checklist", r.Item)
 	} else if r.Subject.Code != v.actor.Person {
 		l.WhoURL = ""
@@ -69,6 +71,10 @@ func subjectKey(s standing.Subject) string { return string(s.Asks) + ":" + s.Cod
 // subjectURL leads to the page of a subject.
 func (v *visit) subjectURL(s standing.Subject) string {
 	switch s.Asks {
+	case book.AsksRemedy:
+		return v.url("remedies", s.Code)
+	case book.AsksReport:
+		return v.reportURL(s.Code)
 	case program.AsksPerson:
 		return v.url("people", s.Code)
 	case program.AsksFixture:

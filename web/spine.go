@@ -32,6 +32,8 @@ const (
 	secDrills    = "Drills"
 	secChecklist = "Checklist"
 	secGaps      = "Gaps"
+	secRemedies  = "Remedies"
+	secIncidents = "Incidents"
 	secBook      = "Book"
 	secImport    = "Import"
 	secJobs      = "Jobs"
@@ -101,6 +103,9 @@ func (v *visit) moreLinks(site, section string) []spineLink {
 			out = append(out, spineLink{Name: name, URL: url, Current: name == section})
 		}
 	}
+	add(site != "" && (v.may(book.SeeSite) || v.may(book.DoRemedies)), secRemedies, siteURL(site, "remedies"))
+	add(site != "" && v.may(book.ReportIncident), secIncidents, siteURL(site, "incidents"))
+	add(site != "" && v.may(book.ReportIncident), "Report an incident", siteURL(site, "incident"))
 	add(site != "" && v.may(book.ImportTables), secImport, siteURL(site, "import"))
 	add(v.may(book.SeeBook), secJobs, "/jobs")
 	add(v.may(book.KeepAccounts), secAccounts, "/accounts")

@@ -47,6 +47,8 @@ type todayLeaf struct {
 	Excusals []waitingLine
 	When     *asOf
 	GapsURL  string
+	Outages  []outageLine
+	ToTell   []reportLine // reports to outside bodies, for a safety officer
 }
 
 // waitingLine is an excusal that waits for a safety officer.
@@ -86,6 +88,9 @@ func todayPage(v *visit) error {
 	if v.acts(book.RecordDone) {
 		p.Do = []act{{"Record a session", v.url("session")}, {"Record a drill", v.url("drill")}}
 	}
+	if v.acts(book.ReportIncident) {
+		p.Do = append(p.Do, act{"Report an incident", v.url("incident")})
+	}
 	if err := v.todayRest(p, st); err != nil {
 		return err
 	}
@@ -112,6 +117,9 @@ func (v *visit) todayRest(p *todayLeaf, st short) error {
 			p.Excusals = append(p.Excusals, waitingLine{Who: x.SubjectName, What: x.Title, Until: shortDayOr(x.To, v.today(), ""), URL: v.url("people", x.SubjectCode)})
 		}
 	}
+	if err := v.todayRemedies(p); err != nil {
+		return err
+	}
 	if v.may(book.SetProgram) {
 		p.Steps = v.firstSteps(st)
 	}
@@ -126,6 +134,9 @@ func (v *visit) todayWithoutPerson(err error) error {
 	p := &todayLeaf{page: page{Title: "Today", Section: secToday, AsOf: v.asOf()}, Head: longDay(v.day(), v.today()), WeekURL: v.url("week")}
 	p.When = p.AsOf
 	p.Say = []string{"This account is linked to no person yet, so nothing of yours can be shown. An administrator can link it."}
+	if v.acts(book.ReportIncident) {
+		p.Do = []act{{"Report an incident", v.url("incident")}}
+	}
 	if err := v.todayRest(p, short{}); err != nil {
 		return err
 	}

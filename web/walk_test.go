@@ -16,7 +16,7 @@ func TestEveryRouteWithEveryRole(t *testing.T) {
 	h := furnished(t)
 	entry := h.record("training/level-2", "person:P1", "2026-11-01", "pass")
 	for _, r := range routes {
-		path := strings.NewReplacer(":site", fell, ":code", "P1", ":kind", "zone", ":zone", "IV", ":item", "TRAIN-L2", ":id", entry, ":name", "reader", ":token", "none", ":file", "lodebook.css").Replace(r.path)
+		path := strings.NewReplacer(":site", fell, ":code", "P1", ":kind", "zone", ":zone", "IV", ":item", "TRAIN-L2", ":id", entry, ":name", "reader", ":number", "1", ":token", "none", ":file", "lodebook.css").Replace(r.path)
 		if strings.Contains(r.path, "fixtures/:code") {
 			path = "/s/" + fell + "/fixtures/V1"
 		}

@@ -7,6 +7,7 @@ import (
 	"time"
 	"unicode/utf8"
 
+	"lodebook/models/book"
 	"lodebook/models/civil"
 	"lodebook/models/program"
 	"lodebook/models/standing"
@@ -133,7 +134,7 @@ func askedOf(n int, asks program.Asks) string {
 	names := map[program.Asks][2]string{
 		program.AsksPerson: {"person", "people"}, program.AsksFixture: {"fixture", "fixtures"}, program.AsksZone: {"zone", "zones"},
 		program.AsksCrew: {"crew", "crews"}, program.AsksPost: {"post", "posts"}, program.AsksDocument: {"document", "documents"},
-		program.AsksSite: {"site", "sites"},
+		program.AsksSite: {"site", "sites"}, book.AsksRemedy: {"remedy", "remedies"}, book.AsksReport: {"report", "reports"},
 	}
 	w := names[asks]
 	return count(n, w[0], w[1])

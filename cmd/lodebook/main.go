@@ -47,6 +47,9 @@ type commands struct {
 	User     userCommand     `cmd:"" help:"Accounts: add, list, disable, role, link."`
 	Schema   schemaCommand   `cmd:"" help:"The JSON Schema of the program file."`
 	Verify   verifyCommand   `cmd:"" help:"Recompute every hash of a book."`
+
+	Remedies  remediesCommand  `cmd:"" help:"Corrective actions: what is open, whose and until when."`
+	Incidents incidentsCommand `cmd:"" help:"Incidents and near misses, for a safety officer (--as)."`
 }
 
 // app is what a command needs from outside.

@@ -325,6 +325,7 @@ func (m *model) entryView(tx *store.Tx, actor Actor, e store.Entry) (EntryView, 
 	if r, ok := bd.(*recordBody); ok {
 		s := subjectOf(r.Subject.Kind, r.Subject.Code)
 		v.SubjectRef, v.Record = &s, r.Record
+		v.Failed = r.Result == Fail && line.SupersededBy == "" && !line.Withdrawn
 	}
 	c := bd.shared()
 	if c.Reason != "" {

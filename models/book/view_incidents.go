@@ -5,6 +5,7 @@ import (
 	"context"
 	"slices"
 	"strconv"
+	"strings"
 	"time"
 
 	"lodebook/models/civil"
@@ -264,3 +265,72 @@ func (b *Book) IncidentNow(ctx context.Context, site string) (string, error) {
 
 // ClockWords is an instant as it is typed into a form of a site.
 func ClockWords(t time.Time, zone *time.Location) string { return clockWords(t, zone) }
+
+// IncidentColumns and RemedyColumns head the tables of incidents and remedies.
+var (
+	IncidentColumns = []string{"site", "number", "kind", "zone", "at", "severity", "anonymous", "people", "what", "who", "action", "reports", "remedies"}
+	RemedyColumns   = []string{"site", "number", "incident", "record", "item", "subject", "severity", "owner", "made", "due", "state", "done", "confirmed", "overdue", "what"}
+)
+
+// Cells are the incident as a row of a table: lists are joined by "; ".
+func (l IncidentLine) Cells(site string) []string {
+	var reports, remedies []string
+	for _, r := range l.Reports {
+		reports = append(reports, strings.TrimSpace(r.Code+" due "+r.Due.String()+" "+map[bool]string{true: "done " + dayOr(r.Done, "")}[r.Done != nil]))
+	}
+	for _, r := range l.Remedies {
+		remedies = append(remedies, strconv.Itoa(r.Number))
+	}
+	return []string{
+		site, strconv.Itoa(l.Number), l.Kind, l.Zone, l.At.Format(time.RFC3339), l.Severity, strconv.FormatBool(l.Anonymous), strings.Join(l.People, "; "),
+		l.What, l.Who, l.Action, strings.Join(reports, "; "), strings.Join(remedies, "; "),
+	}
+}
+
+// Cells are the remedy as a row of a table.
+func (l RemedyLine) Cells(site string) []string {
+	j := l.JSON(site)
+	text := func(s *string) string {
+		if s == nil {
+			return ""
+		}
+		return *s
+	}
+	incident := ""
+	if l.Incident != 0 {
+		incident = strconv.Itoa(l.Incident)
+	}
+	return []string{
+		site, strconv.Itoa(l.Number), incident, l.Record, text(j.Item), text(j.Subject), l.Severity, l.Owner, l.Made.String(), l.Due.String(), l.State,
+		dayOr(l.DoneOn, ""), strconv.FormatBool(j.Confirmed), strconv.FormatBool(l.Overdue), l.What,
+	}
+}
+
+// ReportWaiting is a report to an outside body that is still to be made.
+type ReportWaiting struct {
+	Incident int
+	ReportDue
+}
+
+// ReportsWaiting lists the reports that are still to be made, the soonest first, to a safety officer.
+func (b *Book) ReportsWaiting(ctx context.Context, actor Actor, site string) ([]ReportWaiting, error) {
+	if err := actor.may(SeeIncidents, site); err != nil {
+		return nil, err
+	}
+	var out []ReportWaiting
+	err := b.read(ctx, func(m *model) error {
+		today := m.dayAt(site, b.Now())
+		for _, r := range m.incidentsOf(site, always64) {
+			p := m.site(site).on(m.dayAt(site, r.At)).program
+			for _, x := range m.reportsOf(r, always64) {
+				if x.Done == nil {
+					x.count(p, today)
+					out = append(out, ReportWaiting{r.Number, x})
+				}
+			}
+		}
+		return nil
+	})
+	slices.SortStableFunc(out, func(a, b ReportWaiting) int { return cmp.Compare(a.Due, b.Due) })
+	return out, err
+}

@@ -306,5 +306,6 @@ type EntryView struct {
 	Record     string // of a record: kind/code
 	MayCorrect bool
 	NeedReason bool
+	Failed     bool // a record that failed and stands
 	Hidden     bool // it is kept for safety officers, and the actor is none
 }
