@@ -119,7 +119,7 @@ func (v *siteOn) pressing(p *program.Program, q standing.Query, last civil.Day) 
 	q.Words = []standing.Word{standing.Met}
 	for i := range p.Items {
 		item := &p.Items[i]
-		if item.Cadence.Rule == program.Holds || item.Cadence.Rule == program.After || item.Notice.Before(last) <= v.on {
+		if item.Cadence.Holds != nil || item.Cadence.Rule == program.After || item.Notice.Before(last) <= v.on {
 			continue
 		}
 		q.Item = item.Code

@@ -5,7 +5,7 @@ var faultyItems = []refusedFile{
 	{"item without keys", vocabulary + "  - {code: X}\n", []string{
 		"line 14, column 5: items[0].title: not given; write the demand as a sentence",
 		"line 14, column 5: items[0].asks: not given; write one of person, fixture, zone, crew, post, document or site",
-		"line 14, column 5: items[0]: no cadence is given; write one of every, within, once, each, after (with within) or holds",
+		"line 14, column 5: items[0]: no cadence is given; write one of every, within, once, each, after (with within), holds or cover",
 		"line 14, column 5: items[0].record: not given; write the records that answer it as kind/code, such as training/level-2",
 	}},
 	{"item of the wrong type", vocabulary + `  - X
@@ -59,8 +59,8 @@ var faultyItems = []refusedFile{
 		`line 14, column 86: items[0].early: found "early"; it goes only with every; leave it out`,
 		`line 14, column 98: items[0].count: found "count"; it goes only with within; leave it out`,
 		`line 14, column 108: items[0].days: found "days"; it goes only with each; leave it out`,
-		`line 15, column 89: items[1].first: found "first"; it does not go with after or holds; leave it out`,
-		`line 16, column 54: items[2].first: found "first"; it does not go with after or holds; leave it out`,
+		`line 15, column 89: items[1].first: found "first"; it does not go with after, holds or cover; leave it out`,
+		`line 16, column 54: items[2].first: found "first"; it does not go with after, holds or cover; leave it out`,
 	}},
 	{"words", vocabulary + `  - {code: X, title: T, asks: people, record: training/x, every: P1Y, to: monthend}
   - {code: Y, title: T, asks: person, record: training/x, each: fortnight, days: open}

@@ -31,6 +31,9 @@ func (r *reader) item(o object) Item {
 	it.Asks = Asks(o.word("asks", askWords))
 	it.When = r.selector(o, "when", it.Asks)
 	it.Cadence = r.cadence(o, it.Asks)
+	if c := it.Cadence.Cover; c != nil && it.Cadence.Rule == Cover {
+		it.Cadence.Holds = covered(it.Code, c)
+	}
 	it.Records = r.records(o, it)
 	it.First = r.first(o, it.Cadence)
 	it.Notice = r.notice(o, it.Cadence)
@@ -71,6 +74,12 @@ func (r *reader) selector(o object, key string, asks Asks) *Selector {
 func (r *reader) records(o object, it Item) []string {
 	const accepted = "write the records that answer it as kind/code, such as training/level-2"
 	n := o.get("record")
+	if it.Cadence.Rule == Cover {
+		if n != nil {
+			r.fault(o.place("record"), o.at("record"), shown("record"), "no record answers for who was there", "leave it out")
+		}
+		return nil
+	}
 	if n == nil {
 		// An item that holds is met by what is on record and needs no record of its own.
 		if it.Cadence.Rule != Holds {
@@ -107,8 +116,8 @@ func (r *reader) record(n *node, path string) string {
 	return s
 }
 
-// ruleKeys are the keys of the six cadences, within last: it is one of them only where after is not.
-var ruleKeys = []CadenceRule{Every, Once, Each, After, Holds, Within}
+// ruleKeys are the keys of the cadences, within last: it is one of them only where after is not.
+var ruleKeys = []CadenceRule{Every, Once, Each, After, Holds, Cover, Within}
 
 func (r *reader) cadence(o object, asks Asks) Cadence {
 	c := Cadence{Rule: r.rule(o), Count: o.whole("count", 1, 1)}
@@ -127,12 +136,13 @@ func (r *reader) cadence(o object, asks Asks) Cadence {
 	c.Operating = o.word("days", []string{"all", "operating"}) == "operating"
 	c.After = r.after(o, asks)
 	c.Holds = r.selector(o, "holds", asks)
+	c.Cover = r.cover(o, asks)
 	r.belongs(o, c)
 	r.possible(o, c)
 	return c
 }
 
-// rule finds which of the six cadences the item has.
+// rule finds which of the cadences the item has.
 func (r *reader) rule(o object) CadenceRule {
 	var rule CadenceRule
 	for _, key := range ruleKeys {
@@ -146,7 +156,7 @@ func (r *reader) rule(o object) CadenceRule {
 		r.fault(o.place(string(key)), o.at(string(key)), shown(string(key)), "a second cadence beside "+string(rule), "keep one of the two")
 	}
 	if rule == "" {
-		r.fault(o.n, o.path, "", "no cadence is given", "write one of every, within, once, each, after (with within) or holds")
+		r.fault(o.n, o.path, "", "no cadence is given", "write one of every, within, once, each, after (with within), holds or cover")
 	}
 	if rule == After {
 		o.need("within", "write how soon after the event, such as P2D")
@@ -201,7 +211,7 @@ func (r *reader) belongs(o object, c Cadence) {
 		{"early", c.Rule == Every, "goes only with every"},
 		{"count", c.Rule == Within, "goes only with within"},
 		{"days", c.Rule == Each, "goes only with each"},
-		{"first", c.Rule != After && c.Rule != Holds, "does not go with after or holds"},
+		{"first", c.Rule != After && c.Rule != Holds && c.Rule != Cover, "does not go with after, holds or cover"},
 	} {
 		if o.get(k.key) != nil && !k.ok && c.Rule != "" {
 			r.fault(o.place(k.key), o.at(k.key), shown(k.key), "it "+k.of, "leave it out")

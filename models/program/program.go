@@ -166,7 +166,7 @@ type Sheet struct {
 // CadenceRule is the name of a cadence.
 type CadenceRule string
 
-// The six cadences.
+// The cadences.
 const (
 	Every  CadenceRule = "every"
 	Within CadenceRule = "within"
@@ -174,6 +174,7 @@ const (
 	Each   CadenceRule = "each"
 	After  CadenceRule = "after"
 	Holds  CadenceRule = "holds"
+	Cover  CadenceRule = "cover"
 )
 
 // Cadence is how often an item asks.
@@ -187,7 +188,8 @@ type Cadence struct {
 	Each      civil.Unit      // each
 	Operating bool            // each: days: operating
 	After     []string        // after: event codes
-	Holds     *Selector       // holds
+	Holds     *Selector       // holds; of cover: that nobody is missing by what the book has reckoned
+	Cover     *CoverDemand    // cover
 }
 
 // Item is one line of the checklist.

@@ -85,7 +85,13 @@ func fieldsOf(p *Program, asks Asks) []*attribute {
 		return append(fields, kind,
 			text("zone", p.zoneCodes(), func(s *Subject) string { return s.Zone }))
 	case AsksPost:
-		return append(fields, texts("holders", nil, func(s *Subject) []string { return s.Holders }))
+		return append(fields, texts("holders", nil, func(s *Subject) []string { return s.Holders }),
+			texts("deputies", nil, func(s *Subject) []string { return s.Deputies }))
+	case AsksSite:
+		for _, name := range []string{FactDoorListAge, FactDoorListOpen} {
+			fields = append(fields, &attribute{name: name, typ: types.DoubleType, read: func(s *Subject) any { return s.Facts[name] }})
+		}
+		return fields
 	}
 	return fields
 }

@@ -75,6 +75,8 @@ const everyKey = vocabulary + `
   - {code: Z, title: T, asks: crew, record: drill/z, within: P1Y, count: 2}
   - {code: W, title: T, asks: site, record: check/w, each: day, days: operating}
   - {code: V, title: 1, asks: post, holds: true}
+  - {code: U, title: T, asks: site, cover: {level: L2, at_least: 2, duties: [duty], hours: all}}
+  - {code: UP, title: T, asks: site, cover: {post: MRSO, hours: operating}}
   - {code: 010, title: T, asks: person, record: training/x, once: true}
 in_force_from: 2025-01-01
 calendar: {open: [mon], hours: {mon-fri: "07:30-20:00", "sat, sun": ["22:00-06:00"]}, closed: [2025-01-01]}

@@ -6,18 +6,19 @@ import "strings"
 // absent from the map; the attributes of a kind that may be absent (level, held, crew, zone) are
 // absent when empty.
 type Subject struct {
-	Asks    Asks
-	Code    string
-	Kind    string         // fixture
-	Name    string         // person
-	Level   string         // person: assigned level
-	Held    string         // person: held level
-	Crew    string         // person
-	Zone    string         // fixture
-	Posts   []string       // person
-	Zones   []string       // person: zones of the rights in force
-	Holders []string       // post: codes of the people appointed
-	Facts   map[string]any // string, float64, bool as declared
+	Asks     Asks
+	Code     string
+	Kind     string         // fixture
+	Name     string         // person
+	Level    string         // person: assigned level
+	Held     string         // person: held level
+	Crew     string         // person
+	Zone     string         // fixture
+	Posts    []string       // person
+	Zones    []string       // person: zones of the rights in force
+	Holders  []string       // post: codes of the people appointed
+	Deputies []string       // post: codes of the people appointed as its deputy
+	Facts    map[string]any // string, float64, bool as declared
 }
 
 // Selector is a compiled boolean CEL expression over one subject.
@@ -44,6 +45,13 @@ func (s *Selector) pinned(field string) []string {
 	}
 	return s.pins[field]
 }
+
+// Facts of a site that the book reckons: the age in days of the list of who can open which door, -1 where there is
+// none, and how many withdrawals or unknown badges it asks for.
+const (
+	FactDoorListAge  = "door_list_age"
+	FactDoorListOpen = "door_list_open"
+)
 
 // MissingFact is the error of a selector that needs a fact which is not on record.
 type MissingFact struct{ Facts []string }

@@ -160,7 +160,7 @@ func (p *Program) unanswered() []string {
 func (p *Program) oddities(it *Item) []string {
 	var out []string
 	c := it.Cadence
-	if c.Rule == Holds && (it.Notice.Given != nil || !it.Grace.IsZero()) {
+	if (c.Rule == Holds || c.Rule == Cover) && (it.Notice.Given != nil || !it.Grace.IsZero()) {
 		out = append(out, fmt.Sprintf("Item %s holds or does not: its notice and grace have no effect.", it.Code))
 	}
 	if n := it.Notice.Given; n != nil && c.Rule == Every && !shorter(*n, c.Every) {

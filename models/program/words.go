@@ -33,6 +33,11 @@ func (c Cadence) Words() string {
 		return "within " + span(c.Within, "a ") + " after " + anyOf(c.After)
 	case Holds:
 		return "always"
+	case Cover:
+		if c.Cover == nil || c.Cover.AllDay {
+			return "at all hours"
+		}
+		return "in all operating hours"
 	}
 	return ""
 }

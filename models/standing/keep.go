@@ -3,6 +3,7 @@ package standing
 import (
 	"cmp"
 	"slices"
+	"strings"
 
 	"lodebook/models/civil"
 	"lodebook/models/program"
@@ -50,12 +51,13 @@ func (e *Engine) changed(s *site, l *local, c change) {
 
 // refill brings up to date what hangs on who holds the posts that the person was ever appointed to.
 func (e *Engine) refill(s *site, b *board, v *view, person *local) {
-	readers := addAll(slices.Clone(b.plan.fields["holders"]), 0, b.plan.other)
+	readers := addAll(slices.Clone(b.plan.fields["holders"]), 0, b.plan.fields["deputies"])
+	readers = addAll(readers, 0, b.plan.other)
 	if len(readers) == 0 {
 		return
 	}
 	for post, list := range s.appointed {
-		if no, ok := s.number[Subject{program.AsksPost, post}]; ok && slices.Contains(list, person.no) {
+		if no, ok := s.number[Subject{program.AsksPost, strings.TrimSuffix(post, deputy)}]; ok && slices.Contains(list, person.no) {
 			for _, i := range readers {
 				e.refresh(b, v, i, s.locals[no], &change{fact: "holders"})
 			}

@@ -75,7 +75,7 @@ const factsPrefix = "facts."
 
 func isField(field string) bool {
 	switch field {
-	case "code", "name", "kind", "level", "held", "crew", "zone", "posts", "zones", "holders":
+	case "code", "name", "kind", "level", "held", "crew", "zone", "posts", "zones", "holders", "deputies", program.FactDoorListAge, program.FactDoorListOpen:
 		return true
 	}
 	return strings.HasPrefix(field, factsPrefix)
@@ -93,6 +93,8 @@ func (v *view) field(l *local, field string, on civil.Day) any {
 		return v.posts(l, on)
 	case "holders":
 		return v.holders(l.subject.Code, on)
+	case "deputies":
+		return v.holders(l.subject.Code+deputy, on)
 	case "zones":
 		return v.zones(l, on)
 	}
@@ -194,9 +196,13 @@ func (v *view) fieldTurns(t *turns, l *local, field string) {
 		v.heldTurns(t, l)
 	case field == "posts":
 		v.postTurns(t, l, "")
-	case field == "holders":
-		for _, person := range v.site.appointed[l.subject.Code] {
-			v.postTurns(t, v.site.locals[person], l.subject.Code)
+	case field == "holders" || field == "deputies":
+		post := l.subject.Code
+		if field == "deputies" {
+			post += deputy
+		}
+		for _, person := range v.site.appointed[post] {
+			v.postTurns(t, v.site.locals[person], post)
 		}
 	case isField(field):
 		v.factTurns(t, l, strings.TrimPrefix(field, factsPrefix))
@@ -209,7 +215,7 @@ func (v *view) allTurns(t *turns, l *local) {
 	for i := range l.facts {
 		v.factTurns(t, l, l.facts[i].code)
 	}
-	for _, field := range []string{"held", "posts", "zones", "holders"} {
+	for _, field := range []string{"held", "posts", "zones", "holders", "deputies"} {
 		v.fieldTurns(t, l, field)
 	}
 }

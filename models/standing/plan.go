@@ -79,14 +79,14 @@ func (p *plan) add(i int32, item *program.Item, kinds map[string]int32) {
 		}
 	}
 	p.confers[i] = p.confers[i] || item.Confers != ""
-	if item.Cadence.Rule == program.Holds || item.When != nil && slices.ContainsFunc(item.When.Reads(), followsRecords) {
+	if item.Cadence.Holds != nil || item.When != nil && slices.ContainsFunc(item.When.Reads(), followsRecords) {
 		p.plain[i] = false
 	}
 }
 
 // followsRecords tells whether a field that a selector reads may change with a record.
 func followsRecords(field string) bool {
-	return field == "held" || field == "posts" || field == "holders" || !isField(field)
+	return field == "held" || field == "posts" || field == "holders" || field == "deputies" || !isField(field)
 }
 
 // change is what a line put on record changes of one subject; one of its fields is set.
@@ -142,7 +142,7 @@ func (p *plan) touched(c *change, l *local, to []int32) []int32 {
 
 // factField is the field by which a selector reads a fact of such a subject.
 func factField(asks program.Asks, code string) string {
-	if builtIn(asks, code) {
+	if builtIn(asks, code) || asks == program.AsksSite && isField(code) {
 		return code
 	}
 	return factsPrefix + code

@@ -2,6 +2,7 @@ package standing
 
 import (
 	"slices"
+	"strings"
 
 	"lodebook/models/civil"
 	"lodebook/models/program"
@@ -18,6 +19,10 @@ const (
 
 // appointment is the kind of the records that fill a post; the code behind it is the post's.
 const appointment = "appointment/"
+
+// deputy follows the code of a post whose deputy somebody is appointed: inside, that is a post of its own, which
+// no code can name.
+const deputy = "/deputy"
 
 // builtIn tells whether a fact of such a subject is a field of its own.
 func builtIn(asks program.Asks, code string) bool {
@@ -63,6 +68,9 @@ func (v *view) profile(l *local, on civil.Day, reads []string) program.Subject {
 		if wants("holders") {
 			p.Holders = v.holders(p.Code, on)
 		}
+		if wants("deputies") {
+			p.Deputies = v.holders(p.Code+deputy, on)
+		}
 	}
 	return p
 }
@@ -95,12 +103,12 @@ func (v *view) text(l *local, code string, on civil.Day) string {
 	return s
 }
 
-// posts are those that the person holds on the day, sorted.
+// posts are those that the person holds on the day, sorted; whose deputy they are is not among them.
 func (v *view) posts(person *local, on civil.Day) []string {
 	var out []string
 	deeds := v.past(person).deeds
 	for i := range deeds {
-		if post := v.e.kinds.post[deeds[i].kind]; post != "" && v.holdsPost(person, post, on) {
+		if post := v.e.kinds.post[deeds[i].kind]; post != "" && !strings.HasSuffix(post, deputy) && v.holdsPost(person, post, on) {
 			out = append(out, post)
 		}
 	}

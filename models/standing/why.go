@@ -34,7 +34,7 @@ func (ob *obligation) why(f finding) []string {
 	switch {
 	case f.excusal != nil:
 		ob.whyExcused(&r, f)
-	case ob.item.Cadence.Rule == program.Holds:
+	case ob.item.Cadence.Holds != nil:
 		ob.whyHolds(&r, f)
 	case f.word == Failed:
 		r.say("The last record, %s, failed. It stands as failed until a later record passes.", ob.named(f.record))
@@ -79,6 +79,14 @@ func (ob *obligation) whyExcused(r *reasons, f finding) {
 }
 
 func (ob *obligation) whyHolds(r *reasons, f finding) {
+	if c := ob.item.Cadence.Cover; c != nil {
+		if f.word == Met {
+			r.say("The item asks for %s, %s; nobody was missing on %v by the roster, the records and the appointments that are known.", c.Words(), ob.item.Cadence.Words(), ob.on)
+		} else {
+			r.say("The item asks for %s, %s; on %v there is a time in which fewer are there. Each day since %v has had one.", c.Words(), ob.item.Cadence.Words(), ob.on, max(f.since, ob.begins()))
+		}
+		return
+	}
 	if f.word == Met {
 		r.say("The condition %s holds by what is on record for %v.", ob.item.Cadence.Holds.Source(), ob.on)
 		return
