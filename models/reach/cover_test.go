@@ -226,15 +226,15 @@ func TestUncoveredPost(t *testing.T) {
 	}
 }
 
-// The oracle asks, minute by minute, who is there.
-type minutes struct {
+// clock is the oracle: it asks, minute by minute, who is there.
+type clock struct {
 	*crew
 	item *program.Item
 	able map[string]bool // by person and day
 }
 
 // opens tells, by looking at every minute, when the hours that begin on a day do so and when they end.
-func (m *minutes) opens(on civil.Day) [][2]time.Time {
+func (m *clock) opens(on civil.Day) [][2]time.Time {
 	if m.item.Cadence.Cover.AllDay || len(m.p.Hours) == 0 {
 		return [][2]time.Time{{on.Midnight(m.p.Site.Location), (on + 1).Midnight(m.p.Site.Location)}}
 	}
@@ -272,7 +272,7 @@ func (m *minutes) opens(on civil.Day) [][2]time.Time {
 	return out
 }
 
-func (m *minutes) there(t time.Time) int {
+func (m *clock) there(t time.Time) int {
 	on := civil.DayOf(t, m.p.Site.Location)
 	seen := map[string]bool{}
 	for _, d := range m.duties {
@@ -284,7 +284,7 @@ func (m *minutes) there(t time.Time) int {
 }
 
 // counts tells whether the person counts on the day, by what the evaluator says of the day.
-func (m *minutes) counts(person string, on civil.Day) bool {
+func (m *clock) counts(person string, on civil.Day) bool {
 	key := person + on.String()
 	able, known := m.able[key]
 	if known {
@@ -302,7 +302,7 @@ func (m *minutes) counts(person string, on civil.Day) bool {
 }
 
 // away tells whether an excusal of everything covers the day, which any obligation of the person then says.
-func (m *minutes) away(person string, on civil.Day) bool {
+func (m *clock) away(person string, on civil.Day) bool {
 	s := standing.Subject{Asks: program.AsksPerson, Code: person}
 	list, err := m.Evaluate("S", standing.Query{On: on, Subject: &s, Item: "T1", KnownAt: standing.Always})
 	if err != nil {
@@ -346,7 +346,7 @@ func TestUncoveredIsWhatTheMinutesSay(t *testing.T) {
 			}
 		}
 		item, _ := c.p.Item("C")
-		m := &minutes{c, item, map[string]bool{}}
+		m := &clock{c, item, map[string]bool{}}
 		from, to := first.Midnight(c.p.Site.Location), (first + 4).Midnight(c.p.Site.Location)
 		asked := map[int64]bool{}
 		for on := first - 2; on <= first+4; on++ {
