@@ -136,7 +136,10 @@ func remediesSay(list []book.RemedyLine) string {
 	if open == 0 {
 		return "No remedy is open. From a gap, a failed record or an incident one is made with a click."
 	}
-	s := upperFirst(count(open, "remedy is open", "remedies are open")) + ", " + count(over, "of them overdue.", "of them overdue.")
+	s := upperFirst(count(open, "remedy is open", "remedies are open")) + ", none of them overdue."
+	if over > 0 {
+		s = upperFirst(count(open, "remedy is open", "remedies are open")) + ", " + number(over) + " of them overdue."
+	}
 	if waits > 0 {
 		s += " " + upperFirst(count(waits, "is done and waits for a second person.", "are done and wait for a second person."))
 	}
@@ -445,5 +448,5 @@ func (v *visit) gapRemedy(r book.Row, open map[string]int) act {
 	if !v.acts(book.KeepRemedies) {
 		return act{}
 	}
-	return act{"Make a remedy", with(v.url("remedy"), "item", r.Item, "subject", subjectKey(r.Subject))}
+	return act{"Remedy", with(v.url("remedy"), "item", r.Item, "subject", subjectKey(r.Subject))}
 }

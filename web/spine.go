@@ -92,6 +92,7 @@ func (v *visit) siteLinks(s *spine, at book.SiteView, section string) error {
 	add(see, secDrills, 0, "", "drills")
 	add(see, secChecklist, 0, "", "checklist")
 	add(see, secGaps, counts.Gaps, "gaps", "gaps")
+	add(see || v.may(book.DoRemedies), secRemedies, 0, "", "remedies")
 	add(v.may(book.SeeBook), secBook, 0, "", "book")
 	return nil
 }
@@ -103,7 +104,6 @@ func (v *visit) moreLinks(site, section string) []spineLink {
 			out = append(out, spineLink{Name: name, URL: url, Current: name == section})
 		}
 	}
-	add(site != "" && (v.may(book.SeeSite) || v.may(book.DoRemedies)), secRemedies, siteURL(site, "remedies"))
 	add(site != "" && v.may(book.ReportIncident), secIncidents, siteURL(site, "incidents"))
 	add(site != "" && v.may(book.ReportIncident), "Report an incident", siteURL(site, "incident"))
 	add(site != "" && v.may(book.ImportTables), secImport, siteURL(site, "import"))

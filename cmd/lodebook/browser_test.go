@@ -322,6 +322,7 @@ func (s *stage) everyPage(path string) {
 	for name, url := range pages {
 		s.picture(officer, name, url)
 	}
+	s.remedyPages(officer, path)
 	s.picture(s.browser(path, "member"), "member-today", s.at("today"))
 	s.picture(s.browser(path, "facilities"), "facilities-today", s.at("today"))
 	admin := s.browser(path, "administrator")

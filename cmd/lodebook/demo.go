@@ -165,5 +165,5 @@ func demoOffice(a *app, b *book.Book, s scenario.Site) error {
 			return fmt.Errorf("the demo's plan for %s: %w", p.Day, err)
 		}
 	}
-	return nil
+	return demoIncidents(a, b, s.Code, by)
 }
