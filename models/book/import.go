@@ -91,6 +91,7 @@ type importing struct {
 	entries []store.Entry
 	veils   [][]store.Veil
 	drafts  []draft
+	failed  failedSheets
 	idle    map[string]bool // of each kind and code of record, whether it answers no item
 }
 
@@ -151,7 +152,7 @@ func (s *session) startImport(o ImportOptions, report *ImportReport) (*importing
 	}
 	c := s.check(o.Site)
 	c.imported = true
-	return &importing{session: s, o: o, c: c, book: ns, batch: batch, report: report, seen: map[uuid.UUID]int{}, last: map[string]uuid.UUID{}, idle: map[string]bool{}}, nil
+	return &importing{session: s, o: o, c: c, book: ns, batch: batch, report: report, seen: map[uuid.UUID]int{}, last: map[string]uuid.UUID{}, failed: failedSheets{}, idle: map[string]bool{}}, nil
 }
 
 func (in *importing) run(imp importer) error {
@@ -230,6 +231,7 @@ func (in *importing) one(imp importer, row table.Row) ([]table.Fault, error) {
 		return nil, nil
 	}
 	in.sign(d.body)
+	in.failed.note(in, d.body)
 	return nil, in.take(draft{id: id, site: in.o.Site, batch: in.batch, body: d.body})
 }
 
@@ -346,6 +348,9 @@ func (in *importing) flush() error {
 // finish writes what is left and the entry that names the import.
 func (in *importing) finish() error {
 	if err := in.flush(); err != nil {
+		return err
+	}
+	if err := in.failed.takeOut(in); err != nil {
 		return err
 	}
 	for _, what := range sortedKeys(in.idle) {

@@ -142,7 +142,7 @@ func (m *model) outageDrafts(d draft, b *recordBody, sheet *program.Sheet) []dra
 		if out[subject.key(d.site)] {
 			continue
 		}
-		drafts = append(drafts, draft{id: partID(d.id, subject), site: d.site, batch: d.batch, body: &outageBody{
+		drafts = append(drafts, draft{id: partID(d.id, subject), site: d.site, body: &outageBody{
 			Subject: subject, From: from.UTC().Format(time.RFC3339), Record: d.id, Cause: b.Subject.Code, Another: sheet.BackByAnother,
 		}})
 	}

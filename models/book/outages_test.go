@@ -150,3 +150,30 @@ func TestOutOfServiceByHand(t *testing.T) {
 		t.Errorf("out of service: %s", got)
 	}
 }
+
+// Of an import only what failed when it was last looked at is taken out, and taking the import back signs nothing back.
+func TestImportedFailureTakesItsFixtureOut(t *testing.T) {
+	d := manned(t)
+	d.vent("V2")
+	const table = "record,subject,on,result\ninspection/vent-yearly,V1,2025-03-01,fail\ninspection/vent-yearly,V1,2025-03-02,pass\ninspection/vent-yearly,V2,2026-02-01,pass\ninspection/vent-yearly,V2,2026-02-20,fail\n"
+	r := d.imp("records", table)
+	if got := d.out(); got != "fixture:V2 zone:IV" || len(r.Notes) == 0 || !strings.Contains(r.Notes[0], "V2 is out of service") {
+		t.Fatalf("out of service: %q, notes %v", got, r.Notes)
+	}
+	if again := d.imp("records", table); again.Written != 0 || d.out() != "fixture:V2 zone:IV" {
+		t.Errorf("imported twice: %+v, %s", again, d.out())
+	}
+	list, err := d.OutOfService(t.Context(), d.officer, site)
+	d.ok(err)
+	if !list[0].From.Equal(time.Date(2026, 2, 20, 0, 0, 0, 0, time.UTC)) || !list[0].MaySign {
+		t.Errorf("%+v", list[0])
+	}
+	_, err = d.UndoImport(t.Context(), d.op, r.Batch)
+	d.ok(err)
+	if got := d.out(); got != "fixture:V2 zone:IV" {
+		t.Errorf("after the import was taken back: %q", got)
+	}
+	if dry, err := d.try("records", "record,subject,on,result\ninspection/vent-yearly,V1,2026-02-28,fail\n", book.ImportOptions{DryRun: true}); err != nil || d.out() != "fixture:V2 zone:IV" {
+		t.Errorf("a dry run took something out: %+v %v", dry, err)
+	}
+}

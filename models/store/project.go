@@ -482,6 +482,9 @@ func (t *Tx) LineAt(table string, seq int64) (Line, bool, error) {
 // RecordsAt gives the rows of records that entries of those sequence numbers wrote, in order of
 // recording.
 func (t *Tx) RecordsAt(seqs []int64) ([]RecordRow, error) {
+	if err := t.settle(); err != nil {
+		return nil, err
+	}
 	slices.Sort(seqs)
 	var out []RecordRow
 	for len(seqs) > 0 {
