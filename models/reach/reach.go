@@ -97,6 +97,9 @@ func (r *Reader) intervals(runs []standing.Days) []interval {
 		if d.Last < civil.LastDay {
 			i.to = r.g.Dawn(d.Last + 1)
 		}
+		if !i.from.IsZero() && i.from.Equal(i.to) {
+			continue // days that the zone never had
+		}
 		out = append(out, i)
 	}
 	return out
@@ -141,14 +144,14 @@ func (r *Reader) judge(w *whereabouts, zone string, t time.Time, says func(item 
 	}
 	var shut []Reason
 	asked := false
-	for _, item := range r.g.Items(zone) {
+	for _, item := range r.g.ItemsAt(zone, t) {
 		s := says(item)
 		if !s.Asked {
 			continue
 		}
 		asked = true
 		switch {
-		case s.Open || paused && s.Word == standing.Excused: // the pause is named already
+		case s.Open || paused && s.Word == standing.Excused && !s.Limited: // the pause is named already
 		case s.Limited:
 			shut = append(shut, Reason{item, Limited, s.Due})
 		default:
@@ -165,10 +168,14 @@ func (r *Reader) judge(w *whereabouts, zone string, t time.Time, says func(item 
 // One answers about one person at an instant.
 func (r *Reader) One(person, zone string, t time.Time) Answer {
 	w := r.whereabouts(person, zone)
+	return r.one(&w, person, zone, t)
+}
+
+func (r *Reader) one(w *whereabouts, person, zone string, t time.Time) Answer {
 	a := Answer{Person: person, Zone: zone}
-	a.Entitled, a.Reasons = r.judge(&w, zone, t, func(item string) standing.Stretch { return r.g.At(item, zone, person, t) })
+	a.Entitled, a.Reasons = r.judge(w, zone, t, func(item string) standing.Stretch { return r.g.At(item, zone, person, t) })
 	if a.Entitled {
-		a.Until = r.until(&w, person, zone, t)
+		a.Until = r.until(w, person, zone, t)
 	}
 	return a
 }
@@ -276,20 +283,10 @@ func sameReason(a, b Reason) bool {
 func (r *Reader) At(zone string, t time.Time) []Answer {
 	var out []Answer
 	for _, person := range r.g.People() {
-		if r.concerns(person, zone, t) {
-			out = append(out, r.One(person, zone, t))
+		w := r.whereabouts(person, zone)
+		if anyHolds(w.present, t) || r.g.Holds(person, zone, t) {
+			out = append(out, r.one(&w, person, zone, t))
 		}
 	}
 	return out
-}
-
-// concerns tells whether the person is on staff on the day, or has a right that nobody has ended.
-func (r *Reader) concerns(person, zone string, t time.Time) bool {
-	on := r.g.Day(t)
-	for _, d := range r.g.Present(person) {
-		if d.First <= on && on <= d.Last {
-			return true
-		}
-	}
-	return r.g.Holds(person, zone, t)
 }

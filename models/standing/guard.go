@@ -13,9 +13,10 @@ import (
 // one caller at a time, and good as long as its engine is not written on.
 type Guard struct {
 	v      *view
-	course bool // the boards are of the same moment
-	guards map[string][]string
-	turns  []time.Time // see Stretches
+	course bool                     // the boards are of the same moment
+	guards map[string][]string      // see Items
+	ofDay  map[editionZone][]string // see ItemsAt
+	turns  []time.Time              // see Stretches
 }
 
 // Guard makes ready to tell about a site as known at k. The error tells that the site is not known.
@@ -24,7 +25,7 @@ func (e *Engine) Guard(site string, k int64) (*Guard, error) {
 	if err != nil {
 		return nil, err
 	}
-	g := &Guard{v: v, course: k == e.known, guards: map[string][]string{}}
+	g := &Guard{v: v, course: k == e.known, guards: map[string][]string{}, ofDay: map[editionZone][]string{}}
 	if g.course {
 		v.board = e.board(v.site)
 	}
@@ -67,6 +68,31 @@ func (g *Guard) Items(zone string) []string {
 	return codes
 }
 
+// ItemsAt are the codes of the items that guard the zone by the version of the instant's day, in the program's order.
+func (g *Guard) ItemsAt(zone string, t time.Time) []string {
+	i := g.v.reign(g.v.dayAt(t))
+	if i < 0 {
+		return nil
+	}
+	ed := g.v.reigns[i].edition
+	key := editionZone{ed, zone}
+	codes, ok := g.ofDay[key]
+	if !ok {
+		for i := range ed.Program.Items {
+			if item := &ed.Program.Items[i]; guards(item, zone) {
+				codes = append(codes, item.Code)
+			}
+		}
+		g.ofDay[key] = codes
+	}
+	return codes
+}
+
+type editionZone struct {
+	*edition
+	zone string
+}
+
 // guards tells whether the item keeps the zone: only those can that ask a person and have every, once or after.
 func guards(item *program.Item, zone string) bool {
 	switch item.Cadence.Rule {
@@ -76,12 +102,69 @@ func guards(item *program.Item, zone string) bool {
 	return false
 }
 
-// At is what the item says at an instant.
+// At is what the item says at an instant. Due is there only where it is asked and not open.
 func (g *Guard) At(item, zone, person string, t time.Time) Stretch {
-	l := g.v.local(Subject{program.AsksPerson, person})
-	s := g.at(item, zone, l, t, g.v.dayAt(t))
+	l := g.person(person)
+	on := g.v.dayAt(t)
+	s, ok := g.byCourse(item, zone, l, on)
+	if !ok {
+		s = g.at(item, zone, l, t, on)
+	}
 	s.From = t
 	return s
+}
+
+// byCourse is what the item says through a day by its course alone; false where that does not tell, because
+// something was done or happened on the day, or the item is shut and it takes more to say why.
+func (g *Guard) byCourse(code, zone string, l *local, on civil.Day) (Stretch, bool) {
+	if !g.course {
+		return Stretch{}, false
+	}
+	ed := g.v.edition(on)
+	if ed == nil || ed.byCode[code] == nil || !guards(ed.byCode[code], zone) {
+		return Stretch{}, true
+	}
+	if g.stirs(ed, code, l, on, on) || g.restricted(ed, code, l) {
+		return Stretch{}, false
+	}
+	state := stateOn(g.points(code, l), on)
+	switch {
+	case state == uint8(none):
+		return Stretch{}, true
+	case opens(state):
+		return Stretch{Asked: true, Open: true, Word: Words[wordOf[state]]}, true
+	}
+	return Stretch{}, false
+}
+
+// stirs tells whether anything was done or happened from one day through another that bears on the item. Ended and
+// unknown lines count as well: then it says yes too often.
+func (g *Guard) stirs(ed *edition, code string, l *local, from, to civil.Day) bool {
+	item := ed.byCode[code]
+	for _, what := range item.Records {
+		list := g.v.records(l, what)
+		for i := len(list) - 1; i >= 0; i-- { // in order of their days in UTC, a day at most from those of any zone
+			r := &list[i]
+			day := r.in(time.UTC)
+			if day < from-1 {
+				break
+			}
+			if r.at != untimed {
+				day = r.in(ed.loc)
+			}
+			if from <= day && day <= to {
+				return true
+			}
+		}
+	}
+	for _, event := range item.Cadence.After {
+		for _, ev := range g.v.past(l).eventsOf(event) {
+			if day := dayIn(ev.Day, ev.Time, ed.loc); from <= day && day <= to {
+				return true
+			}
+		}
+	}
+	return false
 }
 
 // at judges the item by what counts at an instant of a day: all that is of earlier days, and of the day itself what
@@ -153,8 +236,9 @@ func begun(events []happening, on civil.Day, t time.Time) []happening {
 // Stretches is what the item says of the person and the zone over all time, in order; neighbours differ.
 func (g *Guard) Stretches(item, zone, person string) []Stretch {
 	v := g.v
-	l := v.local(Subject{program.AsksPerson, person})
+	l := g.person(person)
 	g.itemTurns(item, l, civil.FirstDay)
+	g.startTurns(item, l)
 	out := []Stretch{{}}
 	for _, t := range g.turns {
 		s := g.at(item, zone, l, t, v.dayAt(t))
@@ -169,7 +253,11 @@ func (g *Guard) Stretches(item, zone, person string) []Stretch {
 // open, rests the first one before that at which it is not asked. Either is zero where there is none.
 func (g *Guard) Ends(item, zone, person string, t time.Time) (shuts, rests time.Time) {
 	l := g.person(person)
-	g.itemTurns(item, l, g.v.dayAt(t))
+	on := g.v.dayAt(t)
+	if g.settled(item, zone, l, on) {
+		return g.courseEnds(item, l, on)
+	}
+	g.itemTurns(item, l, on)
 	for _, turn := range g.turns {
 		if !turn.After(t) {
 			continue
@@ -180,6 +268,49 @@ func (g *Guard) Ends(item, zone, person string, t time.Time) (shuts, rests time.
 		}
 		if !s.Asked && rests.IsZero() {
 			rests = turn
+		}
+	}
+	return time.Time{}, rests
+}
+
+// restricted tells whether any record that answers the item has a limit, about which courses say nothing.
+func (g *Guard) restricted(ed *edition, code string, l *local) bool {
+	if len(g.v.e.limits.zones) == 0 {
+		return false
+	}
+	for _, what := range ed.byCode[code].Records {
+		if slices.ContainsFunc(g.v.records(l, what), func(r record) bool { return r.limit != 0 }) {
+			return true
+		}
+	}
+	return false
+}
+
+// settled tells whether the course of the item says all that there is from a day on: nothing was done or happens then,
+// and no other version comes.
+func (g *Guard) settled(code, zone string, l *local, on civil.Day) bool {
+	v := g.v
+	i := v.reign(on)
+	if !g.course || i < 0 || i < len(v.reigns)-1 {
+		return false
+	}
+	item := v.reigns[i].byCode[code]
+	return item != nil && guards(item, zone) && !g.stirs(v.reigns[i].edition, code, l, on, civil.LastDay) && !g.restricted(v.reigns[i].edition, code, l)
+}
+
+// courseEnds is Ends by the course.
+func (g *Guard) courseEnds(code string, l *local, on civil.Day) (shuts, rests time.Time) {
+	points := g.points(code, l)
+	for i, p := range points {
+		switch {
+		case p.day() <= on:
+		case i+1 < len(points) && g.v.dawn(p.day()).Equal(g.v.dawn(points[i+1].day())): // through a day that never was
+		case p.state() == uint8(none):
+			if rests.IsZero() {
+				rests = g.v.dawn(p.day())
+			}
+		case !opens(p.state()):
+			return g.v.dawn(p.day()), rests
 		}
 	}
 	return time.Time{}, rests
@@ -220,6 +351,21 @@ func (g *Guard) itemTurns(code string, l *local, since civil.Day) {
 			}
 		}
 	}
+	g.sortTurns()
+}
+
+// startTurns adds the days on which the item may begin to be asked from another start: its word may stay then, but a
+// due day that is counted from the start does not.
+func (g *Guard) startTurns(code string, l *local) {
+	t := turns{after: dayBefore, upTo: civil.LastDay}
+	g.v.askTurns(&t, code, l)
+	for _, d := range t.days {
+		g.turns = append(g.turns, g.v.dawn(d))
+	}
+	g.sortTurns()
+}
+
+func (g *Guard) sortTurns() {
 	slices.SortFunc(g.turns, time.Time.Compare)
 	g.turns = slices.CompactFunc(g.turns, time.Time.Equal)
 }

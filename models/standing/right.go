@@ -136,13 +136,23 @@ func (v *view) zone(on civil.Day) *time.Location {
 	return v.reigns[max(0, v.reign(on))].loc
 }
 
-// dawn is the first instant of the day at the site.
-func (v *view) dawn(on civil.Day) time.Time { return on.Midnight(v.zone(on)).UTC() }
+// dawn is the first instant of the day at the site. It is remembered: what people hang on falls on the same days.
+func (v *view) dawn(on civil.Day) time.Time {
+	t, ok := v.dawns[on]
+	if !ok {
+		t = on.Midnight(v.zone(on)).UTC()
+		if v.dawns == nil {
+			v.dawns = map[civil.Day]time.Time{}
+		}
+		v.dawns[on] = t
+	}
+	return t
+}
 
 // dayAt is the day of the instant at the site. Where versions differ in their time zones it is the one between
 // whose dawn and the next one's the instant lies.
 func (v *view) dayAt(t time.Time) civil.Day {
-	d := civil.DayOf(t, v.zone(civil.DayOf(t, time.UTC)))
+	d := civil.DayOf(t, time.UTC)
 	for v.dawn(d).After(t) {
 		d--
 	}

@@ -4,6 +4,7 @@ import (
 	"cmp"
 	"fmt"
 	"slices"
+	"time"
 
 	"lodebook/models/civil"
 	"lodebook/models/program"
@@ -27,10 +28,11 @@ type view struct {
 
 // scratch is what a view writes into while it judges.
 type scratch struct {
-	obligation obligation  // see verdict
-	deeds      []deed      // see gather
-	turnDays   turns       // see segments
-	due        civil.Day   // see walk
+	obligation obligation // see verdict
+	deeds      []deed     // see gather
+	turnDays   turns      // see segments
+	due        civil.Day  // see walk
+	dawns      map[civil.Day]time.Time
 	days       []civil.Day // what the days of standings point into
 }
 
