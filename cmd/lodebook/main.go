@@ -32,21 +32,23 @@ const (
 
 // commands is every subcommand; each stands in a file of its own.
 type commands struct {
-	Demo     demoCommand     `cmd:"" help:"A throwaway book with an invented site, served at once."`
-	Open     openCommand     `cmd:"" help:"Make a book, add a site to it, or give a site a new version of its program."`
-	Serve    serveCommand    `cmd:"" help:"The web app, the API and the jobs."`
-	Import   importCommand   `cmd:"" help:"Bring in people, fixtures, records, events, excusals, pauses or rights from CSV or XLSX."`
-	Standing standingCommand `cmd:"" help:"Standings on any day."`
-	Gaps     gapsCommand     `cmd:"" help:"What falls short."`
-	Reach    reachCommand    `cmd:"" help:"Who is entitled to a zone, until when, and why not."`
-	Job      jobCommand      `cmd:"" help:"Run one scheduled job now."`
-	Backup   backupCommand   `cmd:"" help:"A consistent copy of a live book."`
-	Restore  restoreCommand  `cmd:"" help:"Put a verified copy in the place of a book."`
-	Move     moveCommand     `cmd:"" help:"Copy a book from a file to a PostgreSQL database, or back."`
-	Erase    eraseCommand    `cmd:"" help:"Make a person's names and the texts about them unreadable for good."`
-	User     userCommand     `cmd:"" help:"Accounts: add, list, disable, role, link."`
-	Schema   schemaCommand   `cmd:"" help:"The JSON Schema of the program file."`
-	Verify   verifyCommand   `cmd:"" help:"Recompute every hash of a book."`
+	Demo       demoCommand       `cmd:"" help:"A throwaway book with an invented site, served at once."`
+	Open       openCommand       `cmd:"" help:"Make a book, add a site to it, or give a site a new version of its program."`
+	Serve      serveCommand      `cmd:"" help:"The web app, the API and the jobs."`
+	Import     importCommand     `cmd:"" help:"Bring in people, fixtures, records, events, excusals, pauses or rights from CSV or XLSX."`
+	Standing   standingCommand   `cmd:"" help:"Standings on any day."`
+	Gaps       gapsCommand       `cmd:"" help:"What falls short."`
+	Reach      reachCommand      `cmd:"" help:"Who is entitled to a zone, until when, and why not."`
+	Passages   passagesCommand   `cmd:"" help:"Door events of a time, each held against who was entitled."`
+	RightsDiff rightsDiffCommand `cmd:"" help:"What to withdraw and what to add in the doors' own system."`
+	Job        jobCommand        `cmd:"" help:"Run one scheduled job now."`
+	Backup     backupCommand     `cmd:"" help:"A consistent copy of a live book."`
+	Restore    restoreCommand    `cmd:"" help:"Put a verified copy in the place of a book."`
+	Move       moveCommand       `cmd:"" help:"Copy a book from a file to a PostgreSQL database, or back."`
+	Erase      eraseCommand      `cmd:"" help:"Make a person's names and the texts about them unreadable for good."`
+	User       userCommand       `cmd:"" help:"Accounts: add, list, disable, role, link."`
+	Schema     schemaCommand     `cmd:"" help:"The JSON Schema of the program file."`
+	Verify     verifyCommand     `cmd:"" help:"Recompute every hash of a book."`
 
 	Remedies  remediesCommand  `cmd:"" help:"Corrective actions: what is open, whose and until when."`
 	Incidents incidentsCommand `cmd:"" help:"Incidents and near misses, for a safety officer (--as)."`

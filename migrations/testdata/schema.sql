@@ -160,6 +160,13 @@ CREATE TABLE flags (
     PRIMARY KEY (site, item, kind, code)
 );
 
+CREATE TABLE holders (
+    batch TEXT NOT NULL,
+    badge TEXT NOT NULL,
+    door TEXT NOT NULL,
+    PRIMARY KEY (batch, badge, door)
+);
+
 CREATE TABLE incidents (
     seq BIGINT NOT NULL REFERENCES entries (seq),
     n BIGINT NOT NULL,
@@ -187,6 +194,24 @@ CREATE TABLE links (
     used TEXT
 );
 
+CREATE TABLE marks (
+    seq BIGINT NOT NULL REFERENCES entries (seq),
+    n BIGINT NOT NULL,
+    ended BIGINT NOT NULL,
+    entry TEXT NOT NULL,
+    batch TEXT NOT NULL,
+    site TEXT NOT NULL,
+    at_time TEXT NOT NULL,
+    door TEXT NOT NULL,
+    badge TEXT NOT NULL,
+    touched BIGINT NOT NULL,
+    PRIMARY KEY (seq, n)
+);
+
+CREATE INDEX marks_ended ON marks (ended) WHERE ended > 0;
+
+CREATE INDEX marks_touched ON marks (touched) WHERE touched > 0;
+
 CREATE TABLE meta (
     name TEXT NOT NULL PRIMARY KEY,
     value TEXT NOT NULL
@@ -212,6 +237,16 @@ CREATE TABLE outages (
 
 CREATE INDEX outages_ended ON outages (ended) WHERE ended > 0;
 
+CREATE TABLE passages (
+    site TEXT NOT NULL,
+    at_micro BIGINT NOT NULL,
+    door TEXT NOT NULL,
+    badge TEXT NOT NULL,
+    direction TEXT NOT NULL,
+    batch TEXT NOT NULL,
+    PRIMARY KEY (site, at_micro, door, badge, direction)
+);
+
 CREATE TABLE people (
     seq BIGINT NOT NULL REFERENCES entries (seq),
     n BIGINT NOT NULL,
@@ -223,7 +258,7 @@ CREATE TABLE people (
     email TEXT NOT NULL,
     badge TEXT NOT NULL,
     erased BOOLEAN NOT NULL,
-    touched BIGINT NOT NULL,
+    touched BIGINT NOT NULL, from_day TEXT,
     PRIMARY KEY (seq, n)
 );
 

@@ -182,6 +182,10 @@ func (d *desk) fillMore() {
 	_, err := d.EndRight(d.Context(), d.officer, right, "2026-03-01 12:00", "works elsewhere now")
 	d.ok(err)
 	d.fillRemedies()
+	d.now = d.now.Add(time.Second)
+	d.imp("passages", "at,door,badge,direction\n2026-03-01T09:00:00Z,D9,B-17,in\n")
+	_, err = d.Explain(d.Context(), d.officer, site, book.MarkForm{At: "2026-03-01T09:00:00Z", Door: "D9", Badge: "B-17", Note: "a delivery, seen in by Runa"})
+	d.ok(err)
 }
 
 func TestRebuildMakesTheSameProjections(t *testing.T) {

@@ -6,7 +6,6 @@ import (
 	"fmt"
 	"iter"
 	"runtime"
-	"slices"
 	"strings"
 	"sync"
 
@@ -102,8 +101,8 @@ func newBulk(s *session, next int64) *bulk {
 // table takes one table in.
 func (k *bulk) table(t BulkTable) (ImportReport, error) {
 	report := ImportReport{Faults: []table.Fault{}}
-	if !slices.Contains(Tables, t.Table) {
-		return report, invalid("table", t.Table, "is no table that can be imported", "one of "+strings.Join(Tables, ", "))
+	if bulkKinds[t.Table] == "" {
+		return report, invalid("table", t.Table, "is no table that can be imported", "one of "+strings.Join(sortedKeys(bulkKinds), ", "))
 	}
 	if err := k.actor.may(ImportTables, t.Site); err != nil {
 		return report, err

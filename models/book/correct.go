@@ -5,7 +5,9 @@ import (
 	"errors"
 	"fmt"
 	"strings"
+	"time"
 
+	"lodebook/models/civil"
 	"lodebook/models/program"
 	"lodebook/models/store"
 )
@@ -58,6 +60,13 @@ func (b *Book) UndoImport(ctx context.Context, actor Actor, batch string) (Recei
 		size, err := s.tx.Size()
 		if err != nil {
 			return err
+		}
+		for _, r := range s.m.batches {
+			if _, doors := doorTables[r.Table]; doors && r.ID == batch {
+				if err := s.tx.RemoveImported(batch); err != nil {
+					return err
+				}
+			}
 		}
 		return endBatch(s.tx, batch, size-1)
 	})
@@ -136,7 +145,41 @@ func (s *session) erase(person string) error {
 	if err := s.tx.EraseVeils(append(veils, about...)); err != nil {
 		return err
 	}
+	if err := s.blankBadges(person); err != nil {
+		return err
+	}
 	return blankRows(s.tx, person, size-1)
+}
+
+// blankBadges takes the badges that the person bore out of the door events of the times in which they did.
+func (s *session) blankBadges(person string) error {
+	token := ""
+	for _, r := range s.m.people.get(person) {
+		if r.Badge == "" {
+			continue
+		}
+		if token == "" {
+			var err error
+			if token, err = s.b.newID(s.now); err != nil {
+				return err
+			}
+		}
+		for _, span := range s.m.badgeSpans(r.Badge, person) {
+			for _, site := range s.m.siteCodes() {
+				from, to := time.Time{}, time.Time{}
+				if span[0] > civil.FirstDay {
+					from = span[0].Midnight(s.m.zone(site))
+				}
+				if span[1] < civil.LastDay {
+					to = (span[1] + 1).Midnight(s.m.zone(site))
+				}
+				if err := s.tx.BlankBadge(site, r.Badge, "erased-"+token, from, to); err != nil {
+					return err
+				}
+			}
+		}
+	}
+	return nil
 }
 
 // blankRows takes out of the projected rows what was erased of a person.
@@ -152,6 +195,11 @@ func blankRows(tx *store.Tx, person string, seq int64) error {
 		return err
 	}
 	for _, v := range veils {
+		if v.Path == "badge" {
+			if err := tx.BlankMark(v.Seq, seq); err != nil {
+				return err
+			}
+		}
 		fact, ok := strings.CutPrefix(v.Path, "facts.")
 		if !ok {
 			continue

@@ -88,6 +88,7 @@ var newBody = map[string]func() body{
 	kindEvent:      func() body { return new(eventBody) },
 	kindExcusal:    func() body { return new(excusalBody) },
 	kindRight:      func() body { return new(rightBody) },
+	kindMark:       func() body { return new(markBody) },
 	kindPause:      func() body { return new(pauseBody) },
 	kindWithdrawal: func() body { return new(withdrawalBody) },
 	kindErasure:    func() body { return new(erasureBody) },

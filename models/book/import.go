@@ -51,7 +51,7 @@ type importer struct {
 }
 
 // Tables are the tables that can be imported.
-var Tables = []string{"people", "fixtures", "records", "events", "excusals", "pauses", "rights"}
+var Tables = []string{"people", "fixtures", "records", "events", "excusals", "pauses", "rights", "passages", "holders"}
 
 var importers map[string]importer
 
@@ -105,7 +105,8 @@ var errNothingStays = errors.New("nothing is to stay of this import")
 func (b *Book) Import(ctx context.Context, actor Actor, o ImportOptions) (ImportReport, error) {
 	report := ImportReport{Faults: []table.Fault{}}
 	imp, ok := importers[o.Table]
-	if !ok {
+	_, doors := doorTables[o.Table]
+	if !ok && !doors {
 		return report, invalid("table", o.Table, "is no table that can be imported", "one of "+strings.Join(Tables, ", "))
 	}
 	if err := actor.may(ImportTables, o.Site); err != nil {
@@ -116,7 +117,12 @@ func (b *Book) Import(ctx context.Context, actor Actor, o ImportOptions) (Import
 		if err != nil {
 			return err
 		}
-		if err := in.run(imp); err != nil {
+		if doors {
+			err = in.runDoors()
+		} else {
+			err = in.run(imp)
+		}
+		if err != nil {
 			return err
 		}
 		if o.DryRun || report.Refused(o.Partial) {

@@ -44,9 +44,23 @@ func (b *personBody) validate(c *check) []Fault {
 	return append(faults, c.checkFacts(b.Facts, b.From, c.personFacts())...)
 }
 
+// badgeFrom is the day from which the badge is the person's: the one from which facts hold, else the first of the
+// stint, else the one on which it was recorded.
+func (b *personBody) badgeFrom(at applied) *civil.Day {
+	switch {
+	case b.Badge.IsZero():
+		return nil
+	case b.From != nil:
+		return b.From
+	case b.Stint != nil && b.Stint.First != nil:
+		return b.Stint.First
+	}
+	return dayPtr(civil.DayOf(at.at, at.zone(at.site)))
+}
+
 func (b *personBody) apply(at applied) []any {
 	rows := []any{store.PersonRow{
-		Line: at.line, Code: b.Code, Name: b.Name.Value, Email: b.Email.Value, Badge: b.Badge.Value,
+		Line: at.line, Code: b.Code, Name: b.Name.Value, Email: b.Email.Value, Badge: b.Badge.Value, From: b.badgeFrom(at),
 	}}
 	kind := string(program.AsksPerson)
 	if b.Stint != nil {

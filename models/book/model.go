@@ -33,6 +33,8 @@ type model struct {
 	sites    map[string]*siteModel
 	people   shelf[string, []store.PersonRow]
 	named    shelf[uint64, []string] // codes of people by the hash of each name that they bear or bore
+	badges   shelf[string, []string] // codes of people by each badge that they bear or bore
+	marks    shelf[markKey, []store.MarkRow]
 	fixtures shelf[siteCode, []store.FixtureRow]
 	stints   shelf[store.SubjectKey, []store.StintRow]
 	facts    shelf[store.SubjectKey, []store.FactRow]
@@ -46,11 +48,20 @@ type model struct {
 	batches  []store.BatchRow
 }
 
+// markKey is where and when a passage was that is explained.
+type markKey struct {
+	site, door string
+	micro      int64
+}
+
+func keyOfMark(r store.MarkRow) markKey { return markKey{r.Site, r.Door, r.At.UnixMicro()} }
+
 type siteCode struct{ site, code string }
 
 func newModel() *model {
 	m := &model{own: &owner{}, engine: standing.New(), sites: map[string]*siteModel{}}
-	m.named = newShelf[uint64, []string](m.own)
+	m.named, m.badges = newShelf[uint64, []string](m.own), newShelf[string, []string](m.own)
+	m.marks = newShelf[markKey, []store.MarkRow](m.own)
 	m.people, m.fixtures = newShelf[string, []store.PersonRow](m.own), newShelf[siteCode, []store.FixtureRow](m.own)
 	m.stints, m.facts = newShelf[store.SubjectKey, []store.StintRow](m.own), newShelf[store.SubjectKey, []store.FactRow](m.own)
 	m.events, m.excusals = newShelf[store.SubjectKey, []store.EventRow](m.own), newShelf[store.SubjectKey, []store.ExcusalRow](m.own)
@@ -67,7 +78,7 @@ func (m *model) fork() *model {
 	f.own = &owner{}
 	f.engine = m.engine.Fork()
 	f.sites = maps.Clone(m.sites)
-	f.named = m.named.fork(f.own)
+	f.named, f.badges, f.marks = m.named.fork(f.own), m.badges.fork(f.own), m.marks.fork(f.own)
 	f.people, f.fixtures = m.people.fork(f.own), m.fixtures.fork(f.own)
 	f.stints, f.facts = m.stints.fork(f.own), m.facts.fork(f.own)
 	f.events, f.excusals = m.events.fork(f.own), m.excusals.fork(f.own)
@@ -117,6 +128,7 @@ func (m *model) take(d store.Delta) error {
 	for _, r := range d.People {
 		put(&m.people, r.Code, r, func(r store.PersonRow) int64 { return r.Seq }, always)
 		m.putName(r)
+		m.putBadge(r)
 	}
 	for _, r := range d.Fixtures {
 		put(&m.fixtures, siteCode{r.Site, r.Code}, r, func(r store.FixtureRow) int64 { return r.Seq }, always)
@@ -168,6 +180,9 @@ func (m *model) takeHappenings(d store.Delta) {
 	for _, r := range d.Rights {
 		put(&m.rights, personAt(r.Site, r.Person), r, func(r store.RightRow) int64 { return r.Seq }, always)
 		m.putRight(r)
+	}
+	for _, r := range d.Marks {
+		put(&m.marks, keyOfMark(r), r, func(r store.MarkRow) int64 { return r.Seq }, always)
 	}
 }
 

@@ -67,7 +67,7 @@ func (c *check) personBody(f PersonForm) (*personBody, []Fault) {
 	for _, field := range []struct {
 		to       *Veiled
 		was, now string
-	}{{&body.Name, old.Name, f.Name}, {&body.Email, old.Email, f.Email}, {&body.Badge, old.Badge, f.Badge}} {
+	}{{&body.Name, old.Name, f.Name}, {&body.Email, old.Email, f.Email}} {
 		if field.now != "" && field.now != field.was {
 			*field.to = veiled(field.now, f.Code)
 		}
@@ -81,7 +81,10 @@ func (c *check) personBody(f PersonForm) (*personBody, []Fault) {
 		faults = append(faults, *fault)
 	}
 	body.Facts = c.newFacts(factKey(c.site, program.AsksPerson, f.Code), values, from)
-	if len(body.Facts) > 0 {
+	if f.Badge != "" && (c.m.badgeOf(f.Code, from, always64) != f.Badge || c.m.badgeHolder(f.Badge, from, always64) != f.Code) {
+		body.Badge = veiled(f.Badge, f.Code)
+	}
+	if len(body.Facts) > 0 || !body.Badge.IsZero() {
 		body.From = &from
 	}
 	return body, faults

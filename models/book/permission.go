@@ -50,26 +50,28 @@ type Action string
 
 // The actions.
 const (
-	SeeOwn       Action = "see-own"       // one's own standings, and what one may record
-	SeeSite      Action = "see-site"      // people, fixtures, standings, gaps, checklist
-	SeeBook      Action = "see-book"      // entries and jobs
-	FillSheet    Action = "fill-sheet"    // inspections and checks, where the sheet names one
-	RecordDone   Action = "record-done"   // trainings, screenings, drills, reviews, appointments
-	Acknowledge  Action = "acknowledge"   // one's own acknowledgements
-	ReportEvent  Action = "report-event"  // that something happened to a subject
-	Excuse       Action = "excuse"        // excusals and pauses
-	KeepRights   Action = "keep-rights"   // who may enter which zone
-	KeepPeople   Action = "keep-people"   // people, their stints and facts
-	KeepFixtures Action = "keep-fixtures" // fixtures and their facts
-	Correct      Action = "correct"       // supersede or withdraw somebody else's entry
-	CorrectOwn   Action = "correct-own"   // supersede or withdraw one's own entry
-	PlanDrills   Action = "plan-drills"
-	SetProgram   Action = "set-program" // a new version of a site's program
-	OpenSite     Action = "open-site"   // a new site
-	ImportTables Action = "import-tables"
-	KeepAccounts Action = "keep-accounts"
-	Erase        Action = "erase" // forget a person
-	RunJobs      Action = "run-jobs"
+	SeeOwn         Action = "see-own"      // one's own standings, and what one may record
+	SeeSite        Action = "see-site"     // people, fixtures, standings, gaps, checklist
+	SeeBook        Action = "see-book"     // entries and jobs
+	FillSheet      Action = "fill-sheet"   // inspections and checks, where the sheet names one
+	RecordDone     Action = "record-done"  // trainings, screenings, drills, reviews, appointments
+	Acknowledge    Action = "acknowledge"  // one's own acknowledgements
+	ReportEvent    Action = "report-event" // that something happened to a subject
+	Excuse         Action = "excuse"       // excusals and pauses
+	KeepRights     Action = "keep-rights"  // who may enter which zone
+	SeePassages    Action = "see-passages" // door events, and who can open which door
+	ExplainPassage Action = "explain-passage"
+	KeepPeople     Action = "keep-people"   // people, their stints and facts
+	KeepFixtures   Action = "keep-fixtures" // fixtures and their facts
+	Correct        Action = "correct"       // supersede or withdraw somebody else's entry
+	CorrectOwn     Action = "correct-own"   // supersede or withdraw one's own entry
+	PlanDrills     Action = "plan-drills"
+	SetProgram     Action = "set-program" // a new version of a site's program
+	OpenSite       Action = "open-site"   // a new site
+	ImportTables   Action = "import-tables"
+	KeepAccounts   Action = "keep-accounts"
+	Erase          Action = "erase" // forget a person
+	RunJobs        Action = "run-jobs"
 
 	ReportIncident  Action = "report-incident"
 	SeeIncidents    Action = "see-incidents" // and all that is written about them
@@ -83,7 +85,7 @@ const (
 var actionWords = map[Action]string{
 	SeeOwn: "see this", SeeSite: "see the site's records", SeeBook: "read the book's entries",
 	FillSheet: "record an inspection or check", RecordDone: "record trainings, screenings, drills and reviews",
-	Acknowledge: "acknowledge", ReportEvent: "report an event", Excuse: "excuse or pause", KeepRights: "grant or withdraw a right",
+	Acknowledge: "acknowledge", ReportEvent: "report an event", Excuse: "excuse or pause", KeepRights: "grant or withdraw a right", SeePassages: "see door events", ExplainPassage: "explain a passage",
 	KeepPeople: "change people", KeepFixtures: "change fixtures", Correct: "correct another's entry",
 	CorrectOwn: "correct an entry", PlanDrills: "plan a drill", SetProgram: "change the checklist",
 	OpenSite: "open a site", ImportTables: "import", KeepAccounts: "change accounts", Erase: "erase a person",
@@ -98,26 +100,28 @@ func (a Action) Words() string { return actionWords[a] }
 // nothing; an operator may import and open, and keeps accounts so that a book whose
 // administrator is lost can be opened again.
 var permissions = map[Action][]Role{
-	SeeOwn:       {Administrator, SafetyOfficer, Facilities, Member, Reader},
-	SeeSite:      {Administrator, SafetyOfficer, Facilities, Reader, Operator, Scheduler},
-	SeeBook:      {Administrator, SafetyOfficer, Reader, Operator},
-	FillSheet:    {SafetyOfficer, Facilities, Member},
-	RecordDone:   {SafetyOfficer},
-	Acknowledge:  {SafetyOfficer, Facilities, Member},
-	ReportEvent:  {SafetyOfficer, Facilities},
-	Excuse:       {SafetyOfficer},
-	KeepRights:   {SafetyOfficer},
-	KeepPeople:   {SafetyOfficer},
-	KeepFixtures: {SafetyOfficer, Facilities},
-	Correct:      {SafetyOfficer},
-	CorrectOwn:   {SafetyOfficer, Facilities, Member},
-	PlanDrills:   {SafetyOfficer},
-	SetProgram:   {SafetyOfficer, Operator},
-	OpenSite:     {Administrator, Operator},
-	ImportTables: {SafetyOfficer, Operator},
-	KeepAccounts: {Administrator, Operator},
-	Erase:        {Administrator, SafetyOfficer},
-	RunJobs:      {Administrator, SafetyOfficer, Operator, Scheduler},
+	SeeOwn:         {Administrator, SafetyOfficer, Facilities, Member, Reader},
+	SeeSite:        {Administrator, SafetyOfficer, Facilities, Reader, Operator, Scheduler},
+	SeeBook:        {Administrator, SafetyOfficer, Reader, Operator},
+	FillSheet:      {SafetyOfficer, Facilities, Member},
+	RecordDone:     {SafetyOfficer},
+	Acknowledge:    {SafetyOfficer, Facilities, Member},
+	ReportEvent:    {SafetyOfficer, Facilities},
+	Excuse:         {SafetyOfficer},
+	KeepRights:     {SafetyOfficer},
+	SeePassages:    {Administrator, SafetyOfficer, Reader, Operator, Scheduler},
+	ExplainPassage: {SafetyOfficer},
+	KeepPeople:     {SafetyOfficer},
+	KeepFixtures:   {SafetyOfficer, Facilities},
+	Correct:        {SafetyOfficer},
+	CorrectOwn:     {SafetyOfficer, Facilities, Member},
+	PlanDrills:     {SafetyOfficer},
+	SetProgram:     {SafetyOfficer, Operator},
+	OpenSite:       {Administrator, Operator},
+	ImportTables:   {SafetyOfficer, Operator},
+	KeepAccounts:   {Administrator, Operator},
+	Erase:          {Administrator, SafetyOfficer},
+	RunJobs:        {Administrator, SafetyOfficer, Operator, Scheduler},
 
 	ReportIncident:  {Administrator, SafetyOfficer, Facilities, Member, Reader},
 	SeeIncidents:    {SafetyOfficer},

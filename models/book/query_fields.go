@@ -79,6 +79,11 @@ func (m *model) fields(e store.Entry, bd body) []Field {
 		l.add("From", b.From.String())
 		l.add("To", dayOr(b.To, "no end yet"))
 		l.veil("Why", b.Because)
+	case *markBody:
+		l.add("Passage at", m.onWords(e.Site, b.At))
+		l.add("Door", m.subjectWords(e.Site, subjectBody{"fixture", b.Door}))
+		l.veil("Badge", b.Badge)
+		l.veil("Explained", b.Note)
 	case *rightBody:
 		l.add("Person", m.subjectWords(e.Site, subjectBody{"person", b.Person}))
 		l.add("Zone", b.Zone)

@@ -22,7 +22,7 @@ import (
 // database. What does not fit is not read.
 
 // snapshotForm changes whenever the form of the head or of the sections does.
-const snapshotForm = 3
+const snapshotForm = 4
 
 var snapshotMagic = [8]byte{'L', 'o', 'd', 'e', 's', 'n', 'a', 'p'}
 
@@ -226,6 +226,7 @@ func (m *model) shelveListed(d *store.Delta) {
 	shelve(&m.people, d.People, func(r *store.PersonRow) string { return r.Code })
 	for _, r := range d.People {
 		m.putName(r)
+		m.putBadge(r)
 	}
 	shelve(&m.fixtures, d.Fixtures, func(r *store.FixtureRow) siteCode { return siteCode{r.Site, r.Code} })
 	shelve(&m.stints, d.Stints, func(r *store.StintRow) store.SubjectKey {
@@ -236,6 +237,7 @@ func (m *model) shelveListed(d *store.Delta) {
 	})
 	shelve(&m.events, d.Events, func(r *store.EventRow) store.SubjectKey { return r.Subject })
 	shelve(&m.excusals, d.Excusals, func(r *store.ExcusalRow) store.SubjectKey { return r.Subject })
+	shelve(&m.marks, d.Marks, func(r *store.MarkRow) markKey { return keyOfMark(*r) })
 	shelve(&m.rights, d.Rights, func(r *store.RightRow) store.SubjectKey { return personAt(r.Site, r.Person) })
 	m.shelveRemedies(d)
 	shelve(&m.accounts, d.Accounts, func(r *store.AccountRow) string { return r.ID })
@@ -283,7 +285,7 @@ func section(r io.Reader, s snapshotSection) ([]byte, error) {
 func (m *model) rows() store.Delta {
 	d := store.Delta{
 		People: listed(m.people), Fixtures: listed(m.fixtures), Stints: listed(m.stints), Facts: listed(m.facts),
-		Events: listed(m.events), Excusals: listed(m.excusals), Rights: listed(m.rights), Plans: m.plans, Accounts: listed(m.accounts), Batches: m.batches,
+		Events: listed(m.events), Excusals: listed(m.excusals), Rights: listed(m.rights), Marks: listed(m.marks), Plans: m.plans, Accounts: listed(m.accounts), Batches: m.batches,
 	}
 	m.listRemedies(&d)
 	for _, code := range m.siteCodes() {

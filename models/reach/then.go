@@ -2,6 +2,7 @@ package reach
 
 import (
 	"slices"
+	"sort"
 	"time"
 
 	"lodebook/models/standing"
@@ -73,7 +74,7 @@ func (t *Then) remember(person, zone string, k int64) (*remembered, error) {
 		changes = t.e.Changes(t.site, person)
 		t.changes[person] = changes
 	}
-	n, _ := slices.BinarySearch(changes, k+1)
+	n := sort.Search(len(changes), func(i int) bool { return changes[i] > k })
 	known := int64(-1)
 	if n > 0 {
 		known = changes[n-1]

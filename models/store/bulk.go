@@ -16,7 +16,7 @@ func (s *Store) WriteBulk(ctx context.Context, fn func(*Tx) error) error {
 		if err != nil {
 			return err
 		}
-		t.bulk = &bulkWriter{ctx: ctx, tx: t, statements: make(map[string]*sql.Stmt)}
+		t.bulk = newBulkWriter(ctx, t)
 		err = fn(t)
 		if err == nil {
 			err = t.settle()
@@ -50,6 +50,10 @@ type bulkWriter struct {
 	values     []any
 }
 
+func newBulkWriter(ctx context.Context, t *Tx) *bulkWriter {
+	return &bulkWriter{ctx: ctx, tx: t, statements: make(map[string]*sql.Stmt)}
+}
+
 // bulkRow is a row that gives its columns in the order of bulkColumns.
 type bulkRow interface{ values(to []any) []any }
 
@@ -60,7 +64,7 @@ var bulkColumns = map[string]string{
 	"entries":  "seq, id, kind, v, site, batch, supersedes, actor, recorded_at, bytes",
 	"tree":     "idx, hash",
 	"veils":    "seq, path, person, salt, value, erased",
-	"people":   lineNames + "code, name, email, badge, erased, touched",
+	"people":   lineNames + "code, name, email, badge, from_day, erased, touched",
 	"fixtures": lineNames + "site, code, kind, name",
 	"stints":   lineNames + "site, kind, code, first_day, last_day",
 	"facts":    lineNames + "site, kind, code, fact, from_day, value, touched",
@@ -100,18 +104,7 @@ func insertBulk[R any](w *bulkWriter, table string, rows []R) (bool, error) {
 }
 
 func (w *bulkWriter) write(table, columns string, rows int) error {
-	key := fmt.Sprintf("%s %d", table, rows)
-	statement, ok := w.statements[key]
-	if !ok {
-		var err error
-		text := "INSERT INTO " + table + " (" + columns + ") VALUES " + w.places(rows, strings.Count(columns, ",")+1)
-		statement, err = w.tx.db.Statement.ConnPool.PrepareContext(w.ctx, text)
-		if err != nil {
-			return err
-		}
-		w.statements[key] = statement
-	}
-	_, err := statement.ExecContext(w.ctx, w.values...)
+	_, err := w.insert(table, columns, rows, "")
 	return err
 }
 
@@ -164,7 +157,7 @@ func (c *subjectColumns) values(to []any) []any {
 }
 
 func (r *personLine) values(to []any) []any {
-	return append(r.Line.values(to), r.Code, r.Name, r.Email, r.Badge, r.Erased, r.Touched)
+	return append(r.Line.values(to), r.Code, r.Name, r.Email, r.Badge, r.FromDay, r.Erased, r.Touched)
 }
 
 func (r *fixtureLine) values(to []any) []any {

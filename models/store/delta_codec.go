@@ -63,6 +63,7 @@ func (d *Delta) code(c coder) {
 	codeRows(c, &d.Excusals, codeExcusal)
 	codeRows(c, &d.Rights, codeRight)
 	d.codeRemedies(c)
+	codeRows(c, &d.Marks, codeMark)
 	codeRows(c, &d.Plans, codePlan)
 	codeRows(c, &d.Accounts, codeAccount)
 	codeRows(c, &d.Batches, codeBatch)
@@ -100,6 +101,7 @@ func codePerson(c coder, r *PersonRow) {
 	c.own(&r.Name)
 	c.own(&r.Email)
 	c.own(&r.Badge)
+	c.maybeDay(&r.From)
 	c.flag(&r.Erased)
 }
 
@@ -163,6 +165,14 @@ func codeRight(c coder, r *RightRow) {
 	c.shared(&r.Zone)
 	c.moment(&r.From)
 	c.maybeMoment(&r.To)
+}
+
+func codeMark(c coder, r *MarkRow) {
+	c.line(&r.Line)
+	c.shared(&r.Site)
+	c.moment(&r.At)
+	c.shared(&r.Door)
+	c.shared(&r.Badge)
 }
 
 func codePlan(c coder, r *PlanRow) {

@@ -97,7 +97,9 @@ func (d *draws) delta() Delta {
 		Versions: some(d, func() VersionRow {
 			return VersionRow{d.line(), d.text(), rapid.Int().Draw(d.T, d.label("number")), d.day(), d.flag(), rapid.SliceOf(rapid.Byte()).Draw(d.T, d.label("source"))}
 		}),
-		People:   some(d, func() PersonRow { return PersonRow{d.line(), d.text(), d.text(), d.text(), d.text(), d.flag()} }),
+		People: some(d, func() PersonRow {
+			return PersonRow{d.line(), d.text(), d.text(), d.text(), d.text(), d.maybeDay(), d.flag()}
+		}),
 		Fixtures: some(d, func() FixtureRow { return FixtureRow{d.line(), d.text(), d.text(), d.text(), d.text()} }),
 		Stints:   some(d, func() StintRow { return StintRow{d.line(), d.text(), d.text(), d.text(), d.maybeDay(), d.maybeDay()} }),
 		Facts: some(d, func() FactRow {
@@ -158,7 +160,7 @@ func sampleDelta() Delta {
 	return Delta{
 		Sites:       []SiteRow{{line(0), "QUAY", "Quay", "UTC"}},
 		Versions:    []VersionRow{{line(0), "QUAY", 1, day, true, []byte("site: {}")}, {line(1), "QUAY", 2, day, false, nil}},
-		People:      []PersonRow{{line(2), "P1", "Runa", "r@x.example", "B-1", false}, {line(3), "P1", "", "", "", true}},
+		People:      []PersonRow{{line(2), "P1", "Runa", "r@x.example", "B-1", &day, false}, {line(3), "P1", "", "", "", nil, true}},
 		Fixtures:    []FixtureRow{{line(4), "QUAY", "V1", "vent", "North"}},
 		Stints:      []StintRow{{line(5), "QUAY", "person", "P1", &day, nil}, {line(6), "QUAY", "person", "P1", nil, &day}},
 		Facts:       []FactRow{{line(7), "QUAY", "person", "P1", "level", civil.FirstDay, `"L2"`}},
@@ -171,6 +173,7 @@ func sampleDelta() Delta {
 		RemedySteps: []RemedyStepRow{{line(17), "QUAY", 1, "done", day, "A1", "P1"}},
 		Outages:     []OutageRow{{line(18), "QUAY", key, "V1", "id", at, true, "A1"}},
 		Returns:     []ReturnRow{{line(19), "QUAY", []string{"a", "b"}, at}},
+		Marks:       []MarkRow{{line(12), "QUAY", at, "D1", "B-1"}},
 		Plans:       []PlanRow{{line(12), "QUAY", "drill/quench", "early", day, "14:00"}},
 		Accounts:    []AccountRow{{line(13), "A1", "runa", "member", []string{"QUAY"}, "P1", &day, true}, {line(14), "A2", "ada", "administrator", nil, "", nil, false}},
 		Batches:     []BatchRow{{line(15), "QUAY", "people", "people.csv", 3, "A1", at}},

@@ -62,16 +62,17 @@ func versionOut(r versionLine) VersionRow {
 type personLine struct {
 	Line                     lineColumns `gorm:"embedded"`
 	Code, Name, Email, Badge string
+	FromDay                  *day
 	Erased                   bool
 	Touched                  int64
 }
 
 func personIn(r PersonRow) personLine {
-	return personLine{Line: lineIn(r.Line), Code: r.Code, Name: r.Name, Email: r.Email, Badge: r.Badge, Erased: r.Erased}
+	return personLine{Line: lineIn(r.Line), Code: r.Code, Name: r.Name, Email: r.Email, Badge: r.Badge, FromDay: (*day)(r.From), Erased: r.Erased}
 }
 
 func personOut(r personLine) PersonRow {
-	return PersonRow{r.Line.out(), r.Code, r.Name, r.Email, r.Badge, r.Erased}
+	return PersonRow{r.Line.out(), r.Code, r.Name, r.Email, r.Badge, (*civil.Day)(r.FromDay), r.Erased}
 }
 
 type fixtureLine struct {
@@ -201,6 +202,22 @@ func rightIn(r RightRow) rightLine {
 
 func rightOut(r rightLine) RightRow {
 	return RightRow{r.Line.out(), r.Site, r.Person, r.Zone, time.Time(r.FromTime), (*time.Time)(r.ToTime)}
+}
+
+type markLine struct {
+	Line        lineColumns `gorm:"embedded"`
+	Site        string
+	AtTime      instant
+	Door, Badge string
+	Touched     int64
+}
+
+func markIn(r MarkRow) markLine {
+	return markLine{lineIn(r.Line), r.Site, instant(r.At), r.Door, r.Badge, 0}
+}
+
+func markOut(r markLine) MarkRow {
+	return MarkRow{r.Line.out(), r.Site, time.Time(r.AtTime), r.Door, r.Badge}
 }
 
 type planLine struct {

@@ -16,6 +16,7 @@ import (
 var moved = [][2]string{
 	{"meta", "name"}, {"entries", "seq"}, {"tree", "idx"}, {"veils", "seq, path"},
 	{"", "seq, n"},
+	{"passages", "site, at_micro, door, badge, direction"}, {"holders", "batch, badge, door"},
 	{"credentials", "account"}, {"flags", "site, item, kind, code"}, {"runs", "job, site, due"},
 }
 
@@ -163,7 +164,7 @@ func moveTable(ctx context.Context, from, to *Tx, name, order string, progress f
 	if err != nil {
 		return err
 	}
-	w := &bulkWriter{ctx: ctx, tx: to, statements: make(map[string]*sql.Stmt)}
+	w := newBulkWriter(ctx, to)
 	defer func() { err = errors.Join(err, w.close()) }()
 	err = w.copy(rows, name, columns, progress)
 	return errors.Join(err, rows.Err())

@@ -31,6 +31,7 @@ type Delta struct {
 	RemedySteps []RemedyStepRow
 	Outages     []OutageRow
 	Returns     []ReturnRow
+	Marks       []MarkRow
 	Plans       []PlanRow
 	Accounts    []AccountRow
 	Batches     []BatchRow
@@ -70,6 +71,7 @@ var projections = []projection{
 	table[EventRow, eventLine]{"events", eventIn, eventOut, func(r *eventLine) *lineColumns { return &r.Line }, func(d *Delta) *[]EventRow { return &d.Events }, false},
 	table[ExcusalRow, excusalLine]{"excusals", excusalIn, excusalOut, func(r *excusalLine) *lineColumns { return &r.Line }, func(d *Delta) *[]ExcusalRow { return &d.Excusals }, false},
 	table[RightRow, rightLine]{"rights", rightIn, rightOut, func(r *rightLine) *lineColumns { return &r.Line }, func(d *Delta) *[]RightRow { return &d.Rights }, false},
+	table[MarkRow, markLine]{"marks", markIn, markOut, func(r *markLine) *lineColumns { return &r.Line }, func(d *Delta) *[]MarkRow { return &d.Marks }, true},
 	table[IncidentRow, incidentLine]{"incidents", incidentIn, incidentOut, func(r *incidentLine) *lineColumns { return &r.Line }, func(d *Delta) *[]IncidentRow { return &d.Incidents }, false},
 	table[ReportRow, reportLine]{"reports", reportIn, reportOut, func(r *reportLine) *lineColumns { return &r.Line }, func(d *Delta) *[]ReportRow { return &d.Reports }, false},
 	table[RemedyRow, remedyLine]{"remedies", remedyIn, remedyOut, func(r *remedyLine) *lineColumns { return &r.Line }, func(d *Delta) *[]RemedyRow { return &d.Remedies }, false},
@@ -357,6 +359,11 @@ func (t *Tx) BlankAccounts(person string, seq int64) error {
 // erasing entry, as in BlankPerson.
 func (t *Tx) BlankFacts(seq, by int64, facts ...string) error {
 	return t.blank("UPDATE facts SET value = 'null', touched = ? WHERE seq = ? AND fact IN ?", by, seq, facts)
+}
+
+// BlankMark empties the badge in the mark that entry seq made. By is the erasing entry, as in BlankPerson.
+func (t *Tx) BlankMark(seq, by int64) error {
+	return t.blank("UPDATE marks SET badge = '', touched = ? WHERE seq = ?", by, seq)
 }
 
 // ends notes that the part under way, if any, ends or blanks rows.

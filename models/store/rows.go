@@ -63,6 +63,7 @@ type VersionRow struct {
 type PersonRow struct {
 	Line
 	Code, Name, Email, Badge string
+	From                     *civil.Day // the day from which the badge is theirs; nil: always
 	Erased                   bool
 }
 
@@ -207,6 +208,14 @@ type ReturnRow struct {
 	Site    string
 	Outages []string
 	At      time.Time
+}
+
+// MarkRow says that a safety officer has explained a passage. The badge is empty once its holder is erased.
+type MarkRow struct {
+	Line
+	Site        string
+	At          time.Time
+	Door, Badge string
 }
 
 // PlanRow is a drill or session that is planned. It is done once a record names it as its session.

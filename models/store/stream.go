@@ -59,6 +59,7 @@ var ofSite = map[string]string{
 	"remedy_steps": "site = @site",
 	"outages":      "site = @site",
 	"returns":      "site = @site",
+	"marks":        "site = @site",
 	"plans":        "site = @site",
 }
 

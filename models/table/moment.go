@@ -44,3 +44,29 @@ func (w when) moment(loc *time.Location) (m Moment, problem, accepted string) {
 	t = t.UTC()
 	return Moment{Day: civil.DayOf(t, loc), Time: &t}, "", ""
 }
+
+// Instants reads a cell as an instant. A local time that comes twice, since clocks were put back over it, gives both,
+// the earlier first: Moment refuses it and says what would do. A day alone is a fault.
+func (r Row) Instants(col string, loc *time.Location) ([]time.Time, *Fault) {
+	w, ok, f := r.when(col)
+	switch {
+	case f != nil:
+		return nil, f
+	case !ok:
+		return nil, r.Fault(col, "is empty", "an instant as 2025-03-01T08:30:00Z")
+	case !w.timed:
+		return nil, r.Fault(col, "is a day and not an instant", "add a time, as in "+w.day.String()+" 08:30")
+	}
+	if !w.zoned {
+		wall := time.Unix(int64(w.day)*86400, 0).UTC().Add(w.clock)
+		if both := onTheClock(wall, loc); len(both) == 2 {
+			return []time.Time{both[0].UTC(), both[1].UTC()}, nil
+		}
+	}
+	t, problem, accepted := w.instant(loc)
+	if problem != "" {
+		return nil, r.Fault(col, problem, accepted)
+	}
+	r.counted(w)
+	return []time.Time{t.UTC()}, nil
+}
