@@ -2,6 +2,8 @@ package web
 
 import (
 	"bytes"
+	"errors"
+	"net/http"
 	"net/url"
 	"strconv"
 	"strings"
@@ -339,13 +341,13 @@ func markReported(v *visit) error {
 	return v.kept(v.url("incidents", v.param("number")), "Kept: the report was made.", r.ID())
 }
 
-func (v *visit) showCorrectIncident(f *Form) error {
+func (v *visit) correctIncidentForm(f *Form) *formLeaf {
 	at := v.param("number")
 	p := &formLeaf{page: page{Title: "Correct an incident", Section: secIncidents}, Head: "Correct incident " + at, Action: v.url("incidents", at, "correct"), Form: f, Button: "Keep the correction", Cautions: incidentCautions}
 	p.Say = "What you write takes the place of what stands there; both stay readable to safety officers."
 	p.Hidden = []hidden{{"supersedes", f.Get("supersedes")}}
 	p.Fields = append(v.incidentFields(f), f.Choice("reason", "Why it is corrected", reasonOptions(true)).Need(), f.Text("reason_text", "More, in a sentence"))
-	return v.showForm(p)
+	return p
 }
 
 func correctIncidentPage(v *visit) error {
@@ -356,7 +358,7 @@ func correctIncidentPage(v *visit) error {
 	f := &Form{Values: url.Values{}}
 	f.Set("incident", x.Kind).Set("zone", x.Zone).Set("at", book.ClockWords(x.At, v.site.Location)).Set("severity", x.Severity).Set("what", x.What).Set("who", x.Who)
 	f.Set("action", x.Action).Set("people", strings.Join(x.People, " ")).Set("supersedes", x.Entry)
-	return v.showCorrectIncident(f)
+	return v.showForm(v.correctIncidentForm(f))
 }
 
 func correctIncident(v *visit) error {
@@ -366,8 +368,12 @@ func correctIncident(v *visit) error {
 	}
 	fix := book.Correction{Supersedes: f.Get("supersedes"), Reason: f.Get("reason"), ReasonText: f.Get("reason_text")}
 	r, err := v.b.CorrectIncident(v.ctx(), v.actor, v.site.Code, v.number(), incidentOf(f), fix)
-	if f.Take(err) {
-		return v.showCorrectIncident(f)
+	var stale *book.Stale
+	switch {
+	case errors.As(err, &stale):
+		return v.tooLate(stale, f, v.correctIncidentForm(f))
+	case f.Take(err):
+		return v.showForm(v.correctIncidentForm(f))
 	}
 	if err != nil {
 		return err
@@ -382,4 +388,21 @@ func (v *visit) reportURL(code string) string {
 	}
 	number, _, _ := strings.Cut(code, ".")
 	return v.url("incidents", number)
+}
+
+// tooLate shows a form again whose entry somebody else has changed meanwhile: what was typed, what was opened and
+// what stands now. Sent again it is about what stands now.
+func (v *visit) tooLate(stale *book.Stale, f *Form, p *formLeaf) error {
+	both, now, err := v.late(stale)
+	if err != nil {
+		return err
+	}
+	f.Set("supersedes", now.ID)
+	for i, h := range p.Hidden {
+		if h.Name == "supersedes" {
+			p.Hidden[i].Value = now.ID
+		}
+	}
+	p.Both = both
+	return formSheet.show(v, http.StatusConflict, p)
 }

@@ -212,7 +212,7 @@ func TestIncidentByPages(t *testing.T) {
 		t.Errorf("%q %q", form.value("what"), form.value("at"))
 	}
 	h.sent(officer, "/s/"+fell+"/incidents/1/correct", "supersedes", form.value("supersedes"), "incident", "near-miss", "at", "2026-11-27 08:30", "severity", "low", "what", "the trolley rolled", "reason", "slip").says("main", "the trolley rolled")
-	if a := h.post(officer, "/s/"+fell+"/incidents/1/correct", "supersedes", form.value("supersedes"), "incident", "near-miss", "at", "2026-11-27 08:30", "severity", "low", "what", "x", "reason", "slip"); a.Code != http.StatusConflict {
+	if a := h.post(officer, "/s/"+fell+"/incidents/1/correct", "supersedes", form.value("supersedes"), "incident", "near-miss", "at", "2026-11-27 08:30", "severity", "low", "what", "kept words", "reason", "slip"); a.Code != http.StatusConflict || a.value("what") != "kept words" || !strings.Contains(a.text("main"), "the trolley rolled") {
 		t.Errorf("a stale correction: %d", a.Code)
 	}
 	for _, format := range []string{"csv", "json"} {

@@ -150,7 +150,7 @@ func keepPerson(v *visit) error {
 
 func eraseForm(v *visit, f *Form) *formLeaf {
 	p := &formLeaf{page: page{Title: "Erase a person", Section: secPeople}, Head: "Erase " + v.subjectName("person:"+f.Get("person")), Action: v.url("erase"), Form: f, Button: "Erase for good", Risk: true, Hidden: []hidden{{"person", f.Get("person")}}}
-	p.Say = "The name, address, badge and every text about this person become unreadable for good, in every entry. What was done and when stays, under the code alone, and every hash still verifies."
+	p.Say = "The name, address, badge and every text about this person become unreadable for good, in every entry. What was done and when stays, under the code alone, and every hash still verifies. Of incidents that name them by code, all texts go, and those of their remedies."
 	p.Cautions = []string{"It cannot be taken back. Copies of the book that were made before still hold the name: destroy them too."}
 	p.Fields = []field{f.Text("again", "Write the code again: "+f.Get("person")).Need()}
 	return p

@@ -146,3 +146,12 @@ func (v *visit) todayRemedies(p *todayLeaf) error {
 	}
 	return err
 }
+
+// outWords says what a failed sheet takes out of service once it is kept.
+func outWords(sh *program.Sheet, zone string) string {
+	s := "Kept so, it is out of service"
+	if sh.AlsoZone && zone != "" {
+		s += ", and Zone " + zone + " with it,"
+	}
+	return s + " until a safety officer signs it back."
+}

@@ -1,6 +1,7 @@
 package web
 
 import (
+	"errors"
 	"html/template"
 	"net/url"
 	"strconv"
@@ -356,13 +357,13 @@ func makeRemedy(v *visit) error {
 	return v.kept(to, "Kept: the remedy.", r.ID())
 }
 
-func (v *visit) showChangeRemedy(f *Form) error {
+func (v *visit) changeRemedyForm(f *Form) *formLeaf {
 	at := v.param("number")
 	p := &formLeaf{page: page{Title: "Change a remedy", Section: secRemedies}, Head: "Change remedy " + at, Action: v.url("remedies", at, "change"), Form: f, Button: "Keep the change"}
 	p.Say = "Its number, what it is for and what became of it stay. Another due day than the severity's needs a reason, and nobody gives themselves more time."
 	p.Hidden = []hidden{{"supersedes", f.Get("supersedes")}}
 	p.Fields = append(v.remedyFields(f), f.Choice("reason", "Why it is changed", reasonOptions(true)).Need(), f.Text("reason_text", "More, in a sentence"))
-	return v.showForm(p)
+	return p
 }
 
 func changeRemedyPage(v *visit) error {
@@ -378,7 +379,7 @@ func changeRemedyPage(v *visit) error {
 	if x.Because != "" {
 		f.Set("due", x.Due.String())
 	}
-	return v.showChangeRemedy(f)
+	return v.showForm(v.changeRemedyForm(f))
 }
 
 func changeRemedy(v *visit) error {
@@ -388,8 +389,12 @@ func changeRemedy(v *visit) error {
 	}
 	fix := book.Correction{Supersedes: f.Get("supersedes"), Reason: f.Get("reason"), ReasonText: f.Get("reason_text")}
 	r, err := v.b.ChangeRemedy(v.ctx(), v.actor, v.site.Code, v.number(), remedyOf(f), fix)
-	if f.Take(err) {
-		return v.showChangeRemedy(f)
+	var stale *book.Stale
+	switch {
+	case errors.As(err, &stale):
+		return v.tooLate(stale, f, v.changeRemedyForm(f))
+	case f.Take(err):
+		return v.showForm(v.changeRemedyForm(f))
 	}
 	if err != nil {
 		return err

@@ -31,6 +31,7 @@ type sheetLeaf struct {
 	Word      standing.Word
 	Reasons   []string
 	OnFail    string
+	Out       string     // what keeping it takes out of service
 	Seen      string     // the verdict as the form carries it
 	Both      *bothSides // of a correction that came too late
 }
@@ -170,6 +171,9 @@ func (v *visit) judged(f *Form, sh *program.Sheet, verdict book.Verdict, err err
 	if status == http.StatusOK {
 		p.Judged, p.Seen = true, seenAs(verdict)
 		p.Reasons, p.OnFail = verdict.Reasons, verdict.OnFail
+		if verdict.Result == book.Fail && sh.OnFailOut {
+			p.Out = outWords(sh, p.Zone)
+		}
 		p.Word, p.Verdict = standing.Met, "passes"
 		switch {
 		case verdict.Result == book.Fail:

@@ -381,3 +381,47 @@ func TestReportsToOutsideBodies(t *testing.T) {
 		t.Error("a withdrawn incident is shown as one")
 	}
 }
+
+// What stood on a past day, as it was known at a past moment, stays as it was.
+func TestRemediesAsKnownThen(t *testing.T) {
+	d := manned(t)
+	ctx := t.Context()
+	n := d.remedy(book.RemedyForm{Item: "VENT", Subject: "fixture:V1", Severity: "high", Owner: "P2"})
+	d.now = d.now.AddDate(0, 0, 20)
+	then := d.now.Add(-time.Hour)
+	done, err := d.RemedyDone(ctx, d.officer, site, n, book.RemedyDoneForm{Day: "2026-03-05"})
+	d.ok(err)
+	check, err := d.CheckRemedy(ctx, d.other(), site, n, book.RemedyCheckForm{Done: done.ID()})
+	d.ok(err)
+	day := civil.Of(2026, 3, 22)
+	for known, want := range map[*time.Time]int{nil: 0, &then: 1} {
+		st, err := d.Standings(ctx, d.op, book.StandingQuery{Site: site, On: &day, KnownAt: known, Item: "remedy"})
+		d.ok(err)
+		if len(st.Gaps()) != want {
+			t.Errorf("as known at %v: %d gaps", known, len(st.Gaps()))
+		}
+	}
+	if got := d.overdue("remedy", "2026-03-01"); len(got) != 0 {
+		t.Errorf("before it was made: %v", got)
+	}
+	// What is withdrawn confirms nothing, and nothing confirms what is withdrawn.
+	_, err = d.Withdraw(ctx, d.other(), check.ID(), book.Correction{})
+	d.ok(err)
+	if v, err := d.Remedy(ctx, d.officer, site, n); err != nil || v.State != book.RemedyDone {
+		t.Errorf("%+v %v", v.RemedyLine, err)
+	}
+	_, err = d.CheckRemedy(ctx, d.other(), site, n, book.RemedyCheckForm{Done: done.ID()})
+	d.ok(err)
+	_, err = d.Withdraw(ctx, d.officer, done.ID(), book.Correction{})
+	d.ok(err)
+	if v, err := d.Remedy(ctx, d.officer, site, n); err != nil || v.State != book.RemedyOpen || !v.Overdue {
+		t.Errorf("%+v %v", v.RemedyLine, err)
+	}
+	st, err := d.Short(ctx, d.op, site, &day)
+	d.ok(err)
+	long, err := d.Standings(ctx, d.op, book.StandingQuery{Site: site, On: &day})
+	d.ok(err)
+	if a, b := len(st.Gaps()), len(long.Gaps()); a != b || a == 0 {
+		t.Errorf("%d gaps the short way and %d the long one", a, b)
+	}
+}

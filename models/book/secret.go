@@ -1,6 +1,8 @@
 package book
 
 import (
+	"slices"
+
 	"lodebook/models/store"
 )
 
@@ -12,6 +14,11 @@ const secretText = "Kept for safety officers"
 
 // Secret tells whether entries of a kind are kept for safety officers, whatever they say.
 func Secret(kind string) bool { return kind == kindIncident || kind == kindIncidentReport }
+
+// onOwnPage tells whether entries of a kind are corrected on a page of their own, if at all.
+func onOwnPage(kind string) bool {
+	return slices.Contains([]string{kindIncident, kindIncidentReport, kindRemedy, kindRemedyDone, kindRemedyCheck, kindOutage, kindReturn}, kind)
+}
 
 // hides tells whether the content of an entry is kept from the actor.
 func (m *model) hides(tx *store.Tx, actor Actor, e store.Entry, bd body) (bool, error) {

@@ -102,6 +102,30 @@ func (s *scribe) deeds() map[string]func() error {
 			r, err := s.Grant(ctx, s.officer, site, book.RightForm{Person: s.one(s.people), Zone: "IV", From: s.past(), To: s.now.Format(time.DateOnly)}, book.Correction{})
 			return written(&s.records, r, err)
 		},
+		"incident": func() error {
+			r, err := s.ReportIncident(ctx, s.officer, site, book.IncidentForm{Kind: s.one([]string{"burn", "quench"}), At: s.past() + "T05:00:00Z", Severity: s.one([]string{"low", "high"}), What: "something", People: []string{s.one(s.people)}, Anonymous: s.IntN(3) == 0})
+			return written(&s.records, r, err)
+		},
+		"remedy": func() error {
+			f := book.RemedyForm{Severity: s.one([]string{"low", "high"}), Owner: s.one(s.people), What: "mend it", Incident: fmt.Sprint(1 + s.IntN(4))}
+			if s.IntN(2) == 0 {
+				f.Incident, f.Item, f.Subject = "", "TRAIN-L2", s.one(s.people)
+			}
+			r, err := s.KeepRemedy(ctx, s.officer, site, f)
+			return written(&s.records, r, err)
+		},
+		"remedy done": func() error {
+			r, err := s.RemedyDone(ctx, s.officer, site, 1+s.IntN(4), book.RemedyDoneForm{Day: s.past()})
+			return written(&s.records, r, err)
+		},
+		"outage": func() error {
+			_, err := s.TakeOut(ctx, s.officer, site, book.OutageForm{Subject: s.one([]string{"zone:IV", "fixture:V1"}), Because: "it leans"})
+			return err
+		},
+		"return": func() error {
+			r, err := s.SignBack(ctx, s.officer, site, book.ReturnForm{Subject: "zone:IV", Note: "upright"})
+			return written(&s.records, r, err)
+		},
 		"plan": func() error {
 			r, err := s.PlanDrill(ctx, s.officer, site, book.PlanForm{Record: "drill/quench", Crew: "early", Day: s.now.AddDate(0, 0, s.IntN(30)).Format(time.DateOnly)}, book.Correction{})
 			return written(&s.plans, r, err)
@@ -174,7 +198,7 @@ func (s *scribe) write(n int, but ...string) {
 
 var deedNames = []string{
 	"person", "person", "record", "record", "record", "record", "record", "correction", "correction", "withdrawal", "change", "fixture",
-	"event", "excusal", "pause", "right", "plan", "drill", "import", "undone import", "account", "erasure", "version",
+	"event", "excusal", "pause", "right", "incident", "incident", "remedy", "remedy", "remedy", "remedy done", "remedy done", "outage", "return", "plan", "drill", "import", "undone import", "account", "erasure", "version",
 }
 
 // Whatever was written before and after a snapshot, a book that starts from it answers as one that is read from

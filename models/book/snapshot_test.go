@@ -77,6 +77,19 @@ func (d *desk) tells() string {
 	accounts, err := d.Accounts(ctx, d.op)
 	d.ok(err)
 	show(accounts)
+	incidents, err := d.Incidents(ctx, d.officer, site)
+	d.ok(err)
+	show(incidents)
+	remedies, err := d.Remedies(ctx, d.officer, site, false)
+	d.ok(err)
+	for _, r := range remedies {
+		v, err := d.Remedy(ctx, d.officer, site, r.Number)
+		d.ok(err)
+		show(v)
+	}
+	out, err := d.OutOfService(ctx, d.officer, site)
+	d.ok(err)
+	show(out)
 	page, err := d.Entries(ctx, d.officer, book.EntryQuery{Site: site, Limit: 1000})
 	d.ok(err)
 	for _, e := range page {

@@ -29,6 +29,9 @@ func (b *Book) Correctable(ctx context.Context, actor Actor, id string) (Correct
 	if !view.MayCorrect {
 		return Correctable{}, &Denied{Action: Correct, Role: actor.Role, Why: "this entry is not corrected from here"}
 	}
+	if onOwnPage(view.Kind) {
+		return Correctable{}, &Denied{Action: Correct, Role: actor.Role, Why: "this entry is corrected from its own page"}
+	}
 	out := Correctable{Kind: view.Kind, Summary: view.Summary, NeedReason: view.NeedReason}
 	err = b.withEntries(ctx, func(tx *store.Tx, m *model) error {
 		e, _, err := tx.EntryByID(id)
