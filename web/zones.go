@@ -24,6 +24,15 @@ func (v *visit) zoneTabs(current string) []spineLink {
 	return out
 }
 
+// zoneTabsWithDoors are the tabs of the page of a zone.
+func (v *visit) zoneTabsWithDoors(current string) []spineLink {
+	out := v.doorTabs("")
+	for i, z := range v.site.Program.Zones {
+		out[i].Current = z.Code == current
+	}
+	return out
+}
+
 // zoneLine is one person and the zone.
 type zoneLine struct {
 	Disc            template.HTML
@@ -93,7 +102,7 @@ func zonePage(v *visit) error {
 	if !ok {
 		return &book.NotFound{What: "zone", Code: v.param("zone")}
 	}
-	p := &zoneLeaf{page: page{Title: zoneName(*z), Section: secZones}, Head: zoneName(*z), Tabs: v.zoneTabs(z.Code), Path: v.c.Request.URL.EscapedPath()}
+	p := &zoneLeaf{page: page{Title: zoneName(*z), Section: secZones}, Head: zoneName(*z), Tabs: v.zoneTabsWithDoors(z.Code), Path: v.c.Request.URL.EscapedPath()}
 	p.Means = zoneMeans[strings.ToUpper(z.Code)]
 	if !z.Restricted {
 		p.Open = true

@@ -245,7 +245,7 @@ func TestRightsDiff(t *testing.T) {
 		}
 		return strings.Join(out, "\n")
 	}
-	if got, want := diff(), "withdraw B-2 P2 D1 IV\nunknown-badge B-8  D1 IV\nunknown-door B-2 P2 D9\nadd B-1 P1 D1 IV"; got != want {
+	if got, want := diff(), "withdraw B-2 P2 D1 IV\nunknown-badge B-8  D1 IV\nadd B-1 P1 D1 IV\nunknown-door B-2 P2 D9"; got != want {
 		t.Errorf("got\n%s\nwant\n%s", got, want)
 	}
 	old := d.now

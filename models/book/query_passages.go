@@ -389,6 +389,7 @@ func (m *model) rightsDiff(tx *store.Tx, site string, now time.Time, out *Rights
 		d.missing(door, d.doors[door])
 	}
 	out.Rows = d.rows
+	slices.SortStableFunc(out.Rows, func(a, b HolderChange) int { return cmp.Compare(a.Door, b.Door) })
 	return nil
 }
 

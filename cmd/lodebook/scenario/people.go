@@ -36,6 +36,7 @@ const (
 	waitingOpen   = "X02" // an imported excusal asks to let him in and waits
 	certificate   = "X03" // brought a certificate with an end of its own
 	newcomer      = "X05" // not screened yet
+	researcher    = "S48" // the project is over, and the right with it
 	levelUnknown  = "X11" // neither level nor crew on record
 )
 

@@ -84,6 +84,8 @@ func Make(today civil.Day) Site {
 			{"excusals", "excusals.csv", excusalsTable(t.excusals)},
 			{"pauses", "pauses.csv", pausesTable(t.pauses)},
 			{"rights", "rights.csv", rightsTable(a)},
+			{"passages", "passages.csv", passagesTable(a)},
+			{"holders", "holders.csv", holdersTable()},
 		},
 		Sheets: t.sheets, Accounts: accounts, Plans: plans(a),
 	}

@@ -3,7 +3,6 @@ package scenario
 import (
 	"bytes"
 	"encoding/csv"
-	"fmt"
 	"slices"
 	"strings"
 
@@ -79,7 +78,7 @@ func personRow(i int, x person, ph phase) []string {
 		cryogens = "yes"
 	}
 	email := strings.ToLower(x.code) + "@averhavn.example"
-	badge := fmt.Sprintf("AV-%05d", 20417+i*331)
+	badge := badgeOf(i)
 	return []string{x.code, x.name, email, ph.level, ph.crew, badge, ph.first.String(), left, "", firm, x.job, cryogens}
 }
 
