@@ -2,6 +2,7 @@ package reach_test
 
 import (
 	"fmt"
+	"slices"
 	"testing"
 	"time"
 
@@ -57,18 +58,39 @@ func crowd(people int) *standing.Engine {
 
 var asked = time.Date(2024, 6, 3, 10, 0, 0, 0, time.UTC)
 
-// BenchmarkAt is everybody of 5,000 people at one instant.
+// BenchmarkAt is everybody of 5,000 people at one instant, and until when; beside it, for a tenth of them, what asking
+// the evaluator day after day takes to tell that up to a year on.
 func BenchmarkAt(b *testing.B) {
-	e := crowd(5000)
-	for b.Loop() {
-		r, err := reach.New(e, "S", standing.Always)
-		if err != nil {
-			b.Fatal(err)
-		}
-		if got := len(r.At("IV", asked)); got != 5000 {
-			b.Fatal(got)
+	at := func(b *testing.B, e *standing.Engine, people int) {
+		for b.Loop() {
+			r, err := reach.New(e, "S", standing.Always)
+			if err != nil {
+				b.Fatal(err)
+			}
+			if got := len(r.At("IV", asked)); got != people {
+				b.Fatal(got)
+			}
 		}
 	}
+	all, tenth := crowd(5000), crowd(500)
+	b.Run("5000", func(b *testing.B) { at(b, all, 5000) })
+	b.Run("500", func(b *testing.B) { at(b, tenth, 500) })
+	b.Run("500 day after day", func(b *testing.B) {
+		for b.Loop() {
+			for i := range 500 {
+				s := standing.Subject{Asks: program.AsksPerson, Code: fmt.Sprintf("P%05d", i)}
+				for on := civil.DayOf(asked, time.UTC); on < civil.DayOf(asked, time.UTC)+366; on++ {
+					rows, err := tenth.Evaluate("S", standing.Query{On: on, Subject: &s, KnownAt: standing.Always})
+					if err != nil || len(rows) == 0 {
+						b.Fatal(rows, err)
+					}
+					if slices.ContainsFunc(rows, func(row standing.Standing) bool { return row.Word.IsGap() }) {
+						break
+					}
+				}
+			}
+		}
+	})
 }
 
 // BenchmarkRibbon is one person over five years, by spans and, beside it, by asking day after day.

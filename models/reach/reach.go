@@ -243,7 +243,7 @@ func (r *Reader) Ribbon(person, zone string) []Span {
 	w := r.whereabouts(person, zone)
 	items := r.g.Items(zone)
 	stretches := make(map[string][]standing.Stretch, len(items))
-	turns := w.turns()
+	turns := append(w.turns(), r.g.Versions()...) // which may put the items in another order
 	for _, item := range items {
 		list := r.g.Stretches(item, zone, person)
 		stretches[item] = list

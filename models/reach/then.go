@@ -16,14 +16,15 @@ type Then struct {
 	site    string
 	changes map[string][]int64
 	last    map[personZone]*remembered
+	latest  *Reader // for all of whom nothing came on record after their moment
 }
 
 type personZone struct{ person, zone string }
 
 // remembered is what was known of a person at a moment.
 type remembered struct {
-	k      int64 // the last change up to the moment
-	reader *Reader
+	k      int64   // the last change up to the moment
+	reader *Reader // until there is a ribbon
 	asked  int
 	ribbon []Span // made when it is worth it
 }
@@ -47,7 +48,7 @@ func (t *Then) At(person, zone string, at time.Time, k int64) (entitled bool, re
 	}
 	m.asked++
 	if m.asked > ribbonAfter && m.ribbon == nil {
-		m.ribbon = m.reader.Ribbon(person, zone)
+		m.ribbon, m.reader = m.reader.Ribbon(person, zone), nil
 	}
 	if m.ribbon == nil {
 		w := m.reader.whereabouts(person, zone)
@@ -86,11 +87,26 @@ func (t *Then) remember(person, zone string, k int64) (*remembered, error) {
 	if m := t.last[key]; m != nil && m.k == known {
 		return m, nil
 	}
-	r, err := New(t.e, t.site, known)
+	r, err := t.open(known)
 	if err != nil {
 		return nil, err
 	}
 	m := &remembered{k: known, reader: r}
 	t.last[key] = m
 	return m, nil
+}
+
+// open is a reader of what was known at a moment.
+func (t *Then) open(known int64) (*Reader, error) {
+	if known != standing.Always {
+		return New(t.e, t.site, known)
+	}
+	if t.latest == nil {
+		r, err := New(t.e, t.site, known)
+		if err != nil {
+			return nil, err
+		}
+		t.latest = r
+	}
+	return t.latest, nil
 }

@@ -262,7 +262,11 @@ func (g *Guard) Ends(item, zone, person string, t time.Time) (shuts, rests time.
 		if !turn.After(t) {
 			continue
 		}
-		s := g.at(item, zone, l, turn, g.v.dayAt(turn))
+		day := g.v.dayAt(turn)
+		s, ok := g.byCourse(item, zone, l, day)
+		if !ok {
+			s = g.at(item, zone, l, turn, day)
+		}
 		if s.Asked && !s.Open {
 			return turn, rests
 		}
@@ -391,6 +395,15 @@ func (g *Guard) points(code string, l *local) []point {
 		return nil
 	}
 	return g.v.course(code, l, g.v.segments(code, l, nil), nil)
+}
+
+// Versions are the instants from which each version judges, in order.
+func (g *Guard) Versions() []time.Time {
+	var out []time.Time
+	for _, r := range g.v.reigns {
+		out = append(out, g.v.dawn(r.from))
+	}
+	return out
 }
 
 // Dawn is the first instant of a day at the site.
