@@ -395,6 +395,9 @@ func (d *draws) moved() *lines {
 		v := &l.versions[i]
 		v.InForceFrom += by
 		v.Program.Site.Location = loc
+		if i > 0 && d.chance(30) { // the site turns out to be elsewhere
+			v.Program.Site.Location = time.FixedZone("elsewhere", 900*(d.n(40)-16))
+		}
 		for j := range v.Program.Items {
 			d.vary(&v.Program.Items[j])
 		}
@@ -500,6 +503,61 @@ func TestReachIsWhatTheDesignSays(t *testing.T) {
 	if in < 200 || out < 200 {
 		t.Errorf("entitled at %d instants and not at %d: the test asks too little", in, out)
 	}
+}
+
+// TestNobodyWithoutAGuardThatAsksThem is the promise of the whole, at the beginning, in the middle and at the end of every
+// span: an item that guards the very zone asks the person, and a record of theirs that counts by then has passed for it, or
+// an excusal of that item opens it; and no such item is shut.
+func TestNobodyWithoutAGuardThatAsksThem(t *testing.T) {
+	entitled := 0
+	rapid.Check(t, func(t *rapid.T) {
+		d := newNaiveDraws(t)
+		l := d.moved().known(standing.Always)
+		r, err := reach.New(l.engine(), "S", standing.Always)
+		if err != nil {
+			t.Fatal(err)
+		}
+		for _, zone := range []string{"III", "IV"} {
+			for _, s := range r.Ribbon("ann", zone) {
+				if !s.Entitled {
+					continue
+				}
+				entitled++
+				last := s.To.Add(-time.Microsecond)
+				if s.To.IsZero() {
+					last = s.From.AddDate(0, 1, 0)
+				}
+				for _, at := range []time.Time{s.From, s.From.Add(last.Sub(s.From) / 2), last} {
+					if !newPlain(l, at).answered(zone) {
+						t.Fatalf("entitled to %s at %v by no item that asks and is answered\n%s", zone, at, l)
+					}
+				}
+			}
+		}
+	})
+	if entitled < 20 {
+		t.Errorf("only %d times anybody was entitled", entitled)
+	}
+}
+
+// answered tells whether an item that guards the zone asks, and all that do have an answer.
+func (n *plain) answered(zone string) bool {
+	asked := false
+	for i := range n.v.Program.Items {
+		it := &n.v.Program.Items[i]
+		if !slices.Contains(it.Guards, zone) || !n.says(it).asked {
+			continue
+		}
+		asked = true
+		passed := slices.ContainsFunc(n.answers(it), func(d done) bool { return d.passed })
+		opened := slices.ContainsFunc(n.lines.excusals, func(x standing.Excusal) bool {
+			return x.Item == it.Code && x.Opens && x.From <= n.on && n.on <= *x.To
+		})
+		if !passed && !opened {
+			return false
+		}
+	}
+	return asked
 }
 
 // instants are some of the quarters of an hour, and all that the book names with the midnights around them.
