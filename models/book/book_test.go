@@ -186,6 +186,11 @@ func (d *desk) fillMore() {
 	d.imp("passages", "at,door,badge,direction\n2026-03-01T09:00:00Z,D9,B-17,in\n")
 	_, err = d.Explain(d.Context(), d.officer, site, book.MarkForm{At: "2026-03-01T09:00:00Z", Door: "D9", Badge: "B-17", Note: "a delivery, seen in by Runa"})
 	d.ok(err)
+	d.now = d.now.Add(time.Second)
+	r, err := d.Announce(d.Context(), d.officer, site, book.VisitForm{Visitor: "Ada Lund", Employer: "Skerry Magnets", Kind: "vendor", Zones: []string{"II"}, To: "2026-03-02 16:00", Tool: "torch"})
+	d.ok(err)
+	_, err = d.StepVisit(d.Context(), d.officer, book.StepForm{Visit: r.ID(), Step: book.Arrived, Tools: []string{"torch"}})
+	d.ok(err)
 }
 
 func TestRebuildMakesTheSameProjections(t *testing.T) {

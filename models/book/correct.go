@@ -120,10 +120,15 @@ func (b *Book) ErasePerson(ctx context.Context, actor Actor, person string) (Rec
 	if err != nil {
 		return Receipt{}, err
 	}
+	return receipt, b.afterErasure(ctx)
+}
+
+// afterErasure leaves no trace of what was erased, in the file and in memory.
+func (b *Book) afterErasure(ctx context.Context) error {
 	if err := errors.Join(b.removeSnapshots(), b.st.Scrub(ctx)); err != nil {
-		return receipt, fmt.Errorf("the person is erased, but the file could not be scrubbed; erase again once nobody else has it open: %w", err)
+		return fmt.Errorf("it is erased, but the file could not be scrubbed; erase again once nobody else has it open: %w", err)
 	}
-	return receipt, b.reload(ctx)
+	return b.reload(ctx)
 }
 
 func (s *session) erase(person string) error {
@@ -197,6 +202,11 @@ func blankRows(tx *store.Tx, person string, seq int64) error {
 	for _, v := range veils {
 		if v.Path == "badge" {
 			if err := tx.BlankMark(v.Seq, seq); err != nil {
+				return err
+			}
+		}
+		if v.Path == "visitor" {
+			if err := tx.BlankVisit(v.Seq, seq); err != nil {
 				return err
 			}
 		}

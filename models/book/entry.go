@@ -88,6 +88,8 @@ var newBody = map[string]func() body{
 	kindEvent:      func() body { return new(eventBody) },
 	kindExcusal:    func() body { return new(excusalBody) },
 	kindRight:      func() body { return new(rightBody) },
+	kindVisit:      func() body { return new(visitBody) },
+	kindVisitStep:  func() body { return new(visitStepBody) },
 	kindMark:       func() body { return new(markBody) },
 	kindPause:      func() body { return new(pauseBody) },
 	kindWithdrawal: func() body { return new(withdrawalBody) },

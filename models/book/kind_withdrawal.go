@@ -26,12 +26,16 @@ func (b *withdrawalBody) apply(applied) []any { return nil }
 type erasureBody struct {
 	common
 	Person string `json:"person"`
+	Visit  string `json:"visit,omitempty"` // the entry of a visit, in place of a person
 }
 
 func (b *erasureBody) kind() string { return kindErasure }
 func (b *erasureBody) version() int { return 1 }
 
 func (b *erasureBody) validate(c *check) []Fault {
+	if b.Visit != "" {
+		return nil
+	}
 	p, ok := c.m.person(b.Person)
 	switch {
 	case !ok:

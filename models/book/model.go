@@ -24,23 +24,25 @@ import (
 // projected rows, at open and after every write of this or another process. Once it is published it is
 // only read; what comes after goes into a fork.
 type model struct {
-	own      *owner
-	st       *store.Store              // where the records are, of which it only keeps what standings need
-	progress func(rows, entries int64) // is told how far reading everything is; may be nil
-	only     string                    // the site of which alone it is; empty: all
-	head     int64                     // number of entries taken in
-	engine   *standing.Engine
-	sites    map[string]*siteModel
-	people   shelf[string, []store.PersonRow]
-	named    shelf[uint64, []string] // codes of people by the hash of each name that they bear or bore
-	badges   shelf[string, []string] // codes of people by each badge that they bear or bore
-	marks    shelf[markKey, []store.MarkRow]
-	fixtures shelf[siteCode, []store.FixtureRow]
-	stints   shelf[store.SubjectKey, []store.StintRow]
-	facts    shelf[store.SubjectKey, []store.FactRow]
-	events   shelf[store.SubjectKey, []store.EventRow]
-	excusals shelf[store.SubjectKey, []store.ExcusalRow]
-	rights   shelf[store.SubjectKey, []store.RightRow] // by person, at each site
+	own        *owner
+	st         *store.Store              // where the records are, of which it only keeps what standings need
+	progress   func(rows, entries int64) // is told how far reading everything is; may be nil
+	only       string                    // the site of which alone it is; empty: all
+	head       int64                     // number of entries taken in
+	engine     *standing.Engine
+	sites      map[string]*siteModel
+	people     shelf[string, []store.PersonRow]
+	named      shelf[uint64, []string] // codes of people by the hash of each name that they bear or bore
+	badges     shelf[string, []string] // codes of people by each badge that they bear or bore
+	marks      shelf[markKey, []store.MarkRow]
+	visits     shelf[string, []store.VisitRow]     // by site
+	visitSteps shelf[string, []store.VisitStepRow] // by the entry of the visit
+	fixtures   shelf[siteCode, []store.FixtureRow]
+	stints     shelf[store.SubjectKey, []store.StintRow]
+	facts      shelf[store.SubjectKey, []store.FactRow]
+	events     shelf[store.SubjectKey, []store.EventRow]
+	excusals   shelf[store.SubjectKey, []store.ExcusalRow]
+	rights     shelf[store.SubjectKey, []store.RightRow] // by person, at each site
 	remedyModel
 	plans    []store.PlanRow
 	done     shelf[string, []int64] // the records that stand of each planned session
@@ -62,6 +64,7 @@ func newModel() *model {
 	m := &model{own: &owner{}, engine: standing.New(), sites: map[string]*siteModel{}}
 	m.named, m.badges = newShelf[uint64, []string](m.own), newShelf[string, []string](m.own)
 	m.marks = newShelf[markKey, []store.MarkRow](m.own)
+	m.visits, m.visitSteps = newShelf[string, []store.VisitRow](m.own), newShelf[string, []store.VisitStepRow](m.own)
 	m.people, m.fixtures = newShelf[string, []store.PersonRow](m.own), newShelf[siteCode, []store.FixtureRow](m.own)
 	m.stints, m.facts = newShelf[store.SubjectKey, []store.StintRow](m.own), newShelf[store.SubjectKey, []store.FactRow](m.own)
 	m.events, m.excusals = newShelf[store.SubjectKey, []store.EventRow](m.own), newShelf[store.SubjectKey, []store.ExcusalRow](m.own)
@@ -79,6 +82,7 @@ func (m *model) fork() *model {
 	f.engine = m.engine.Fork()
 	f.sites = maps.Clone(m.sites)
 	f.named, f.badges, f.marks = m.named.fork(f.own), m.badges.fork(f.own), m.marks.fork(f.own)
+	f.visits, f.visitSteps = m.visits.fork(f.own), m.visitSteps.fork(f.own)
 	f.people, f.fixtures = m.people.fork(f.own), m.fixtures.fork(f.own)
 	f.stints, f.facts = m.stints.fork(f.own), m.facts.fork(f.own)
 	f.events, f.excusals = m.events.fork(f.own), m.excusals.fork(f.own)
@@ -180,6 +184,12 @@ func (m *model) takeHappenings(d store.Delta) {
 	for _, r := range d.Rights {
 		put(&m.rights, personAt(r.Site, r.Person), r, func(r store.RightRow) int64 { return r.Seq }, always)
 		m.putRight(r)
+	}
+	for _, r := range d.Visits {
+		put(&m.visits, r.Site, r, func(r store.VisitRow) int64 { return r.Seq }, always)
+	}
+	for _, r := range d.VisitSteps {
+		put(&m.visitSteps, r.Visit, r, func(r store.VisitStepRow) int64 { return r.Seq }, always)
 	}
 	for _, r := range d.Marks {
 		put(&m.marks, keyOfMark(r), r, func(r store.MarkRow) int64 { return r.Seq }, always)

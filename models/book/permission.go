@@ -61,6 +61,9 @@ const (
 	KeepRights     Action = "keep-rights"  // who may enter which zone
 	SeePassages    Action = "see-passages" // door events, and who can open which door
 	ExplainPassage Action = "explain-passage"
+	HandleVisits   Action = "handle-visits" // announce visits, let visitors in and out
+	SeeVisits      Action = "see-visits"
+	SelfReport     Action = "self-report"   // that something about one's own screening has changed
 	KeepPeople     Action = "keep-people"   // people, their stints and facts
 	KeepFixtures   Action = "keep-fixtures" // fixtures and their facts
 	Correct        Action = "correct"       // supersede or withdraw somebody else's entry
@@ -85,7 +88,7 @@ const (
 var actionWords = map[Action]string{
 	SeeOwn: "see this", SeeSite: "see the site's records", SeeBook: "read the book's entries",
 	FillSheet: "record an inspection or check", RecordDone: "record trainings, screenings, drills and reviews",
-	Acknowledge: "acknowledge", ReportEvent: "report an event", Excuse: "excuse or pause", KeepRights: "grant or withdraw a right", SeePassages: "see door events", ExplainPassage: "explain a passage",
+	Acknowledge: "acknowledge", ReportEvent: "report an event", Excuse: "excuse or pause", KeepRights: "grant or withdraw a right", SeePassages: "see door events", HandleVisits: "announce or end a visit", SeeVisits: "see visits", SelfReport: "report a change about yourself", ExplainPassage: "explain a passage",
 	KeepPeople: "change people", KeepFixtures: "change fixtures", Correct: "correct another's entry",
 	CorrectOwn: "correct an entry", PlanDrills: "plan a drill", SetProgram: "change the checklist",
 	OpenSite: "open a site", ImportTables: "import", KeepAccounts: "change accounts", Erase: "erase a person",
@@ -110,6 +113,9 @@ var permissions = map[Action][]Role{
 	Excuse:         {SafetyOfficer},
 	KeepRights:     {SafetyOfficer},
 	SeePassages:    {Administrator, SafetyOfficer, Reader, Operator, Scheduler},
+	HandleVisits:   {SafetyOfficer, Facilities, Member},
+	SeeVisits:      {Administrator, SafetyOfficer, Facilities, Member, Reader, Operator, Scheduler},
+	SelfReport:     {SafetyOfficer, Facilities, Member},
 	ExplainPassage: {SafetyOfficer},
 	KeepPeople:     {SafetyOfficer},
 	KeepFixtures:   {SafetyOfficer, Facilities},

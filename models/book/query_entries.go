@@ -23,7 +23,7 @@ type EntryQuery struct {
 // Kinds are the kinds of entry with their words, for a filter.
 var Kinds = []struct{ Kind, Words string }{
 	{kindRecord, "Record"}, {kindPerson, "Person"}, {kindFixture, "Fixture"}, {kindEvent, "Event"}, {kindExcusal, "Excusal"},
-	{kindRight, "Right"}, {kindMark, "Explained passage"}, {kindPause, "Pause"}, {kindPlan, "Plan"}, {kindWithdrawal, "Withdrawal"}, {kindProgram, "Program"}, {kindBatch, "Import"},
+	{kindRight, "Right"}, {kindMark, "Explained passage"}, {kindVisit, "Visit"}, {kindVisitStep, "Step of a visit"}, {kindPause, "Pause"}, {kindPlan, "Plan"}, {kindWithdrawal, "Withdrawal"}, {kindProgram, "Program"}, {kindBatch, "Import"},
 	{kindAccount, "Account"}, {kindErasure, "Erasure"},
 	{kindIncident, "Incident"}, {kindIncidentReport, "Report of an incident"}, {kindRemedy, "Remedy"}, {kindRemedyDone, "Remedy done"},
 	{kindRemedyCheck, "Remedy confirmed or sent back"}, {kindOutage, "Out of service"}, {kindReturn, "Back in service"},
@@ -150,7 +150,7 @@ func (m *model) maySeeEntry(tx *store.Tx, actor Actor, e store.Entry) error {
 }
 
 func (m *model) mayCorrectEntry(actor Actor, e store.Entry, now time.Time, v EntryView) (may, reason bool) {
-	if v.SupersededBy != "" || !slices.Contains([]string{kindRecord, kindPerson, kindFixture, kindEvent, kindExcusal, kindPause, kindRight, kindMark, kindPlan, kindIncident, kindIncidentReport, kindRemedy, kindRemedyDone, kindRemedyCheck, kindReturn}, e.Kind) {
+	if v.SupersededBy != "" || !slices.Contains([]string{kindRecord, kindPerson, kindFixture, kindEvent, kindExcusal, kindPause, kindRight, kindMark, kindVisit, kindVisitStep, kindPlan, kindIncident, kindIncidentReport, kindRemedy, kindRemedyDone, kindRemedyCheck, kindReturn}, e.Kind) {
 		return false, false
 	}
 	if v.Hidden || Secret(e.Kind) && actor.may(SeeIncidents, e.Site) != nil {
@@ -278,6 +278,10 @@ func (m *model) summary(e store.Entry, bd body) string {
 		return fmt.Sprintf("%s excused for %s, %s to %s", b.Item, m.subjectWords(e.Site, b.Subject), b.From, b.To)
 	case *pauseBody:
 		return fmt.Sprintf("Pause of %s, %s to %s", m.subjectWords(e.Site, b.Subject), b.From, dayOr(b.To, "no end yet"))
+	case *visitBody:
+		return "Visit announced: " + b.Visitor.String() + ", zones " + strings.Join(b.Zones, ", ")
+	case *visitStepBody:
+		return "Visit, " + strings.ReplaceAll(string(b.Step), "-", " ") + ", " + m.onWords(e.Site, b.At)
 	case *markBody:
 		return b.words()
 	case *rightBody:
@@ -296,6 +300,9 @@ func (m *model) summary(e store.Entry, bd body) string {
 		}
 		return "Withdrawn: an earlier entry"
 	case *erasureBody:
+		if b.Visit != "" {
+			return "A visitor erased"
+		}
 		return "A person erased: " + b.Person
 	case *accountBody:
 		return fmt.Sprintf("Account %s, %s", b.Name, b.Role.Words())

@@ -79,6 +79,26 @@ func (m *model) fields(e store.Entry, bd body) []Field {
 		l.add("From", b.From.String())
 		l.add("To", dayOr(b.To, "no end yet"))
 		l.veil("Why", b.Because)
+	case *visitBody:
+		l.veil("Visitor", b.Visitor)
+		l.veil("Employer", b.Employer)
+		l.veil("Purpose", b.Purpose)
+		l.add("Zones", strings.Join(b.Zones, ", "))
+		l.add("From", m.onWords(e.Site, b.From))
+		l.add("To", m.onWords(e.Site, b.To))
+		if b.Escort != "" {
+			l.add("Escort", m.subjectWords(e.Site, subjectBody{"person", b.Escort}))
+		}
+		l.veil("Tools", b.Tools)
+	case *visitStepBody:
+		l.add("Visit", b.Announced)
+		l.add("At", m.onWords(e.Site, b.At))
+		if b.Screener != "" {
+			l.add("Screened by", m.subjectWords(e.Site, subjectBody{"person", b.Screener}))
+		}
+		l.add("Outcome", strings.ReplaceAll(string(b.Outcome), "-", " "))
+		l.veil("Tools", b.Tools)
+		l.veil("Note", b.Note)
 	case *markBody:
 		l.add("Passage at", m.onWords(e.Site, b.At))
 		l.add("Door", m.subjectWords(e.Site, subjectBody{"fixture", b.Door}))

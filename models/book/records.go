@@ -326,6 +326,41 @@ func (b *Book) ReportEvent(ctx context.Context, actor Actor, site string, f Even
 	})
 }
 
+// ReportSelf says that something about the actor's own screening has changed, without saying what: an event of now, of
+// the kind that the program names for it.
+func (b *Book) ReportSelf(ctx context.Context, actor Actor, site string) (Receipt, error) {
+	if err := actor.may(SelfReport, site); err != nil {
+		return Receipt{}, err
+	}
+	if actor.Person == "" {
+		return Receipt{}, &Denied{Action: SelfReport, Role: actor.Role, Why: "this account is linked to no person; ask an administrator to link it"}
+	}
+	return b.write(ctx, actor, func(s *session) error {
+		c := s.check(site)
+		ev, ok := c.selfEvent()
+		if !ok {
+			return invalid("event", "", "is named by no line of the program", "an event of a person with self_report: true")
+		}
+		if !s.m.onStaff(site, actor.Person, c.today()) {
+			return &Denied{Action: SelfReport, Role: actor.Role, Why: "you are not on staff here today"}
+		}
+		return s.add(draft{site: site, body: &eventBody{Event: ev, Subject: subjectBody{"person", actor.Person}, On: moment{time: &s.now}.String()}})
+	})
+}
+
+// selfEvent is the event that people report of themselves.
+func (c *check) selfEvent() (string, bool) {
+	if c.m.site(c.site) == nil {
+		return "", false
+	}
+	for _, e := range c.m.site(c.site).on(c.today()).program.Events {
+		if e.SelfReport {
+			return e.Code, true
+		}
+	}
+	return "", false
+}
+
 func (c *check) eventBody(f EventForm) (*eventBody, []Fault) {
 	subject, faults := c.subject("subject", f.Subject)
 	on, bad := c.readMoment("on", f.On)

@@ -22,7 +22,7 @@ import (
 // database. What does not fit is not read.
 
 // snapshotForm changes whenever the form of the head or of the sections does.
-const snapshotForm = 4
+const snapshotForm = 5
 
 var snapshotMagic = [8]byte{'L', 'o', 'd', 'e', 's', 'n', 'a', 'p'}
 
@@ -237,6 +237,8 @@ func (m *model) shelveListed(d *store.Delta) {
 	})
 	shelve(&m.events, d.Events, func(r *store.EventRow) store.SubjectKey { return r.Subject })
 	shelve(&m.excusals, d.Excusals, func(r *store.ExcusalRow) store.SubjectKey { return r.Subject })
+	shelve(&m.visits, d.Visits, func(r *store.VisitRow) string { return r.Site })
+	shelve(&m.visitSteps, d.VisitSteps, func(r *store.VisitStepRow) string { return r.Visit })
 	shelve(&m.marks, d.Marks, func(r *store.MarkRow) markKey { return keyOfMark(*r) })
 	shelve(&m.rights, d.Rights, func(r *store.RightRow) store.SubjectKey { return personAt(r.Site, r.Person) })
 	m.shelveRemedies(d)
@@ -285,7 +287,7 @@ func section(r io.Reader, s snapshotSection) ([]byte, error) {
 func (m *model) rows() store.Delta {
 	d := store.Delta{
 		People: listed(m.people), Fixtures: listed(m.fixtures), Stints: listed(m.stints), Facts: listed(m.facts),
-		Events: listed(m.events), Excusals: listed(m.excusals), Rights: listed(m.rights), Marks: listed(m.marks), Plans: m.plans, Accounts: listed(m.accounts), Batches: m.batches,
+		Events: listed(m.events), Excusals: listed(m.excusals), Rights: listed(m.rights), Marks: listed(m.marks), Visits: listed(m.visits), VisitSteps: listed(m.visitSteps), Plans: m.plans, Accounts: listed(m.accounts), Batches: m.batches,
 	}
 	m.listRemedies(&d)
 	for _, code := range m.siteCodes() {

@@ -77,7 +77,7 @@ func TestExampleSections(t *testing.T) {
 		{Code: "outlet_height_m", Label: "Outlet height m", Type: FactNumber, Unit: "m"},
 		{Code: "over_public_path", Label: "Over public path", Type: FactYesNo},
 	}}})
-	same(t, "events", p.Events, []Event{{"quench", "Quench", "magnet"}, {"roof-work", "Roof work", "vent"}, {"health-change", "Health change", "person"}})
+	same(t, "events", p.Events, []Event{{Code: "quench", Name: "Quench", Of: "magnet"}, {Code: "roof-work", Name: "Roof work", Of: "vent"}, {Code: "health-change", Name: "Health change", Of: "person"}})
 	same(t, "documents", p.Documents, []Document{{"POL-ACCESS", "Access policy"}})
 	same(t, "sheets", p.Sheets, []Sheet{{
 		Code: "vent-yearly", Title: "Vent yearly", For: "vent", RecordedBy: []string{"facilities", "safety-officer"},

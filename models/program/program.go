@@ -120,6 +120,7 @@ type FixtureKind struct {
 type Event struct {
 	Code, Name string
 	Of         string // person, zone, crew, post, document, site, fixture or a fixture kind
+	SelfReport bool   // the one that a person reports of themselves, without saying what has changed
 }
 
 // Document is a policy or a procedure that the site keeps.

@@ -205,9 +205,25 @@ func (r *reader) events(root object) {
 			e.Of = r.kindOr(n, o.at("of"), of)
 		}
 		e.Name = o.named("name", spokenCode(e.Code))
+		if e.SelfReport = o.yesNo("self_report", false); e.SelfReport {
+			r.selfReport(o, e)
+		}
 		r.register(o.get("code"), o.at("code"), e.Code, taken)
 		r.p.Events = append(r.p.Events, e)
 	})
+}
+
+// selfReport checks that an event which people report of themselves is about people, and the only one.
+func (r *reader) selfReport(o object, e Event) {
+	n, path := o.get("self_report"), o.at("self_report")
+	if e.Of != "" && e.Of != string(AsksPerson) {
+		r.fault(n, path, shown(n.text), "only what happens to a person can be reported by them", "write of: person")
+	}
+	for _, other := range r.p.Events {
+		if other.SelfReport {
+			r.fault(n, path, shown(n.text), other.Code+" is reported by people of themselves already", "mark one event alone")
+		}
+	}
 }
 
 // kindOr reads a fixture kind or one of the other words. A kind that is not declared and that no

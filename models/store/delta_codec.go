@@ -64,6 +64,8 @@ func (d *Delta) code(c coder) {
 	codeRows(c, &d.Rights, codeRight)
 	d.codeRemedies(c)
 	codeRows(c, &d.Marks, codeMark)
+	codeRows(c, &d.Visits, codeVisit)
+	codeRows(c, &d.VisitSteps, codeVisitStep)
 	codeRows(c, &d.Plans, codePlan)
 	codeRows(c, &d.Accounts, codeAccount)
 	codeRows(c, &d.Batches, codeBatch)
@@ -173,6 +175,33 @@ func codeMark(c coder, r *MarkRow) {
 	c.moment(&r.At)
 	c.shared(&r.Door)
 	c.shared(&r.Badge)
+}
+
+func codeVisit(c coder, r *VisitRow) {
+	c.line(&r.Line)
+	c.shared(&r.Site)
+	c.shared(&r.Visitor)
+	c.shared(&r.Employer)
+	c.shared(&r.Badge)
+	c.shared(&r.Kind)
+	c.list(&r.Zones)
+	c.moment(&r.From)
+	c.moment(&r.To)
+	c.shared(&r.Escort)
+	c.shared(&r.Person)
+	c.list(&r.Tools)
+	c.flag(&r.Late)
+}
+
+func codeVisitStep(c coder, r *VisitStepRow) {
+	c.line(&r.Line)
+	c.shared(&r.Site)
+	c.shared(&r.Visit)
+	c.shared(&r.Step)
+	c.moment(&r.At)
+	c.shared(&r.Screener)
+	c.shared(&r.Outcome)
+	c.shared(&r.Account)
 }
 
 func codePlan(c coder, r *PlanRow) {

@@ -174,6 +174,8 @@ func sampleDelta() Delta {
 		Outages:     []OutageRow{{line(18), "QUAY", key, "V1", "id", at, true, "A1"}},
 		Returns:     []ReturnRow{{line(19), "QUAY", []string{"a", "b"}, at}},
 		Marks:       []MarkRow{{line(12), "QUAY", at, "D1", "B-1"}},
+		Visits:      []VisitRow{{line(13), "QUAY", "A Visitor", "A Firm", "", "vendor", []string{"IV"}, at, at, "P1", "", []string{"torch"}, true}},
+		VisitSteps:  []VisitStepRow{{line(14), "QUAY", "id-13", "arrived", at, "P1", "cleared", "A1"}},
 		Plans:       []PlanRow{{line(12), "QUAY", "drill/quench", "early", day, "14:00"}},
 		Accounts:    []AccountRow{{line(13), "A1", "runa", "member", []string{"QUAY"}, "P1", &day, true}, {line(14), "A2", "ada", "administrator", nil, "", nil, false}},
 		Batches:     []BatchRow{{line(15), "QUAY", "people", "people.csv", 3, "A1", at}},

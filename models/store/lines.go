@@ -220,6 +220,49 @@ func markOut(r markLine) MarkRow {
 	return MarkRow{r.Line.out(), r.Site, time.Time(r.AtTime), r.Door, r.Badge}
 }
 
+type visitLine struct {
+	Line                     lineColumns `gorm:"embedded"`
+	Site                     string
+	Visitor, Employer, Badge string
+	Kind                     string
+	Zones                    codes
+	FromTime, ToTime         instant
+	Escort, Person           string
+	Tools                    codes
+	Late                     bool
+	Touched                  int64
+}
+
+func visitIn(r VisitRow) visitLine {
+	return visitLine{
+		Line: lineIn(r.Line), Site: r.Site, Visitor: r.Visitor, Employer: r.Employer, Badge: r.Badge, Kind: r.Kind, Zones: codes(r.Zones),
+		FromTime: instant(r.From), ToTime: instant(r.To), Escort: r.Escort, Person: r.Person, Tools: codes(r.Tools), Late: r.Late,
+	}
+}
+
+func visitOut(r visitLine) VisitRow {
+	return VisitRow{
+		Line: r.Line.out(), Site: r.Site, Visitor: r.Visitor, Employer: r.Employer, Badge: r.Badge, Kind: r.Kind, Zones: r.Zones,
+		From: time.Time(r.FromTime), To: time.Time(r.ToTime), Escort: r.Escort, Person: r.Person, Tools: r.Tools, Late: r.Late,
+	}
+}
+
+type visitStepLine struct {
+	Line              lineColumns `gorm:"embedded"`
+	Site, Visit, Step string
+	AtTime            instant
+	Screener, Outcome string
+	Account           string
+}
+
+func visitStepIn(r VisitStepRow) visitStepLine {
+	return visitStepLine{lineIn(r.Line), r.Site, r.Visit, r.Step, instant(r.At), r.Screener, r.Outcome, r.Account}
+}
+
+func visitStepOut(r visitStepLine) VisitStepRow {
+	return VisitStepRow{r.Line.out(), r.Site, r.Visit, r.Step, time.Time(r.AtTime), r.Screener, r.Outcome, r.Account}
+}
+
 type planLine struct {
 	Line             lineColumns `gorm:"embedded"`
 	Site, What, Crew string

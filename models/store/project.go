@@ -25,13 +25,15 @@ type Delta struct {
 	Events      []EventRow
 	Excusals    []ExcusalRow
 	Rights      []RightRow
+	Marks       []MarkRow
+	Visits      []VisitRow
+	VisitSteps  []VisitStepRow
 	Incidents   []IncidentRow
 	Reports     []ReportRow
 	Remedies    []RemedyRow
 	RemedySteps []RemedyStepRow
 	Outages     []OutageRow
 	Returns     []ReturnRow
-	Marks       []MarkRow
 	Plans       []PlanRow
 	Accounts    []AccountRow
 	Batches     []BatchRow
@@ -72,6 +74,8 @@ var projections = []projection{
 	table[ExcusalRow, excusalLine]{"excusals", excusalIn, excusalOut, func(r *excusalLine) *lineColumns { return &r.Line }, func(d *Delta) *[]ExcusalRow { return &d.Excusals }, false},
 	table[RightRow, rightLine]{"rights", rightIn, rightOut, func(r *rightLine) *lineColumns { return &r.Line }, func(d *Delta) *[]RightRow { return &d.Rights }, false},
 	table[MarkRow, markLine]{"marks", markIn, markOut, func(r *markLine) *lineColumns { return &r.Line }, func(d *Delta) *[]MarkRow { return &d.Marks }, true},
+	table[VisitRow, visitLine]{"visits", visitIn, visitOut, func(r *visitLine) *lineColumns { return &r.Line }, func(d *Delta) *[]VisitRow { return &d.Visits }, true},
+	table[VisitStepRow, visitStepLine]{"visit_steps", visitStepIn, visitStepOut, func(r *visitStepLine) *lineColumns { return &r.Line }, func(d *Delta) *[]VisitStepRow { return &d.VisitSteps }, false},
 	table[IncidentRow, incidentLine]{"incidents", incidentIn, incidentOut, func(r *incidentLine) *lineColumns { return &r.Line }, func(d *Delta) *[]IncidentRow { return &d.Incidents }, false},
 	table[ReportRow, reportLine]{"reports", reportIn, reportOut, func(r *reportLine) *lineColumns { return &r.Line }, func(d *Delta) *[]ReportRow { return &d.Reports }, false},
 	table[RemedyRow, remedyLine]{"remedies", remedyIn, remedyOut, func(r *remedyLine) *lineColumns { return &r.Line }, func(d *Delta) *[]RemedyRow { return &d.Remedies }, false},
@@ -364,6 +368,11 @@ func (t *Tx) BlankFacts(seq, by int64, facts ...string) error {
 // BlankMark empties the badge in the mark that entry seq made. By is the erasing entry, as in BlankPerson.
 func (t *Tx) BlankMark(seq, by int64) error {
 	return t.blank("UPDATE marks SET badge = '', touched = ? WHERE seq = ?", by, seq)
+}
+
+// BlankVisit empties what tells who came in the visit that entry seq announced. By is the erasing entry, as in BlankPerson.
+func (t *Tx) BlankVisit(seq, by int64) error {
+	return t.blank("UPDATE visits SET visitor = '', employer = '', badge = '', tools = '[]', touched = ? WHERE seq = ?", by, seq)
 }
 
 // ends notes that the part under way, if any, ends or blanks rows.

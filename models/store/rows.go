@@ -218,6 +218,28 @@ type MarkRow struct {
 	Door, Badge string
 }
 
+// VisitRow is an announced visit. Names, employer, badge and tools are empty once they are erased.
+type VisitRow struct {
+	Line
+	Site                     string
+	Visitor, Employer, Badge string
+	Kind                     string
+	Zones                    []string
+	From, To                 time.Time
+	Escort, Person           string   // codes of people; Person is the visitor's own, if they have one
+	Tools                    []string // brought along
+	Late                     bool     // announced after it began
+}
+
+// VisitStepRow is what became of a visit: the visitor came, left, was turned away, or the visit was called off.
+type VisitStepRow struct {
+	Line
+	Site, Visit, Step string // Visit is the entry that announced it
+	At                time.Time
+	Screener, Outcome string
+	Account           string
+}
+
 // PlanRow is a drill or session that is planned. It is done once a record names it as its session.
 type PlanRow struct {
 	Line

@@ -60,6 +60,8 @@ var ofSite = map[string]string{
 	"outages":      "site = @site",
 	"returns":      "site = @site",
 	"marks":        "site = @site",
+	"visits":       "site = @site",
+	"visit_steps":  "site = @site",
 	"plans":        "site = @site",
 }
 
