@@ -37,6 +37,7 @@ var routes = []route{
 	{http.MethodGet, "/api/sites/:site/standings", book.SeeOwn, (*server).standings},
 	{http.MethodGet, "/api/sites/:site/gaps", book.SeeOwn, (*server).gaps},
 	{http.MethodGet, "/api/sites/:site/reach", book.SeeOwn, (*server).reach},
+	{http.MethodGet, "/api/sites/:site/visits", book.SeeVisits, (*server).visits},
 	{http.MethodGet, "/api/sites/:site/passages", book.SeePassages, (*server).passages},
 	{http.MethodGet, "/api/sites/:site/rights-diff", book.SeePassages, (*server).rightsDiff},
 	{http.MethodGet, "/api/sites/:site/remedies", book.SeeOwn, (*server).remedies},

@@ -112,6 +112,9 @@ func personPage(v *visit) error {
 	if v.acts(book.RecordDone) {
 		p.Do = v.personActs(x)
 	}
+	if p.Mine && v.acts(book.SelfReport) && v.asksSelf() {
+		p.Do = append(p.Do, act{"Something about my screening has changed", v.url("self-report")})
+	}
 	p.MayEnd = v.acts(book.Excuse)
 	p.EndURL, p.ConfirmURL = v.url("pause-end"), v.url("confirm")
 	if v.acts(book.Erase) && !p.Mine && !x.Erased && !presentNow(x) {

@@ -29,6 +29,7 @@ const (
 	secRounds    = "Rounds"
 	secPeople    = "People"
 	secZones     = "Zones"
+	secDesk      = "Desk"
 	secDrills    = "Drills"
 	secChecklist = "Checklist"
 	secGaps      = "Gaps"
@@ -89,6 +90,7 @@ func (v *visit) siteLinks(s *spine, at book.SiteView, section string) error {
 	add(see || v.may(book.FillSheet), secRounds, counts.Due, "fixtures due", "rounds")
 	add(see, secPeople, 0, "", "people")
 	add(see, secZones, 0, "", "zones")
+	add(v.may(book.HandleVisits), secDesk, 0, "", "desk")
 	add(see, secDrills, 0, "", "drills")
 	add(see, secChecklist, 0, "", "checklist")
 	add(see, secGaps, counts.Gaps, "gaps", "gaps")

@@ -45,6 +45,7 @@ type todayLeaf struct {
 	Do       []act
 	Steps    []stepLine
 	Excusals []waitingLine
+	Visits   []visitLine
 	When     *asOf
 	GapsURL  string
 	Outages  []outageLine
@@ -75,6 +76,9 @@ func todayPage(v *visit) error {
 	rows := v.forRole(st.Rows)
 	bad, low, told := sorted(rows)
 	p.Say = v.todaySay(len(bad), len(low), len(told))
+	if said := v.selfSay(rows); said != "" && v.may(book.SeeSite) {
+		p.Say = append(p.Say, said)
+	}
 	p.Week = v.week(st.Plans, rows)
 	out, running, untold := bunches(bad, false), bunches(low, true), bunches(told, true)
 	if len(running) > lowShown {
@@ -119,6 +123,17 @@ func (v *visit) todayRest(p *todayLeaf, st short) error {
 	}
 	if err := v.todayRemedies(p); err != nil {
 		return err
+	}
+	if v.may(book.SeeVisits) && !v.elsewhen() {
+		open, err := v.b.Visits(v.ctx(), v.actor, book.VisitQuery{Site: v.site.Code, Open: true})
+		if err != nil {
+			return err
+		}
+		for _, x := range open {
+			if x.Here() || v.may(book.HandleVisits) {
+				p.Visits = append(p.Visits, v.visitLine(x))
+			}
+		}
 	}
 	if v.may(book.SetProgram) {
 		p.Steps = v.firstSteps(st)

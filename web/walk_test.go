@@ -48,7 +48,7 @@ func TestEveryRouteWithEveryRole(t *testing.T) {
 // own tells whether a role may see only some of what the route gives: what is their own.
 func own(r route, role book.Role) bool {
 	return r.action == book.SeeOwn && (role == book.Member || role == book.Administrator || role == book.Reader || role == book.Facilities) ||
-		r.action == book.FillSheet || r.action == book.Acknowledge || r.action == book.CorrectOwn || r.action == book.KeepAccounts
+		r.action == book.FillSheet || r.action == book.SelfReport || r.action == book.Acknowledge || r.action == book.CorrectOwn || r.action == book.KeepAccounts
 }
 
 // TestEveryRouteIsInTheTable holds that nothing is served that the table does not name.

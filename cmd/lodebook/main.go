@@ -39,6 +39,7 @@ type commands struct {
 	Standing   standingCommand   `cmd:"" help:"Standings on any day."`
 	Gaps       gapsCommand       `cmd:"" help:"What falls short."`
 	Reach      reachCommand      `cmd:"" help:"Who is entitled to a zone, until when, and why not."`
+	Visits     visitsCommand     `cmd:"" help:"Who visits on a day."`
 	Passages   passagesCommand   `cmd:"" help:"Door events of a time, each held against who was entitled."`
 	RightsDiff rightsDiffCommand `cmd:"" help:"What to withdraw and what to add in the doors' own system."`
 	Job        jobCommand        `cmd:"" help:"Run one scheduled job now."`

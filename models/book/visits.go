@@ -523,7 +523,7 @@ func (b *Book) KnownVisitors(ctx context.Context, actor Actor, site string) ([]K
 			}
 			out[i].Times++
 			out[i].Last = v.visitView(m.visitAt(r, always64), b.Now())
-			out[i].Person = cmp.Or(r.Person, out[i].Person)
+			out[i].Person = cmp.Or(r.Person, out[i].Person, m.personNamed(r.Visitor))
 		}
 		slices.SortStableFunc(out, func(a, b KnownVisitor) int { return cmp.Or(b.Times-a.Times, strings.Compare(a.Visitor, b.Visitor)) })
 		return nil
