@@ -30,7 +30,7 @@ func TestTheDesk(t *testing.T) {
 	j := h.as(book.SafetyOfficer)
 	desk := "/s/" + fell + "/desk"
 	h.page(j, desk).says(".say", "Nobody is visiting now.")
-	a := h.post(j, "/s/"+fell+"/announce", "visitor", "Ada Lund", "kind", "vendor", "zones", "IV", "escort", "P2", "to", "2026-12-01 10:00", "tools", "torque wrench")
+	a := h.post(j, "/s/"+fell+"/announce", "visitor", "Ada Lund", "kind", "vendor", "zones", "IV", "escort", "P2", "to", "2026-12-01 09:00", "tools", "torque wrench")
 	if a.Code != http.StatusUnprocessableEntity {
 		t.Fatal(a.Code)
 	}
@@ -39,7 +39,7 @@ func TestTheDesk(t *testing.T) {
 		t.Errorf("what was typed is gone: %q", got)
 	}
 	a.says("textarea", "torque wrench")
-	h.sent(j, "/s/"+fell+"/announce", "visitor", "Ada Lund", "employer", "Skerry Magnets", "kind", "vendor", "zones", "IV", "escort", "P1", "to", "2026-12-01 10:00", "tools", "torque wrench").says("main", "Announced: Ada Lund.")
+	h.sent(j, "/s/"+fell+"/announce", "visitor", "Ada Lund", "employer", "Skerry Magnets", "kind", "vendor", "zones", "IV", "escort", "P1", "to", "2026-12-01 09:00", "tools", "torque wrench").says("main", "Announced: Ada Lund.")
 	page := h.page(j, desk)
 	page.says(".say", "Nobody is visiting now; one more is announced for today.")
 	step := attribute(page.all(".visits .do a")[0], "href")
@@ -53,10 +53,10 @@ func TestTheDesk(t *testing.T) {
 	a = h.post(j, "/s/"+fell+"/visit-step", "visit", id, "step", "arrived", "screener", "P1", "outcome", "cleared")
 	a.says("main", "the visitor is here already")
 	h.page(j, "/s/"+fell+"/today").says("main", "Ada Lund")
-	h.now = h.now.Add(150 * time.Minute)
+	h.now = h.now.Add(90 * time.Minute)
 	page = h.page(j, desk)
 	page.says(".say", "One visitor is here, one of them longer than announced.")
-	page.says(".visits", "should be gone since 10:00")
+	page.says(".visits", "should be gone since 09:00")
 	h.post(j, "/s/"+fell+"/visit-step", "visit", id, "step", "gone").says("main", "not checked out is: torque wrench")
 	h.sent(j, "/s/"+fell+"/visit-step", "visit", id, "step", "gone", "tools", "torque wrench")
 	// Announced again in two taps: the name, and the button under the form that it fills in.
@@ -67,7 +67,7 @@ func TestTheDesk(t *testing.T) {
 		t.Errorf("the form holds %q and %q", form.value("visitor"), form.value("escort"))
 	}
 	day := h.page(h.as(book.Reader), "/s/"+fell+"/visits")
-	day.says("table", "gone 10:30")
+	day.says("table", "gone 09:30")
 	day.hides("main", "To the desk")
 	one := h.page(j, "/s/"+fell+"/visits/"+id)
 	one.says("dl", "torque wrench")
