@@ -12,7 +12,7 @@ import (
 )
 
 type importCommand struct {
-	What string `arg:"" optional:"" help:"people, fixtures, records, events, excusals, pauses or rights."`
+	What string `arg:"" optional:"" help:"people, fixtures, records, events, excusals, pauses, rights or roster."`
 	File string `arg:"" optional:"" help:"The CSV or XLSX file."`
 	bookFlag
 	asFlag

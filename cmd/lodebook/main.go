@@ -35,7 +35,7 @@ type commands struct {
 	Demo       demoCommand       `cmd:"" help:"A throwaway book with an invented site, served at once."`
 	Open       openCommand       `cmd:"" help:"Make a book, add a site to it, or give a site a new version of its program."`
 	Serve      serveCommand      `cmd:"" help:"The web app, the API and the jobs."`
-	Import     importCommand     `cmd:"" help:"Bring in people, fixtures, records, events, excusals, pauses or rights from CSV or XLSX."`
+	Import     importCommand     `cmd:"" help:"Bring in people, fixtures, records, events, excusals, pauses, rights or roster from CSV or XLSX."`
 	Standing   standingCommand   `cmd:"" help:"Standings on any day."`
 	Gaps       gapsCommand       `cmd:"" help:"What falls short."`
 	Reach      reachCommand      `cmd:"" help:"Who is entitled to a zone, until when, and why not."`

@@ -31,12 +31,13 @@ type Book struct {
 	random io.Reader
 	site   string // the only one of which is read; empty: all
 
-	m       atomic.Pointer[model]  // what is known; never changed again
-	seen    atomic.Pointer[string] // a stamp of the store since which m has been all there is
-	growing chan struct{}          // holds a token while the model is being taken further
-	news    news                   // tells that m was replaced
-	queue   queue                  // writes that wait to be done
-	leading chan struct{}          // holds a token while writes are being done
+	m       atomic.Pointer[model]      // what is known; never changed again
+	seen    atomic.Pointer[string]     // a stamp of the store since which m has been all there is
+	growing chan struct{}              // holds a token while the model is being taken further
+	news    news                       // tells that m was replaced
+	queue   queue                      // writes that wait to be done
+	leading chan struct{}              // holds a token while writes are being done
+	stock   atomic.Pointer[stockTaken] // as of when stock was taken last
 
 	door      door // who is signed in
 	snapshots snapshots
@@ -247,6 +248,9 @@ func (n *news) tell() {
 // Turn makes today the present day of every site, so that what stands today is kept at hand. It is for a
 // process that stays: the first time it makes all that standings are counted from.
 func (b *Book) Turn(ctx context.Context) error {
+	if err := b.TakeStock(ctx); err != nil {
+		return err
+	}
 	if _, err := b.current(ctx); err != nil {
 		return err
 	}

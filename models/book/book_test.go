@@ -191,6 +191,7 @@ func (d *desk) fillMore() {
 	d.ok(err)
 	_, err = d.StepVisit(d.Context(), d.officer, book.StepForm{Visit: r.ID(), Step: book.Arrived, Tools: []string{"torch"}})
 	d.ok(err)
+	d.fillRoster()
 }
 
 func TestRebuildMakesTheSameProjections(t *testing.T) {

@@ -14,7 +14,7 @@ import (
 )
 
 // BulkRow is a row of a table in the form that a person would type it: a PersonForm, FixtureForm, RecordForm,
-// EventForm, ExcusalForm, PauseForm or RightForm without an ID. Days are written as YYYY-MM-DD, subjects best as kind:code.
+// EventForm, ExcusalForm, PauseForm, RightForm or DutyForm without an ID. Days are written as YYYY-MM-DD, subjects best as kind:code.
 type BulkRow interface {
 	table() string
 	draft(in *importing, c rowFaults) (rowDraft, []table.Fault)
@@ -125,7 +125,7 @@ func (k *bulk) table(t BulkTable) (ImportReport, error) {
 
 // bulkKinds are the kinds of entry that the tables make.
 var bulkKinds = map[string]string{
-	"people": kindPerson, "fixtures": kindFixture, "records": kindRecord, "events": kindEvent, "excusals": kindExcusal, "pauses": kindPause, "rights": kindRight,
+	"people": kindPerson, "fixtures": kindFixture, "records": kindRecord, "events": kindEvent, "excusals": kindExcusal, "pauses": kindPause, "rights": kindRight, "roster": kindDuty,
 }
 
 // row takes one row in.

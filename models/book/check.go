@@ -40,11 +40,14 @@ func checkCode(field, code string) []Fault {
 // checkWhat checks the kind and code of a record.
 func (c *check) checkWhat(field, what string) []Fault {
 	kind, code, ok := strings.Cut(what, "/")
+	if kind == "appointment" {
+		code = strings.TrimSuffix(code, deputySuffix)
+	}
 	if !ok || !slices.Contains(program.RecordKinds, kind) || !codePattern.MatchString(code) {
 		return []Fault{{field, what, "is no kind and code of a record", "kind/code, the kind one of " + strings.Join(program.RecordKinds, ", ")}}
 	}
 	if s := c.m.site(c.site); kind == "appointment" && s != nil && !s.declares(func(p *program.Program) bool { _, ok := p.Post(code); return ok }) {
-		return []Fault{{field, what, "names no post of this site", "appointment/ and the code of a post"}}
+		return []Fault{{field, what, "names no post of this site", "appointment/ and the code of a post, and behind it /deputy for its deputy"}}
 	}
 	return nil
 }

@@ -91,6 +91,8 @@ var newBody = map[string]func() body{
 	kindVisit:      func() body { return new(visitBody) },
 	kindVisitStep:  func() body { return new(visitStepBody) },
 	kindMark:       func() body { return new(markBody) },
+	kindDuty:       func() body { return new(dutyBody) },
+	kindStock:      func() body { return new(stockBody) },
 	kindPause:      func() body { return new(pauseBody) },
 	kindWithdrawal: func() body { return new(withdrawalBody) },
 	kindErasure:    func() body { return new(erasureBody) },

@@ -2,7 +2,9 @@ package book
 
 import (
 	"context"
+	"time"
 
+	"lodebook/models/civil"
 	"lodebook/models/store"
 )
 
@@ -35,4 +37,14 @@ func (b *Book) EntriesView(ctx context.Context, fn func(seen, known int64)) erro
 		fn(seen, m.head)
 		return err
 	})
+}
+
+// SetDoorList has the state of every site's list of doors told by a function, until what it gives back is called.
+func SetDoorList(state func() (imported civil.Day, open int, ok bool)) (back func()) {
+	was := doorListOf
+	doorListOf = func(context.Context, *Book, string, time.Time) (s doorState, err error) {
+		s.imported, s.open, s.ok = state()
+		return s, nil
+	}
+	return func() { doorListOf = was }
 }

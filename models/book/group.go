@@ -20,6 +20,7 @@ type request struct {
 	state    atomic.Int32
 	done     chan struct{}
 	receipt  Receipt
+	bears    map[string]bool // sites whose stock may be another one after it
 	err      error
 	panicked *store.Panic
 }
@@ -212,7 +213,7 @@ func (b *Book) do(r *request, tx *store.Tx, next *model) error {
 		r.err = err
 		return broken
 	}
-	r.receipt = s.receipt
+	r.receipt, r.bears = s.receipt, s.bears
 	if r.bulk {
 		return nil
 	}

@@ -51,7 +51,7 @@ type importer struct {
 }
 
 // Tables are the tables that can be imported.
-var Tables = []string{"people", "fixtures", "records", "events", "excusals", "pauses", "rights", "passages", "holders"}
+var Tables = []string{"people", "fixtures", "records", "events", "excusals", "pauses", "rights", "roster", "passages", "holders"}
 
 var importers map[string]importer
 
@@ -63,6 +63,7 @@ func init() {
 		"events":   {eventColumns, []string{"event", "subject", "on"}, nil, eventRow},
 		"excusals": {excusalColumns, []string{"item", "subject", "from", "to"}, nil, excusalRow},
 		"rights":   {rightColumns, []string{"person", "zone", "from"}, nil, rightRow},
+		"roster":   {rosterColumns, []string{"person", "from", "to"}, nil, dutyRow},
 		"pauses":   {pauseColumns, []string{"subject", "from"}, nil, pauseRow},
 	}
 }
@@ -314,8 +315,11 @@ func (in *importing) undone(seq int64) (bool, error) {
 // lineOf is the projected row that an entry of the table made.
 func (in *importing) lineOf(seq int64) (store.Line, bool, error) {
 	name := in.o.Table
-	if name == "pauses" {
+	switch name {
+	case "pauses":
 		name = "excusals"
+	case "roster":
+		name = "duties"
 	}
 	return in.tx.LineAt(name, seq)
 }

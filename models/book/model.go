@@ -44,6 +44,7 @@ type model struct {
 	excusals   shelf[store.SubjectKey, []store.ExcusalRow]
 	rights     shelf[store.SubjectKey, []store.RightRow] // by person, at each site
 	remedyModel
+	coverModel
 	plans    []store.PlanRow
 	done     shelf[string, []int64] // the records that stand of each planned session
 	accounts shelf[string, []store.AccountRow]
@@ -70,6 +71,7 @@ func newModel() *model {
 	m.events, m.excusals = newShelf[store.SubjectKey, []store.EventRow](m.own), newShelf[store.SubjectKey, []store.ExcusalRow](m.own)
 	m.rights = newShelf[store.SubjectKey, []store.RightRow](m.own)
 	m.remedyModel = newRemedyModel(m.own)
+	m.coverModel = newCoverModel(m.own)
 	m.done, m.accounts = newShelf[string, []int64](m.own), newShelf[string, []store.AccountRow](m.own)
 	return m
 }
@@ -88,6 +90,7 @@ func (m *model) fork() *model {
 	f.events, f.excusals = m.events.fork(f.own), m.excusals.fork(f.own)
 	f.rights = m.rights.fork(f.own)
 	f.remedyModel = m.remedyModel.fork(f.own)
+	f.coverModel = m.coverModel.fork(f.own)
 	f.done, f.accounts = m.done.fork(f.own), m.accounts.fork(f.own)
 	return &f
 }
@@ -156,6 +159,7 @@ func (m *model) take(d store.Delta) error {
 	}
 	m.takeHappenings(d)
 	m.takeRemedies(d)
+	m.takeCover(d)
 	for _, r := range d.Accounts {
 		put(&m.accounts, r.ID, r, func(r store.AccountRow) int64 { return r.Seq }, always)
 	}
@@ -251,7 +255,7 @@ func (m *model) planned(session string) ([]int64, bool) {
 
 func (m *model) takeFact(r store.FactRow) error {
 	k := store.SubjectKey{Site: r.Site, Kind: r.Kind, Code: r.Code}
-	put(&m.facts, k, r, func(r store.FactRow) int64 { return r.Seq }, func(a, b store.FactRow) bool { return a.Fact == b.Fact })
+	put(&m.facts, k, r, func(r store.FactRow) int64 { return r.Seq }, func(a, b store.FactRow) bool { return a.Fact == b.Fact && a.From == b.From })
 	return m.putFact(r)
 }
 
@@ -299,6 +303,7 @@ func (m *model) putVersion(v store.VersionRow, p *program.Program) {
 	}
 	m.sites[v.Site] = s
 	s.versions = upsert(s.versions, versionModel{v, p}, func(v versionModel) int64 { return v.row.Seq }, always)
+	m.coverModel.note(v.Site, p)
 	m.engine.PutVersion(v.Site, standing.Version{Line: known(v.Line), Number: v.Number, InForceFrom: v.InForceFrom, Program: p})
 }
 

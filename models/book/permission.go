@@ -64,6 +64,7 @@ const (
 	HandleVisits   Action = "handle-visits" // announce visits, let visitors in and out
 	SeeVisits      Action = "see-visits"
 	SelfReport     Action = "self-report"   // that something about one's own screening has changed
+	KeepRoster     Action = "keep-roster"   // who is on duty when
 	KeepPeople     Action = "keep-people"   // people, their stints and facts
 	KeepFixtures   Action = "keep-fixtures" // fixtures and their facts
 	Correct        Action = "correct"       // supersede or withdraw somebody else's entry
@@ -89,7 +90,7 @@ var actionWords = map[Action]string{
 	SeeOwn: "see this", SeeSite: "see the site's records", SeeBook: "read the book's entries",
 	FillSheet: "record an inspection or check", RecordDone: "record trainings, screenings, drills and reviews",
 	Acknowledge: "acknowledge", ReportEvent: "report an event", Excuse: "excuse or pause", KeepRights: "grant or withdraw a right", SeePassages: "see door events", HandleVisits: "announce or end a visit", SeeVisits: "see visits", SelfReport: "report a change about yourself", ExplainPassage: "explain a passage",
-	KeepPeople: "change people", KeepFixtures: "change fixtures", Correct: "correct another's entry",
+	KeepPeople: "change people", KeepRoster: "change the roster", KeepFixtures: "change fixtures", Correct: "correct another's entry",
 	CorrectOwn: "correct an entry", PlanDrills: "plan a drill", SetProgram: "change the checklist",
 	OpenSite: "open a site", ImportTables: "import", KeepAccounts: "change accounts", Erase: "erase a person",
 	RunJobs: "run jobs", ReportIncident: "report an incident", SeeIncidents: "see incidents", KeepRemedies: "keep remedies",
@@ -117,6 +118,7 @@ var permissions = map[Action][]Role{
 	SeeVisits:      {Administrator, SafetyOfficer, Facilities, Member, Reader, Operator, Scheduler},
 	SelfReport:     {SafetyOfficer, Facilities, Member},
 	ExplainPassage: {SafetyOfficer},
+	KeepRoster:     {SafetyOfficer},
 	KeepPeople:     {SafetyOfficer},
 	KeepFixtures:   {SafetyOfficer, Facilities},
 	Correct:        {SafetyOfficer},

@@ -23,7 +23,7 @@ type EntryQuery struct {
 // Kinds are the kinds of entry with their words, for a filter.
 var Kinds = []struct{ Kind, Words string }{
 	{kindRecord, "Record"}, {kindPerson, "Person"}, {kindFixture, "Fixture"}, {kindEvent, "Event"}, {kindExcusal, "Excusal"},
-	{kindRight, "Right"}, {kindMark, "Explained passage"}, {kindVisit, "Visit"}, {kindVisitStep, "Step of a visit"}, {kindPause, "Pause"}, {kindPlan, "Plan"}, {kindWithdrawal, "Withdrawal"}, {kindProgram, "Program"}, {kindBatch, "Import"},
+	{kindRight, "Right"}, {kindDuty, "Duty"}, {kindStock, "Stock"}, {kindMark, "Explained passage"}, {kindVisit, "Visit"}, {kindVisitStep, "Step of a visit"}, {kindPause, "Pause"}, {kindPlan, "Plan"}, {kindWithdrawal, "Withdrawal"}, {kindProgram, "Program"}, {kindBatch, "Import"},
 	{kindAccount, "Account"}, {kindErasure, "Erasure"},
 	{kindIncident, "Incident"}, {kindIncidentReport, "Report of an incident"}, {kindRemedy, "Remedy"}, {kindRemedyDone, "Remedy done"},
 	{kindRemedyCheck, "Remedy confirmed or sent back"}, {kindOutage, "Out of service"}, {kindReturn, "Back in service"},
@@ -150,7 +150,7 @@ func (m *model) maySeeEntry(tx *store.Tx, actor Actor, e store.Entry) error {
 }
 
 func (m *model) mayCorrectEntry(actor Actor, e store.Entry, now time.Time, v EntryView) (may, reason bool) {
-	if v.SupersededBy != "" || !slices.Contains([]string{kindRecord, kindPerson, kindFixture, kindEvent, kindExcusal, kindPause, kindRight, kindMark, kindVisit, kindVisitStep, kindPlan, kindIncident, kindIncidentReport, kindRemedy, kindRemedyDone, kindRemedyCheck, kindReturn}, e.Kind) {
+	if v.SupersededBy != "" || !slices.Contains([]string{kindRecord, kindPerson, kindFixture, kindEvent, kindExcusal, kindPause, kindRight, kindDuty, kindMark, kindVisit, kindVisitStep, kindPlan, kindIncident, kindIncidentReport, kindRemedy, kindRemedyDone, kindRemedyCheck, kindReturn}, e.Kind) {
 		return false, false
 	}
 	if v.Hidden || Secret(e.Kind) && actor.may(SeeIncidents, e.Site) != nil {
@@ -286,6 +286,10 @@ func (m *model) summary(e store.Entry, bd body) string {
 		return b.words()
 	case *rightBody:
 		return fmt.Sprintf("Right of %s to enter zone %s, %s to %s", m.subjectWords(e.Site, subjectBody{"person", b.Person}), b.Zone, m.onWords(e.Site, b.From), cmp.Or(m.onWords(e.Site, b.To), "no end yet"))
+	case *dutyBody:
+		return fmt.Sprintf("Duty of %s, %s to %s, %s", m.subjectWords(e.Site, subjectBody{"person", b.Person}), m.onWords(e.Site, b.From), m.onWords(e.Site, b.To), b.Duty)
+	case *stockBody:
+		return b.summary()
 	case *incidentBody, *incidentReportBody, *remedyBody, *remedyDoneBody, *remedyCheckBody, *outageBody, *returnBody:
 		return m.remedySummary(e.Site, b)
 	case *planBody:

@@ -112,6 +112,13 @@ func (m *model) fields(e store.Entry, bd body) []Field {
 		l.veil("Why", b.Because)
 		l.veil("Why it was withdrawn", b.Ended)
 		l.veil("Granted by", b.GrantedBy)
+	case *dutyBody:
+		l.add("Person", m.subjectWords(e.Site, subjectBody{"person", b.Person}))
+		l.add("From", m.onWords(e.Site, b.From))
+		l.add("To", m.onWords(e.Site, b.To))
+		l.add("Duty", b.Duty)
+	case *stockBody:
+		b.addFields(l, m, e.Site)
 	case *incidentBody, *incidentReportBody, *remedyBody, *remedyDoneBody, *remedyCheckBody, *outageBody, *returnBody:
 		m.addRemedyFields(l, e.Site, b)
 	case *planBody:

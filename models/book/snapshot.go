@@ -22,7 +22,7 @@ import (
 // database. What does not fit is not read.
 
 // snapshotForm changes whenever the form of the head or of the sections does.
-const snapshotForm = 5
+const snapshotForm = 6
 
 var snapshotMagic = [8]byte{'L', 'o', 'd', 'e', 's', 'n', 'a', 'p'}
 
@@ -242,6 +242,7 @@ func (m *model) shelveListed(d *store.Delta) {
 	shelve(&m.marks, d.Marks, func(r *store.MarkRow) markKey { return keyOfMark(*r) })
 	shelve(&m.rights, d.Rights, func(r *store.RightRow) store.SubjectKey { return personAt(r.Site, r.Person) })
 	m.shelveRemedies(d)
+	m.shelveCover(d)
 	shelve(&m.accounts, d.Accounts, func(r *store.AccountRow) string { return r.ID })
 	m.plans, m.batches = d.Plans, d.Batches
 }
@@ -290,6 +291,7 @@ func (m *model) rows() store.Delta {
 		Events: listed(m.events), Excusals: listed(m.excusals), Rights: listed(m.rights), Marks: listed(m.marks), Visits: listed(m.visits), VisitSteps: listed(m.visitSteps), Plans: m.plans, Accounts: listed(m.accounts), Batches: m.batches,
 	}
 	m.listRemedies(&d)
+	m.listCover(&d)
 	for _, code := range m.siteCodes() {
 		for _, v := range m.sites[code].versions {
 			d.Versions = append(d.Versions, v.row)

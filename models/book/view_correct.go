@@ -81,6 +81,8 @@ func formValues(bd body) map[string]string {
 		return map[string]string{"subject": key(b.Subject), "from": b.From.String(), "to": dayOr(b.To, ""), "because": b.Because.Value}
 	case *rightBody:
 		return map[string]string{"person": b.Person, "zone": b.Zone, "from": b.From, "to": b.To, "because": b.Because.Value}
+	case *dutyBody:
+		return map[string]string{"person": b.Person, "from": b.From, "to": b.To, "duty": b.Duty}
 	case *planBody:
 		return map[string]string{"record": b.Record, "crew": b.Crew, "day": b.Day.String(), "at": b.At, "note": b.Note.Value}
 	default:

@@ -37,19 +37,29 @@ type session struct {
 	actor   Actor
 	now     time.Time // recorded-at: the later of the clock and the last recorded-at
 	receipt Receipt
-	alone   bool  // its rows are taken into m at once, so that those after them are checked against them
-	rows    []any // else they are kept until it is done
+	alone   bool            // its rows are taken into m at once, so that those after them are checked against them
+	rows    []any           // else they are kept until it is done
+	bears   map[string]bool // sites whose stock may be another one after it
 }
 
 // write lets fn add entries, in a transaction that it may share with other writes of this process. When
 // fn fails nothing of it stays. When write returns, what fn wrote is on the disk and the next read sees it.
 func (b *Book) write(ctx context.Context, actor Actor, fn func(s *session) error) (Receipt, error) {
-	return b.submit(&request{ctx: ctx, actor: actor, fn: fn})
+	return b.submitted(&request{ctx: ctx, actor: actor, fn: fn})
 }
 
 // writeAlone is write in a transaction of its own, for what is long.
 func (b *Book) writeAlone(ctx context.Context, actor Actor, fn func(s *session) error) (Receipt, error) {
-	return b.submit(&request{ctx: ctx, actor: actor, fn: fn, alone: true})
+	return b.submitted(&request{ctx: ctx, actor: actor, fn: fn, alone: true})
+}
+
+// submitted has a write done and takes stock of what it bears on.
+func (b *Book) submitted(r *request) (Receipt, error) {
+	receipt, err := b.submit(r)
+	if err == nil {
+		b.restock(r.ctx, r)
+	}
+	return receipt, err
 }
 
 // operate writes what is no part of the book: secrets, sessions, flags, runs.
@@ -246,7 +256,9 @@ func (s *session) append(entries []store.Entry, veils [][]store.Veil, drafts []d
 		if err := s.endSuperseded(d, seq); err != nil {
 			return err
 		}
-		rows = append(rows, d.body.apply(appliedOf(entries[i], seq, s.m.zone))...)
+		made := d.body.apply(appliedOf(entries[i], seq, s.m.zone))
+		s.bearsOn(d, made)
+		rows = append(rows, made...)
 		s.receipt.Written = append(s.receipt.Written, d.id)
 	}
 	if s.alone {

@@ -51,6 +51,10 @@ func (s *Selector) pinned(field string) []string {
 const (
 	FactDoorListAge  = "door_list_age"
 	FactDoorListOpen = "door_list_open"
+	// FactDoorListOf is what is on record: the day of the list as a text, or false where there is none. The age follows
+	// from it, up to OldestDoorList.
+	FactDoorListOf = "door_list_of"
+	OldestDoorList = 400
 )
 
 // MissingFact is the error of a selector that needs a fact which is not on record.

@@ -222,3 +222,6 @@ func joined(list []interval) []interval {
 	}
 	return out
 }
+
+// CoverItems are the codes of all items of the site that ask for cover, in order.
+func (r *Reader) CoverItems() []string { return r.g.CoverItems() }

@@ -97,6 +97,8 @@ func (v *view) field(l *local, field string, on civil.Day) any {
 		return v.holders(l.subject.Code+deputy, on)
 	case "zones":
 		return v.zones(l, on)
+	case program.FactDoorListAge:
+		return v.doorListAge(l, on)
 	}
 	if fact, ok := strings.CutPrefix(field, factsPrefix); ok {
 		return v.fact(l, fact, on)
@@ -192,6 +194,8 @@ func (v *view) fieldTurns(t *turns, l *local, field string) {
 	case field == "code":
 	case field == "zones":
 		v.rightTurns(t, l)
+	case field == program.FactDoorListAge:
+		v.ageTurns(t, l)
 	case field == "held":
 		v.heldTurns(t, l)
 	case field == "posts":

@@ -142,6 +142,9 @@ func (p *plan) touched(c *change, l *local, to []int32) []int32 {
 
 // factField is the field by which a selector reads a fact of such a subject.
 func factField(asks program.Asks, code string) string {
+	if asks == program.AsksSite && code == program.FactDoorListOf {
+		return program.FactDoorListAge
+	}
 	if builtIn(asks, code) || asks == program.AsksSite && isField(code) {
 		return code
 	}

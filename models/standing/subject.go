@@ -83,6 +83,9 @@ func (v *view) facts(l *local, on civil.Day) map[string]any {
 			all[code] = value
 		}
 	}
+	if age := v.doorListAge(l, on); age != nil {
+		all[program.FactDoorListAge] = age
+	}
 	return all
 }
 
@@ -96,6 +99,50 @@ func (v *view) fact(l *local, code string, on civil.Day) any {
 		}
 	}
 	return nil
+}
+
+// doorListAge is how many days old the site's list of who can open which door is on the day, -1 where there is none;
+// nil where that is not known.
+func (v *view) doorListAge(l *local, on civil.Day) any {
+	if l.subject.Asks != program.AsksSite {
+		return nil
+	}
+	switch of := v.fact(l, program.FactDoorListOf, on).(type) {
+	case string:
+		if day, err := civil.ParseDay(of); err == nil {
+			return float64(min(on-day, program.OldestDoorList))
+		}
+	case bool:
+		return float64(-1)
+	}
+	return nil
+}
+
+// ageTurns adds the days on which the age of the list of doors is another one.
+func (v *view) ageTurns(t *turns, l *local) {
+	list := l.values(program.FactDoorListOf)
+	for i := range list {
+		f := &list[i]
+		if !f.KnownAt(v.k) {
+			continue
+		}
+		t.add(f.From)
+		of, ok := f.Value.(string)
+		day, err := civil.ParseDay(of)
+		if !ok || err != nil {
+			continue
+		}
+		last := day + program.OldestDoorList
+		for j := i + 1; j < len(list); j++ {
+			if list[j].KnownAt(v.k) {
+				last = min(last, list[j].From)
+				break
+			}
+		}
+		for d := f.From + 1; d <= last; d++ {
+			t.add(d)
+		}
+	}
 }
 
 func (v *view) text(l *local, code string, on civil.Day) string {

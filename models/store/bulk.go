@@ -72,6 +72,7 @@ var bulkColumns = map[string]string{
 	"events":   lineNames + "site, subject_site, subject_kind, subject_code, event, on_day, at_time",
 	"excusals": lineNames + "site, subject_site, subject_kind, subject_code, item, from_day, to_day, opens, waiting",
 	"rights":   lineNames + "site, person, zone, from_time, to_time",
+	"duties":   lineNames + "site, person, from_time, to_time, duty",
 }
 
 // bulkSizes are how many rows the prepared statements take: the largest first, the others for the rest.
@@ -185,6 +186,10 @@ func (r *eventLine) values(to []any) []any {
 func (r *excusalLine) values(to []any) []any {
 	to = append(r.Line.values(to), r.Site)
 	return append(r.Subject.values(to), r.Item, r.FromDay, r.ToDay, r.Opens, r.Waiting)
+}
+
+func (r *dutyLine) values(to []any) []any {
+	return append(r.Line.values(to), r.Site, r.Person, r.FromTime, r.ToTime, r.Duty)
 }
 
 func (r *rightLine) values(to []any) []any {

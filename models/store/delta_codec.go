@@ -62,6 +62,8 @@ func (d *Delta) code(c coder) {
 	codeRows(c, &d.Events, codeEvent)
 	codeRows(c, &d.Excusals, codeExcusal)
 	codeRows(c, &d.Rights, codeRight)
+	codeRows(c, &d.Duties, codeDuty)
+	codeRows(c, &d.Stocks, codeStock)
 	d.codeRemedies(c)
 	codeRows(c, &d.Marks, codeMark)
 	codeRows(c, &d.Visits, codeVisit)
@@ -202,6 +204,24 @@ func codeVisitStep(c coder, r *VisitStepRow) {
 	c.shared(&r.Screener)
 	c.shared(&r.Outcome)
 	c.shared(&r.Account)
+}
+
+func codeDuty(c coder, r *DutyRow) {
+	c.line(&r.Line)
+	c.shared(&r.Site)
+	c.shared(&r.Person)
+	c.moment(&r.From)
+	c.moment(&r.To)
+	c.shared(&r.Duty)
+}
+
+func codeStock(c coder, r *StockRow) {
+	c.line(&r.Line)
+	c.shared(&r.Site)
+	c.shared(&r.Item)
+	c.moment(&r.From)
+	c.moment(&r.To)
+	c.list(&r.Spans)
 }
 
 func codePlan(c coder, r *PlanRow) {

@@ -110,6 +110,10 @@ func (d *draws) delta() Delta {
 			return ExcusalRow{d.line(), d.text(), d.subject(), d.text(), d.day(), d.maybeDay(), d.flag(), d.flag()}
 		}),
 		Rights: some(d, func() RightRow { return RightRow{d.line(), d.text(), d.text(), d.text(), d.moment(), d.maybeMoment()} }),
+		Duties: some(d, func() DutyRow { return DutyRow{d.line(), d.text(), d.text(), d.moment(), d.moment(), d.text()} }),
+		Stocks: some(d, func() StockRow {
+			return StockRow{d.line(), d.text(), d.text(), d.moment(), d.moment(), d.texts()}
+		}),
 		Incidents: some(d, func() IncidentRow {
 			return IncidentRow{d.line(), d.text(), d.number(), d.text(), d.text(), d.text(), d.moment(), d.flag(), d.text(), d.texts()}
 		}),
@@ -167,6 +171,8 @@ func sampleDelta() Delta {
 		Events:      []EventRow{{line(8), "QUAY", key, "roof", day, nil}, {line(9), "QUAY", key, "roof", day, &at}},
 		Excusals:    []ExcusalRow{{line(10), "QUAY", key, "", day, nil, false, true}, {line(11), "QUAY", key, "SCREEN", day, &day, true, false}},
 		Rights:      []RightRow{{line(10), "QUAY", "P1", "IV", at, nil}, {line(11), "QUAY", "P1", "III", at, &at}},
+		Duties:      []DutyRow{{line(12), "QUAY", "P1", at, at, "late"}},
+		Stocks:      []StockRow{{line(13), "QUAY", "COVER", at, at, []string{"a", "b"}}, {line(14), "QUAY", "COVER", at, at, nil}},
 		Incidents:   []IncidentRow{{line(12), "QUAY", 1, "burn", "IV", "high", at, true, "anonymous", nil}, {line(13), "QUAY", 2, "quench", "", "low", at, false, "A1", []string{"P1", "P2"}}},
 		Reports:     []ReportRow{{line(14), "QUAY", 1, "BODY", day}},
 		Remedies:    []RemedyRow{{line(15), "QUAY", 1, 1, "", "", SubjectKey{}, "high", "P1", "", day, day + 7, true}, {line(16), "QUAY", 2, 0, "id", "VENT", key, "low", "", "A1", day, day, false}},

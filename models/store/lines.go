@@ -200,6 +200,36 @@ func rightIn(r RightRow) rightLine {
 	return rightLine{lineIn(r.Line), r.Site, r.Person, r.Zone, instant(r.From), (*instant)(r.To)}
 }
 
+type dutyLine struct {
+	Line             lineColumns `gorm:"embedded"`
+	Site, Person     string
+	FromTime, ToTime instant
+	Duty             string
+}
+
+func dutyIn(r DutyRow) dutyLine {
+	return dutyLine{lineIn(r.Line), r.Site, r.Person, instant(r.From), instant(r.To), r.Duty}
+}
+
+func dutyOut(r dutyLine) DutyRow {
+	return DutyRow{r.Line.out(), r.Site, r.Person, time.Time(r.FromTime), time.Time(r.ToTime), r.Duty}
+}
+
+type stockLine struct {
+	Line             lineColumns `gorm:"embedded"`
+	Site, Item       string
+	FromTime, ToTime instant
+	Spans            codes
+}
+
+func stockIn(r StockRow) stockLine {
+	return stockLine{lineIn(r.Line), r.Site, r.Item, instant(r.From), instant(r.To), codes(r.Spans)}
+}
+
+func stockOut(r stockLine) StockRow {
+	return StockRow{r.Line.out(), r.Site, r.Item, time.Time(r.FromTime), time.Time(r.ToTime), r.Spans}
+}
+
 func rightOut(r rightLine) RightRow {
 	return RightRow{r.Line.out(), r.Site, r.Person, r.Zone, time.Time(r.FromTime), (*time.Time)(r.ToTime)}
 }

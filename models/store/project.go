@@ -28,6 +28,8 @@ type Delta struct {
 	Marks       []MarkRow
 	Visits      []VisitRow
 	VisitSteps  []VisitStepRow
+	Duties      []DutyRow
+	Stocks      []StockRow
 	Incidents   []IncidentRow
 	Reports     []ReportRow
 	Remedies    []RemedyRow
@@ -76,6 +78,8 @@ var projections = []projection{
 	table[MarkRow, markLine]{"marks", markIn, markOut, func(r *markLine) *lineColumns { return &r.Line }, func(d *Delta) *[]MarkRow { return &d.Marks }, true},
 	table[VisitRow, visitLine]{"visits", visitIn, visitOut, func(r *visitLine) *lineColumns { return &r.Line }, func(d *Delta) *[]VisitRow { return &d.Visits }, true},
 	table[VisitStepRow, visitStepLine]{"visit_steps", visitStepIn, visitStepOut, func(r *visitStepLine) *lineColumns { return &r.Line }, func(d *Delta) *[]VisitStepRow { return &d.VisitSteps }, false},
+	table[DutyRow, dutyLine]{"duties", dutyIn, dutyOut, func(r *dutyLine) *lineColumns { return &r.Line }, func(d *Delta) *[]DutyRow { return &d.Duties }, false},
+	table[StockRow, stockLine]{"stocks", stockIn, stockOut, func(r *stockLine) *lineColumns { return &r.Line }, func(d *Delta) *[]StockRow { return &d.Stocks }, false},
 	table[IncidentRow, incidentLine]{"incidents", incidentIn, incidentOut, func(r *incidentLine) *lineColumns { return &r.Line }, func(d *Delta) *[]IncidentRow { return &d.Incidents }, false},
 	table[ReportRow, reportLine]{"reports", reportIn, reportOut, func(r *reportLine) *lineColumns { return &r.Line }, func(d *Delta) *[]ReportRow { return &d.Reports }, false},
 	table[RemedyRow, remedyLine]{"remedies", remedyIn, remedyOut, func(r *remedyLine) *lineColumns { return &r.Line }, func(d *Delta) *[]RemedyRow { return &d.Remedies }, false},

@@ -138,6 +138,24 @@ type RightRow struct {
 	To                 *time.Time
 }
 
+// DutyRow is one turn of the roster: from an instant, which is included, up to one that is not.
+type DutyRow struct {
+	Line
+	Site, Person string
+	From, To     time.Time
+	Duty         string
+}
+
+// StockRow is when a site is short of people by an item, as it was reckoned: all between two instants, of which the
+// second is excluded. A later one counts in its own time. Each span is written as the instants from and up to
+// which fewer are there, how many are, and how many are needed, with strokes between.
+type StockRow struct {
+	Line
+	Site, Item string
+	From, To   time.Time
+	Spans      []string
+}
+
 // IncidentRow is an incident or near miss as one entry tells it; of those of one number that stand, the last
 // counts. Reporter is the entry's writer, or the fixed word of whoever reported without a name.
 type IncidentRow struct {

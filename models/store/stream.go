@@ -53,6 +53,8 @@ var ofSite = map[string]string{
 	"events":       "site = @site OR (subject_kind = 'person' AND subject_code IN " + staff + ")",
 	"excusals":     "site = @site OR (subject_kind = 'person' AND subject_code IN " + staff + ")",
 	"rights":       "site = @site",
+	"duties":       "site = @site",
+	"stocks":       "site = @site",
 	"incidents":    "site = @site",
 	"reports":      "site = @site",
 	"remedies":     "site = @site",
