@@ -40,6 +40,7 @@ var routes = []route{
 	{http.MethodGet, "/api/sites/:site/visits", book.SeeVisits, (*server).visits},
 	{http.MethodGet, "/api/sites/:site/passages", book.SeePassages, (*server).passages},
 	{http.MethodGet, "/api/sites/:site/rights-diff", book.SeePassages, (*server).rightsDiff},
+	{http.MethodGet, "/api/sites/:site/coverage", book.SeeSite, (*server).coverage},
 	{http.MethodGet, "/api/sites/:site/remedies", book.SeeOwn, (*server).remedies},
 	{http.MethodGet, "/api/sites/:site/incidents", book.SeeIncidents, (*server).incidents},
 }

@@ -12,7 +12,7 @@ import (
 
 // correctable tells whether entries of the kind have a form of their own to be corrected by.
 func correctable(kind string) bool {
-	return slices.Contains([]string{"record", "event", "excusal", "pause", "right", "plan"}, kind)
+	return slices.Contains([]string{"record", "event", "excusal", "pause", "right", "duty", "plan"}, kind)
 }
 
 func reasonOptions(need bool) []option {
@@ -136,6 +136,8 @@ func correctForm(v *visit, id string, x book.Correctable, f *Form) *formLeaf {
 		p.Fields = []field{whom, f.Date("from", "First day").Need(), f.Date("to", "Last day"), f.Text("because", "Why")}
 	case "right":
 		p.Fields = append([]field{f.Text("person", "Whom").Need().Help("The code of a person")}, v.rightFields(f)...)
+	case "duty":
+		p.Fields = append([]field{f.Text("person", "Who").Need().Help("The code of a person")}, v.dutyFields(f)...)
 	case "plan":
 		p.Fields = v.planFields(f)
 	}
@@ -238,6 +240,8 @@ func (v *visit) putRight(f *Form, id string, x book.Correctable) (book.Receipt, 
 		return v.b.Excuse(v.ctx(), v.actor, v.site.Code, book.ExcusalForm{Item: f.Get("item"), Subject: f.Get("subject"), From: f.Get("from"), To: f.Get("to"), Reason: f.Get("because"), Opens: f.Get("opens")}, fix)
 	case "right":
 		return v.b.Grant(v.ctx(), v.actor, v.site.Code, rightOf(f), fix)
+	case "duty":
+		return v.b.KeepDuty(v.ctx(), v.actor, v.site.Code, dutyOf(f), fix)
 	case "plan":
 		return v.b.PlanDrill(v.ctx(), v.actor, v.site.Code, planOf(f), fix)
 	default:

@@ -134,6 +134,14 @@ func (v *visit) showSubject(s standing.Subject) error {
 	if p.Outages, err = v.outagesOf(s); err != nil {
 		return err
 	}
+	if s.Asks == program.AsksPost && !v.elsewhen() {
+		if p.Holders, err = v.holders(s.Code); err != nil {
+			return err
+		}
+		if v.acts(book.RecordDone) {
+			p.Do = append(p.Do, act{"Appoint", with(v.url("appoint"), "post", s.Code)})
+		}
+	}
 	if len(p.Outages) > 0 {
 		p.Say = "It is out of service until a safety officer signs it back. " + p.Say
 	}

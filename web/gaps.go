@@ -17,7 +17,8 @@ type gapLine struct {
 	rowLine
 	Reopened string
 	Excuse   string
-	Remedy   act // the open one, or the form of a new one
+	Remedy   act      // the open one, or the form of a new one
+	Spans    []string // of cover: when on the day somebody is missing
 }
 
 // gapGroup is the gaps of one item or of one who answers for them: the first few, or a page of all.
@@ -145,6 +146,10 @@ func (v *visit) fillGroups(p *gapsLeaf, groups []gapGroup, whole bool) error {
 	if err != nil {
 		return err
 	}
+	spans, err := v.coverOf(v.day())
+	if err != nil {
+		return err
+	}
 	remedies, err := v.b.OpenRemedies(v.ctx(), v.actor, v.site.Code)
 	if err != nil {
 		return err
@@ -154,6 +159,7 @@ func (v *visit) fillGroups(p *gapsLeaf, groups []gapGroup, whole bool) error {
 		for _, r := range g.rows {
 			l := v.gapLine(*r, again)
 			l.Remedy = v.gapRemedy(*r, remedies)
+			l.Spans = spans[r.Item]
 			if v.query("by") != "owner" {
 				l.What = "" // the heading says it
 			}

@@ -80,6 +80,8 @@ type personLeaf struct {
 	EraseURL       string
 	When           *asOf
 	Outages        []outageLine // of a fixture or zone
+	Duties         []dutyLine   // of a person, in the next two weeks
+	Holders        []postLine   // of a post
 }
 
 var personSheet = leafOf[personLeaf]("person")
@@ -103,6 +105,11 @@ func personPage(v *visit) error {
 	v.personPast(p, x)
 	if !x.Erased {
 		if p.Zones, p.Window, err = v.zoneRibbons(x.Subject.Code); err != nil {
+			return err
+		}
+	}
+	if !v.elsewhen() && !x.Erased {
+		if p.Duties, err = v.dutiesOf(x.Subject.Code); err != nil {
 			return err
 		}
 	}

@@ -30,6 +30,7 @@ const (
 	secPeople    = "People"
 	secZones     = "Zones"
 	secDesk      = "Desk"
+	secCoverage  = "Coverage"
 	secDrills    = "Drills"
 	secChecklist = "Checklist"
 	secGaps      = "Gaps"
@@ -91,6 +92,7 @@ func (v *visit) siteLinks(s *spine, at book.SiteView, section string) error {
 	add(see, secPeople, 0, "", "people")
 	add(see, secZones, 0, "", "zones")
 	add(v.may(book.HandleVisits), secDesk, 0, "", "desk")
+	add(see, secCoverage, 0, "", "coverage")
 	add(see, secDrills, 0, "", "drills")
 	add(see, secChecklist, 0, "", "checklist")
 	add(see, secGaps, counts.Gaps, "gaps", "gaps")

@@ -42,6 +42,7 @@ type commands struct {
 	Visits     visitsCommand     `cmd:"" help:"Who visits on a day."`
 	Passages   passagesCommand   `cmd:"" help:"Door events of a time, each held against who was entitled."`
 	RightsDiff rightsDiffCommand `cmd:"" help:"What to withdraw and what to add in the doors' own system."`
+	Coverage   coverageCommand   `cmd:"" help:"When nobody is on duty who must be."`
 	Job        jobCommand        `cmd:"" help:"Run one scheduled job now."`
 	Backup     backupCommand     `cmd:"" help:"A consistent copy of a live book."`
 	Restore    restoreCommand    `cmd:"" help:"Put a verified copy in the place of a book."`

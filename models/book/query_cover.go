@@ -4,8 +4,11 @@ import (
 	"cmp"
 	"context"
 	"slices"
+	"strconv"
+	"strings"
 	"time"
 
+	"lodebook/models/civil"
 	"lodebook/models/program"
 	"lodebook/models/reach"
 )
@@ -31,6 +34,43 @@ type UncoveredJSON struct {
 // JSON gives it as commands and the API do.
 func (u Uncovered) JSON() UncoveredJSON {
 	return UncoveredJSON{u.Item, u.From.UTC(), u.To.UTC(), u.There, u.Needed}
+}
+
+// CoverColumns are the columns of a table of uncovered times.
+var CoverColumns = []string{"item", "from", "to", "there", "needed"}
+
+// Cells are those of CoverColumns.
+func (u Uncovered) Cells() []string {
+	return []string{u.Item, u.From.UTC().Format(time.RFC3339), u.To.UTC().Format(time.RFC3339), strconv.Itoa(u.There), strconv.Itoa(u.Needed)}
+}
+
+// CoverTime is the time of days at a site, both included, as typed: from today, and for four weeks, where they are
+// empty.
+func (b *Book) CoverTime(ctx context.Context, site, from, to string) (first, end time.Time, err error) {
+	today, err := b.Today(ctx, site)
+	if err != nil {
+		return first, end, err
+	}
+	loc, err := b.Zone(ctx, site)
+	if err != nil {
+		return first, end, err
+	}
+	day := func(field, text string, unless civil.Day) civil.Day {
+		if strings.TrimSpace(text) == "" {
+			return unless
+		}
+		d, bad := civil.ParseDay(strings.TrimSpace(text))
+		if bad != nil && err == nil {
+			err = invalid(field, text, "is not a day", "write it as YYYY-MM-DD")
+		}
+		return d
+	}
+	a := day("from", from, today)
+	z := day("to", to, a+nearHorizon-1)
+	if err == nil && z < a {
+		err = invalid("to", to, "lies before the first day, "+a.String(), "a day on or after it")
+	}
+	return a.Midnight(loc), (min(z, civil.LastDay-1) + 1).Midnight(loc), err
 }
 
 // CoverQuery asks when a site is short of people. Of the spans those are given that reach into the time from From,

@@ -38,29 +38,70 @@ func (g *Guard) Held(person string) []HeldSpan {
 	return out
 }
 
-// Holding are the runs of days on which the person is on staff, not paused, and holds the post, or, as deputy, is
-// appointed as its deputy; in order.
-func (g *Guard) Holding(person, post string, asDeputy bool) []Days {
-	v := g.v
-	l := g.person(person)
-	if asDeputy {
-		post += deputy
+// Tenure is a run of days on which somebody holds a post or is appointed as its deputy; both days are included. Entry
+// is that of the appointment.
+type Tenure struct {
+	Days
+	Person, Entry string
+	Deputy        bool
+}
+
+// Tenures are the runs of days on which anybody held the post, or was its deputy, as people come by code and then in
+// order of days.
+func (g *Guard) Tenures(post string) []Tenure {
+	var out []Tenure
+	for _, asDeputy := range []bool{false, true} {
+		var people []string
+		for _, no := range g.v.site.appointed[postOf(post, asDeputy)] {
+			people = append(people, g.v.site.locals[no].subject.Code)
+		}
+		slices.Sort(people)
+		for _, person := range people {
+			out = append(out, g.tenures(person, post, asDeputy)...)
+		}
 	}
+	return out
+}
+
+func postOf(post string, asDeputy bool) string {
+	if asDeputy {
+		return post + deputy
+	}
+	return post
+}
+
+func (g *Guard) tenures(person, post string, asDeputy bool) []Tenure {
+	v, l := g.v, g.person(person)
 	t := turns{after: dayBefore, upTo: civil.LastDay}
+	post = postOf(post, asDeputy)
 	v.postTurns(&t, l, post)
 	slices.Sort(t.days)
 	days := slices.Compact(t.days)
-	var out []Days
+	var out []Tenure
 	for i, d := range days {
 		if !v.holdsPost(l, post, d) {
 			continue
 		}
-		run := Days{d, civil.LastDay}
+		run := Tenure{Days{d, civil.LastDay}, person, v.e.marks.at(v.appointment(l, post, d).seq).String(), asDeputy}
 		if i+1 < len(days) {
 			run.Last = days[i+1] - 1
 		}
+		if n := len(out) - 1; n >= 0 && out[n].Last+1 == run.First && out[n].Entry == run.Entry {
+			out[n].Last = run.Last
+		} else {
+			out = append(out, run)
+		}
+	}
+	return out
+}
+
+// Holding are the runs of days on which the person is on staff, not paused, and holds the post, or, as deputy, is
+// appointed as its deputy; in order.
+func (g *Guard) Holding(person, post string, asDeputy bool) []Days {
+	var out []Days
+	for _, run := range g.tenures(person, post, asDeputy) {
 		for _, here := range g.here(person) {
-			if x := both(run, here); x.First <= x.Last {
+			if x := both(run.Days, here); x.First <= x.Last {
 				out = append(out, x)
 			}
 		}
