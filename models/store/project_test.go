@@ -18,7 +18,7 @@ import (
 func full(seq int64) []any {
 	rows := []any{
 		&SiteRow{}, &VersionRow{}, &PersonRow{}, &FixtureRow{}, &StintRow{}, &FactRow{}, &RecordRow{},
-		&EventRow{}, &ExcusalRow{}, &RightRow{}, &MarkRow{}, &DutyRow{}, &StockRow{}, &VisitRow{}, &VisitStepRow{}, &IncidentRow{}, &ReportRow{}, &RemedyRow{}, &RemedyStepRow{}, &OutageRow{}, &ReturnRow{}, &PlanRow{}, &AccountRow{}, &BatchRow{},
+		&EventRow{}, &ExcusalRow{}, &RightRow{}, &MarkRow{}, &VisitRow{}, &VisitStepRow{}, &DutyRow{}, &StockRow{}, &IncidentRow{}, &ReportRow{}, &RemedyRow{}, &RemedyStepRow{}, &OutageRow{}, &ReturnRow{}, &PlanRow{}, &AccountRow{}, &BatchRow{},
 	}
 	out := make([]any, len(rows))
 	for i, r := range rows {
