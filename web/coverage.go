@@ -17,7 +17,6 @@ type coverLine struct {
 	Title, URL string
 	Who, There string
 	Past       bool
-	from       time.Time
 }
 
 // dutyLine is one turn of the roster.
