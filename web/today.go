@@ -46,6 +46,7 @@ type todayLeaf struct {
 	Steps    []stepLine
 	Excusals []waitingLine
 	Visits   []visitLine
+	Alarms   []alarmLine
 	When     *asOf
 	GapsURL  string
 	Outages  []outageLine
@@ -133,6 +134,11 @@ func (v *visit) todayRest(p *todayLeaf, st short) error {
 			if x.Here() || v.may(book.HandleVisits) {
 				p.Visits = append(p.Visits, v.visitLine(x))
 			}
+		}
+	}
+	if v.may(book.SeePassages) && !v.elsewhen() {
+		if err := v.todayAlarms(p); err != nil {
+			return err
 		}
 	}
 	if v.may(book.SetProgram) {

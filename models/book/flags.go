@@ -44,12 +44,16 @@ func (b *Book) RaiseFlags(ctx context.Context, actor Actor, site string, day civ
 	if err != nil {
 		return counts, err
 	}
+	alarms, err := b.alarms(ctx, site, day)
+	if err != nil {
+		return counts, err
+	}
 	err = b.operate(ctx, func(tx *store.Tx, _ *model) error {
 		old, err := tx.Flags(site)
 		if err != nil {
 			return err
 		}
-		for _, f := range turnFlags(old, st, day, &counts) {
+		for _, f := range turnFlags(old, append(flagged(st, &counts), alarms...), day, &counts) {
 			if err := tx.PutFlag(f); err != nil {
 				return err
 			}
@@ -59,34 +63,42 @@ func (b *Book) RaiseFlags(ctx context.Context, actor Actor, site string, day civ
 	return counts, err
 }
 
-// turnFlags gives the flags that the day's standings change.
-func turnFlags(old []store.FlagRow, st Standings, day civil.Day, n *FlagCounts) []store.FlagRow {
+// flagged are the gaps and what closes, as flags to raise.
+func flagged(st Standings, n *FlagCounts) []store.FlagRow {
+	var out []store.FlagRow
+	for _, r := range st.Rows {
+		if r.Word == standing.DataFault {
+			n.DataFaults++
+		}
+		if r.Word.IsGap() || r.Word == standing.Closing {
+			out = append(out, store.FlagRow{Site: st.Site.Code, Item: r.Item, Kind: string(r.Subject.Asks), Code: r.Subject.Code, Standing: string(r.Word), Owner: r.Owner, Due: r.Due})
+		}
+	}
+	return out
+}
+
+// turnFlags gives the flags that change: those to raise, and those that stand no more.
+func turnFlags(old, raise []store.FlagRow, day civil.Day, n *FlagCounts) []store.FlagRow {
 	type key struct{ item, kind, code string }
 	was := map[key]store.FlagRow{}
 	for _, f := range old {
 		was[key{f.Item, f.Kind, f.Code}] = f
 	}
 	var out []store.FlagRow
-	for _, r := range st.Rows {
-		if r.Word == standing.DataFault {
-			n.DataFaults++
-		}
-		if !r.Word.IsGap() && r.Word != standing.Closing {
-			continue
-		}
+	for _, r := range raise {
 		n.Standing++
-		k := key{r.Item, string(r.Subject.Asks), r.Subject.Code}
+		k := key{r.Item, r.Kind, r.Code}
 		f, ok := was[k]
 		delete(was, k)
 		switch {
 		case !ok:
 			n.Raised++
-			f = store.FlagRow{Site: st.Site.Code, Item: r.Item, Kind: k.kind, Code: k.code, Opened: day}
+			f = store.FlagRow{Site: r.Site, Item: r.Item, Kind: r.Kind, Code: r.Code, Opened: day}
 		case f.Cleared != nil:
 			n.Reopened++
 			f.Cleared, f.Opened, f.Reopened = nil, day, f.Reopened+1
 		}
-		f.Standing, f.Owner, f.Due = string(r.Word), r.Owner, r.Due
+		f.Standing, f.Owner, f.Due = r.Standing, r.Owner, r.Due
 		out = append(out, f)
 	}
 	for _, f := range was {
