@@ -72,6 +72,16 @@ func (b *Book) alarms(ctx context.Context, site string, day civil.Day) ([]store.
 	if n > 0 {
 		out = append(out, flag(flagPassages, string(program.AsksSite), site, standing.Failed, nil))
 	}
+	short, err := b.Uncovered(ctx, JobActor(), site, at, (day + coverAhead).Midnight(sv.Location))
+	if err != nil {
+		return nil, err
+	}
+	for _, u := range short {
+		item := flagCover + "/" + u.Item
+		if !slices.ContainsFunc(out, func(f store.FlagRow) bool { return f.Item == item }) {
+			out = append(out, flag(item, string(program.AsksSite), site, standing.Closing, dayPtr(civil.DayOf(u.From, sv.Location))))
+		}
+	}
 	return out, nil
 }
 
