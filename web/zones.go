@@ -56,6 +56,7 @@ type zoneLeaf struct {
 	Barred, In  []zoneLine // with a right but not entitled; entitled
 	Without     []zoneLine // without a right
 	WithoutMore int
+	Outages     []outageLine
 	Window      string
 	Finder      finder
 	Pager       pager
@@ -130,6 +131,13 @@ func (v *visit) showZone(p *zoneLeaf, q book.ReachQuery, x book.Reached) error {
 		p.KnownAt = q.KnownAt.In(loc).Format("2006-01-02 15:04")
 	}
 	p.Then = v.thenWords(q, x)
+	if q.At == nil && q.KnownAt == nil {
+		out, err := v.outages()
+		if err != nil {
+			return err
+		}
+		p.Outages = out
+	}
 	p.ListURL = with(v.url("zones", x.Zone.Code, "list"), "at", v.query("at"), "known_at", v.query("known_at"))
 	p.ExportURL = with(v.url("zones", x.Zone.Code), "format", "csv", "at", v.query("at"), "known_at", v.query("known_at"))
 	if v.may(book.KeepRights) {

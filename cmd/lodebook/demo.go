@@ -165,5 +165,8 @@ func demoOffice(a *app, b *book.Book, s scenario.Site) error {
 			return fmt.Errorf("the demo's plan for %s: %w", p.Day, err)
 		}
 	}
+	if err := demoVisits(a, b, s.Code, by[book.SafetyOfficer]); err != nil {
+		return err
+	}
 	return demoIncidents(a, b, s.Code, by)
 }

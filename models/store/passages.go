@@ -158,7 +158,7 @@ type Recorded struct {
 }
 
 // RecordedBetween gives when the entries of a time were recorded, in order: after from and up to to.
-func (t *Tx) RecordedBetween(from, to time.Time) ([]Recorded, error) {
+func (t *Tx) RecordedBetween(from, to time.Time) (out []Recorded, err error) {
 	first, err := t.SeqAt(from)
 	if err != nil {
 		return nil, err
@@ -171,17 +171,17 @@ func (t *Tx) RecordedBetween(from, to time.Time) ([]Recorded, error) {
 	if err != nil {
 		return nil, err
 	}
-	var out []Recorded
+	defer func() { err = errors.Join(err, rows.Close()) }()
 	for rows.Next() {
 		var r Recorded
 		var at instant
 		if err := rows.Scan(&r.Seq, &at); err != nil {
-			return nil, errors.Join(err, rows.Close())
+			return nil, err
 		}
 		r.At = time.Time(at)
 		out = append(out, r)
 	}
-	return out, errors.Join(rows.Err(), rows.Close())
+	return out, rows.Err()
 }
 
 // insert writes so many rows of the waiting values and tells how many were kept.

@@ -84,6 +84,7 @@ func Make(today civil.Day) Site {
 			{"excusals", "excusals.csv", excusalsTable(t.excusals)},
 			{"pauses", "pauses.csv", pausesTable(t.pauses)},
 			{"rights", "rights.csv", rightsTable(a)},
+			{"roster", "roster.csv", rosterTable(a)},
 			{"passages", "passages.csv", passagesTable(a)},
 			{"holders", "holders.csv", holdersTable()},
 		},
