@@ -38,6 +38,7 @@ type passagesLeaf struct {
 	Groups     []passageGroup
 	Answered   []passageGroup // in a visit, or explained
 	ImportURL  string
+	ExportURL  string
 	MayExplain bool
 }
 
@@ -107,6 +108,9 @@ func passagesPage(v *visit) error {
 	if err != nil {
 		return err
 	}
+	if v.query("format") == "csv" {
+		return v.passagesCSV(q)
+	}
 	loc := v.site.Location
 	p := &passagesLeaf{page: page{Title: "Door events", Section: secZones}, Path: v.c.Request.URL.EscapedPath(), Tabs: v.doorTabs("passages"), MayExplain: v.may(book.ExplainPassage)}
 	p.From, p.To = q.From.In(loc).Format("2006-01-02 15:04"), q.To.In(loc).Format("2006-01-02 15:04")
@@ -117,6 +121,7 @@ func passagesPage(v *visit) error {
 	if v.may(book.ImportTables) {
 		p.ImportURL = with(v.url("import"), "table", "passages")
 	}
+	p.ExportURL = with(v.url("passages"), "format", "csv", "from", p.From, "to", p.To, "known_at", p.KnownAt)
 	open, answered := map[string]*passageGroup{}, map[string]*passageGroup{}
 	counts, err := v.b.Passages(v.ctx(), v.actor, q, func(x book.PassageView) error {
 		switch {

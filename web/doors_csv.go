@@ -2,6 +2,7 @@ package web
 
 import (
 	"bytes"
+	"errors"
 	"strings"
 	"time"
 
@@ -30,4 +31,30 @@ func (v *visit) badgesCSV(d book.RightsDiff) error {
 	v.c.Header("Content-Disposition", `attachment; filename="badges-`+strings.Map(plainName, v.site.Code)+`.csv"`)
 	v.c.Data(200, "text/csv; charset=utf-8", buf.Bytes())
 	return nil
+}
+
+// passagesCSV writes every door event of a time as it is judged, so that millions of them need no memory.
+func (v *visit) passagesCSV(q book.PassageQuery) error {
+	v.c.Header("Content-Disposition", `attachment; filename="door-events-`+strings.Map(plainName, v.site.Code)+`.csv"`)
+	v.c.Header("Content-Type", "text/csv; charset=utf-8")
+	header := []string{"at", "door", "zone", "badge", "person", "direction", "verdict", "verdict_then", "reasons"}
+	enough := errors.New("nobody reads on")
+	var failed error
+	rows := func(yield func([]string) bool) {
+		_, failed = v.b.Passages(v.ctx(), v.actor, q, func(p book.PassageView) error {
+			reasons := make([]string, len(p.Reasons))
+			for i, x := range p.Reasons {
+				reasons[i] = x.String()
+			}
+			if !yield([]string{p.At.Format(time.RFC3339Nano), p.Door, p.Zone, p.Badge, p.Person, p.Direction, string(p.Verdict), string(p.Then), strings.Join(reasons, "; ")}) {
+				return enough
+			}
+			return nil
+		})
+	}
+	err := table.Write(v.c.Writer, header, rows)
+	if errors.Is(failed, enough) {
+		failed = nil
+	}
+	return errors.Join(err, failed)
 }

@@ -49,6 +49,10 @@ func TestDoorEvents(t *testing.T) {
 	a = h.page(j, path)
 	a.says(".tally", "1 explained")
 	a.says("details", "The explanation")
+	csv := h.get(j, path+"?format=csv").Body.String()
+	if lines := strings.Split(strings.TrimSpace(csv), "\n"); len(lines) != 4 || !strings.Contains(csv, "D1,III,B-9,,in,explained,unknown-door,") {
+		t.Error(csv)
+	}
 	reader := h.page(h.as(book.Reader), path)
 	reader.hides("main", "Explain ")
 }

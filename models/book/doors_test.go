@@ -333,3 +333,27 @@ func TestPassagesAreStreamed(t *testing.T) {
 		t.Errorf("10,000 rows took %d MB at the most, 300,000 took %d MB", few>>20, many>>20)
 	}
 }
+
+// An item of the site can ask that the doors' list is in order and no older than 30 days.
+func TestAnItemAsksForTheDoorsList(t *testing.T) {
+	d := gate(t)
+	d.program("  - {code: INDUCTION,", "  - {code: DOORS, title: The doors let in who is entitled, asks: site, holds: \"subject.door_list_age >= 0 && subject.door_list_age <= 30 && subject.door_list_open == 0\", basis: Site rule}\n  - {code: INDUCTION,")
+	word := func(after int) string {
+		t.Helper()
+		d.ok(d.TakeStock(t.Context()))
+		return string(d.word("DOORS", "site:QUAY", d.now.AddDate(0, 0, after).Format(time.DateOnly)))
+	}
+	if got := word(0); got != "failed" {
+		t.Errorf("without a list it is %q", got)
+	}
+	d.imp("holders", "badge,door\nB-2,D1\nB-1,D1\n")
+	if got := word(0); got != "failed" {
+		t.Errorf("with a list that lets P2 in it is %q", got)
+	}
+	d.imp("holders", "badge,door\nB-1,D1\n")
+	for after, want := range map[int]string{0: "met", 30: "met", 31: "failed"} {
+		if got := word(after); got != want {
+			t.Errorf("%d days after a clean list it is %q, want %q", after, got, want)
+		}
+	}
+}
