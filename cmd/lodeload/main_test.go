@@ -50,6 +50,15 @@ func TestMakeIsTheSameEachTime(t *testing.T) {
 			t.Fatalf("status %d: %s", status, words.String())
 		}
 	}
+	make("doors.book", "--doors")
+	b, err := book.Open(t.Context(), filepath.Join(dir, "doors.book"), book.Options{Clock: time.Now, Random: rand.Reader})
+	if err != nil {
+		t.Fatal(err)
+	}
+	counts, err := b.Passages(t.Context(), book.SystemOperator("ops"), book.PassageQuery{Site: "N0001", From: time.Date(2021, 1, 1, 0, 0, 0, 0, time.UTC), To: time.Date(2022, 1, 1, 0, 0, 0, 0, time.UTC)}, func(book.PassageView) error { return nil })
+	if err = errors.Join(err, b.Close()); err != nil || counts[book.NotEntitled] == 0 {
+		t.Errorf("passages in the book: %v, %v", counts, err)
+	}
 	make("one.book", "--passages", filepath.Join(dir, "passages.csv"), "--csv", dir)
 	make("two.book")
 	if a, b := headOf(t, filepath.Join(dir, "one.book")), headOf(t, filepath.Join(dir, "two.book")); a == "" || a != b {

@@ -22,7 +22,8 @@ type makeCommand struct {
 	Fixtures int    `default:"200" help:"Number of fixtures, spread over the sites."`
 	Days     int    `default:"1826" help:"Length of the history in days, from 2021-01-01."`
 	Bulk     bool   `help:"Write in large batches instead of importing table by table; the book is the same."`
-	Passages string `help:"Also write the passages through doors of the last 92 days to a CSV file. The book does not take passages in yet." placeholder:"FILE"`
+	Passages string `help:"Also write the passages through doors of the last 92 days to a CSV file." placeholder:"FILE"`
+	Doors    bool   `help:"Also bring those passages into the book."`
 	CSV      string `name:"csv" help:"Also write the tables of each site to files in this folder." type:"path" placeholder:"DIR"`
 }
 
@@ -60,9 +61,10 @@ func (c *makeCommand) fill(a *app, b *book.Book, n *network.Network) (records in
 	if err != nil {
 		return 0, err
 	}
+	var doors []doorFile
 	also := func(s *network.Site) error {
 		records += len(s.Records)
-		return errors.Join(c.files(s), c.pass(passages, s, s.Code == network.SiteCode(0)))
+		return errors.Join(c.files(s), c.pass(passages, s, s.Code == network.SiteCode(0)), c.keepDoors(s, &doors))
 	}
 	if c.Bulk {
 		err = bulkNetwork(a, b, n, actor, also)
@@ -72,7 +74,44 @@ func (c *makeCommand) fill(a *app, b *book.Book, n *network.Network) (records in
 	if passages != nil {
 		err = errors.Join(err, passages.Close())
 	}
+	for _, d := range doors {
+		if err == nil {
+			err = d.bring(a, b, actor)
+		}
+		err = errors.Join(err, os.Remove(d.path))
+	}
 	return records, err
+}
+
+// doorFile is the passages of a site, which wait until the book has its doors and people.
+type doorFile struct{ site, path string }
+
+func (c *makeCommand) keepDoors(s *network.Site, to *[]doorFile) (err error) {
+	if !c.Doors {
+		return nil
+	}
+	f, err := os.CreateTemp("", "lodeload-doors-")
+	if err != nil {
+		return err
+	}
+	*to = append(*to, doorFile{s.Code, f.Name()})
+	return errors.Join(s.WritePassages(f, true), f.Close())
+}
+
+func (d doorFile) bring(a *app, b *book.Book, actor book.Actor) error {
+	f, err := os.Open(d.path)
+	if err != nil {
+		return err
+	}
+	info, err := f.Stat()
+	if err != nil {
+		return errors.Join(err, f.Close())
+	}
+	r, err := b.Import(a.ctx, actor, book.ImportOptions{Table: "passages", Site: d.site, File: f, Size: info.Size(), FileName: "passages.csv"})
+	if err == nil && len(r.Faults) > 0 {
+		err = &r.Faults[0]
+	}
+	return errors.Join(err, f.Close())
 }
 
 func (c *makeCommand) passages() (*os.File, error) {
