@@ -15,6 +15,9 @@ import (
 	"lodebook/models/table"
 )
 
+// filled are the tables that a network writes into.
+var filled = []string{"accounts", "batches", "entries", "events", "excusals", "facts", "fixtures", "head", "meta", "people", "records", "sites", "stints", "tree", "veils", "versions"}
+
 // TestBulkEndsAsImportDoes holds that the bulk path ends in the same book as the public import path: every
 // byte of every table that belongs to the book, and the head of its tree.
 func TestBulkEndsAsImportDoes(t *testing.T) {
@@ -47,7 +50,7 @@ func TestBulkEndsAsImportDoes(t *testing.T) {
 		}
 		for _, table := range slices.Sorted(maps.Keys(dumps[0])) {
 			a, b := dumps[0][table], dumps[1][table]
-			if len(a) == 0 && !slices.Contains([]string{"plans"}, table) {
+			if len(a) == 0 && slices.Contains(filled, table) {
 				t.Errorf("%s is empty: there is nothing to compare", table)
 			}
 			if !slices.Equal(a, b) {
@@ -126,7 +129,7 @@ func TestBulkRefuses(t *testing.T) {
 		says  string
 	}{
 		{"a site that has rows", book.BulkTable{Table: "people", Site: site, Rows: rowsOf(book.PersonForm{Code: "P1", Name: "Ann Onym"})}, "has entries of the kind person already"},
-		{"another table", book.BulkTable{Table: "rights", Site: site, Rows: rowsOf(good)}, "is no table that can be imported"},
+		{"another table", book.BulkTable{Table: "passages", Site: site, Rows: rowsOf(good)}, "is no table that can be imported"},
 		{"another site", book.BulkTable{Table: "records", Site: "NOWHERE", Rows: rowsOf(good)}, "NOWHERE"},
 		{"a row of another table", book.BulkTable{Table: "events", Site: site, Rows: rowsOf(good)}, "a row of records was given among events"},
 		{"an identifier", book.BulkTable{Table: "records", Site: site, Rows: rowsOf(with(func(f *book.RecordForm) { f.ID = "018f0000-0000-7000-8000-000000000000" }))}, "line 1: id"},
