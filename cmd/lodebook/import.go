@@ -128,7 +128,7 @@ func (c *importCommand) tell(a *app, r book.ImportReport) error {
 }
 
 func upperFirst(s string) string {
-	if s == "" {
+	if s == "" || s[0] < 'a' || s[0] > 'z' {
 		return s
 	}
 	return string(s[0]-'a'+'A') + s[1:]
