@@ -361,6 +361,24 @@ func (c *check) selfEvent() (string, bool) {
 	return "", false
 }
 
+// selfReported tells whether an event is one that people report of themselves.
+func (m *model) selfReported(site string, b *eventBody) bool {
+	e, ok := m.site(site).event(b.Event)
+	return ok && e.SelfReport
+}
+
+// mayReviseReport checks that a report about oneself is taken back by a safety officer, and by nobody for themselves: it
+// would open their zones again.
+func (m *model) mayReviseReport(actor Actor, site string, b *eventBody) error {
+	if err := actor.may(Correct, site); err != nil {
+		return err
+	}
+	if m.isActor(actor, b.Subject.person(), "") {
+		return &Denied{Action: Correct, Role: actor.Role, Why: "nobody takes back what was reported about themselves; ask another safety officer"}
+	}
+	return nil
+}
+
 func (c *check) eventBody(f EventForm) (*eventBody, []Fault) {
 	subject, faults := c.subject("subject", f.Subject)
 	on, bad := c.readMoment("on", f.On)

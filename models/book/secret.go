@@ -91,13 +91,23 @@ func (s *session) conflict(old store.Entry, was body, recorded, given string) er
 }
 
 // mayRevise checks what may not be corrected or withdrawn by everybody who may correct an entry: what is about
-// incidents is for safety officers, the terms of a remedy are not for its owner, and what is out of service is
-// signed back.
-func (s *session) mayRevise(old store.Entry, was body) error {
+// incidents is for safety officers, the terms of a remedy are not for its owner, what is out of service is
+// signed back, and what a person reported of themselves is taken back by somebody else, with a reason.
+func (s *session) mayRevise(old store.Entry, was body, given *common) error {
 	if Secret(old.Kind) {
 		return s.actor.may(SeeIncidents, old.Site)
 	}
 	switch b := was.(type) {
+	case *eventBody:
+		if !s.m.selfReported(old.Site, b) {
+			return nil
+		}
+		if err := s.m.mayReviseReport(s.actor, old.Site, b); err != nil {
+			return err
+		}
+		if given.Reason == "" {
+			return invalid("reason", "", "is empty", "choose why the report is taken back")
+		}
 	case *outageBody:
 		return invalid("entry", old.ID, "is not withdrawn", "sign the fixture or zone back, and say there why")
 	case *remedyBody:

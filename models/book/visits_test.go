@@ -302,3 +302,23 @@ func TestASelfReportClosesZonesAtOnce(t *testing.T) {
 		t.Errorf("by an administrator: %v", err)
 	}
 }
+
+// What somebody reported about themselves is taken back by a safety officer who is somebody else, with a reason: it would
+// open their zones again.
+func TestASelfReportIsTakenBackByAnotherOfficer(t *testing.T) {
+	d := hall(t)
+	member := d.account("runa", book.Member, "P1")
+	r, err := d.ReportSelf(t.Context(), member, site)
+	d.ok(err)
+	if _, err := d.Withdraw(t.Context(), member, r.ID(), book.Correction{Reason: "slip"}); !errors.As(err, new(*book.Denied)) {
+		t.Errorf("by themselves: %v", err)
+	}
+	own := d.account("officer", book.SafetyOfficer, "P1")
+	if _, err := d.Withdraw(t.Context(), own, r.ID(), book.Correction{Reason: "slip"}); !errors.As(err, new(*book.Denied)) {
+		t.Errorf("by an officer about themselves: %v", err)
+	}
+	_, err = d.Withdraw(t.Context(), d.officer, r.ID(), book.Correction{})
+	wantFault(t, "without a reason", err, "reason")
+	_, err = d.Withdraw(t.Context(), d.officer, r.ID(), book.Correction{Reason: "slip"})
+	d.ok(err)
+}

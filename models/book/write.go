@@ -215,7 +215,7 @@ func (s *session) checkCorrection(d *draft, c *check) error {
 	if err != nil {
 		return err
 	}
-	return s.mayRevise(old, c.old)
+	return s.mayRevise(old, c.old, d.body.shared())
 }
 
 func (s *session) mayCorrect(old store.Entry, given *common) error {
